@@ -1,0 +1,1 @@
+"""heatledger: the thermal budget of every voltage regulator on a board, with its evidence."""

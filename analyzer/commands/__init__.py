@@ -1,0 +1,1 @@
+"""Commands: one file a command, each with options(parser) and run(arguments)."""

@@ -1,0 +1,1 @@
+"""Heat: from losses to junction temperature, margin and verdict."""

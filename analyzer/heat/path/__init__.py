@@ -1,0 +1,1 @@
+"""Thermal paths: one resistance model a file."""

@@ -1,0 +1,1 @@
+"""Output: console, workbook, JSON and the other forms a ledger is written in."""

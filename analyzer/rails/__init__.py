@@ -1,0 +1,1 @@
+"""Rails: which nets hang together, what feeds them, at which voltage."""

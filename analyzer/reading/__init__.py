@@ -1,0 +1,1 @@
+"""Reading: files become a Circuit. Only this room and `output` touch files."""

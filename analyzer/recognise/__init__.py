@@ -1,0 +1,1 @@
+"""Recognition: which components are regulators or passages, by rule file and by pins."""
