@@ -1,0 +1,183 @@
+"""The main job: one board from its files to its ledger, stage by stage, each stage pure but the first."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass, replace
+from pathlib import Path
+
+from analyzer.circuit import Circuit, InputFile, natural_key
+from analyzer.evidence import Evidence, Grade
+from analyzer.findings.base import Finding, Verdict, Weight
+from analyzer.ledger import Entry, Ledger
+from analyzer.load import Loads
+from analyzer.part import Part
+from analyzer.quantity import Span
+from analyzer.rail import Rails
+from analyzer.rule import Rulebook
+from analyzer.settings import Settings, StatedDraw
+
+SETTINGS_NAME = "heatledger.toml"
+
+
+@dataclass(frozen=True)
+class Audit:
+    """Everything that was found out about one board: the ledger, and what each stage handed on."""
+
+    ledger: Ledger
+    circuit: Circuit
+    parts: tuple[Part, ...]
+    rails: Rails
+    loads: Loads
+    rulebook: Rulebook
+    settings: Settings
+
+
+def audit(
+    path: Path,
+    *,
+    settings_file: Path | None = None,
+    rule_files: Iterable[Path] = (),
+    typed: Iterable[StatedDraw] = (),
+    variant: str | None = None,
+    allow_outside: bool = False,
+) -> Audit:
+    """Audit one board.
+
+    Args:
+        path: A `.kicad_sch`, a `.kicad_pro`, a folder with one project, or a netlist.
+        settings_file: Settings to use; None looks for `heatledger.toml` beside the project.
+        rule_files: Rule files besides those the settings name.
+        typed: Currents typed into a workbook; they beat the settings' own for the same part and rail.
+        variant: Design variant to audit.
+        allow_outside: Whether sheets outside the project folder may be read.
+
+    Raises:
+        InputError: If an input is missing, unreadable or invalid.
+    """
+    from analyzer.reading import read
+    from analyzer.recognise import load_rulebook
+    from analyzer.settings_file import load_settings
+
+    found = settings_file or settings_beside(path)
+    settings = load_settings(found)
+    settings = replace(settings, draws=_merged(settings.draws, typed))
+    base = found.parent if found else path.parent
+    rulebook = load_rulebook([*(base / name for name in settings.rule_files), *rule_files])
+    circuit = read(path, settings=settings, variant=variant, allow_outside=allow_outside)
+    return close(circuit, rulebook, settings)
+
+
+def close(circuit: Circuit, rulebook: Rulebook, settings: Settings) -> Audit:
+    """The pure part of the job: from the circuit as read to the closed ledger."""
+    from analyzer.draws import find_loads
+    from analyzer.heat import close_entries
+    from analyzer.rails import find_rails
+    from analyzer.recognise import recognise
+
+    parts, recognition = recognise(circuit, rulebook, settings)
+    rails = find_rails(circuit, parts, rulebook, settings)
+    loads = find_loads(circuit, parts, rails, settings, rulebook)
+    entries = close_entries(circuit, parts, rails, loads, rulebook, settings)
+    findings = {
+        finding: None
+        for finding in (
+            *circuit.findings,
+            *recognition,
+            *rails.findings,
+            *loads.findings,
+            *(finding for entry in entries for finding in entry.findings),
+        )
+    }
+    ledger = Ledger(
+        board=circuit.board,
+        inputs=(
+            *circuit.inputs,
+            *(InputFile(name, digest) for name, digest in rulebook.files),
+            *_settings_input(settings),
+        ),
+        settings=in_force(settings, circuit),
+        entries=tuple(sorted(entries, key=_entry_key)),
+        rails=rails.rails,
+        loads=loads.by_rail,
+        gaps=loads.gaps,
+        findings=tuple(sorted(findings, key=_finding_key)),
+        not_understood=_not_understood(parts),
+        complete=circuit.complete,
+    )
+    return Audit(ledger, circuit, parts, rails, loads, rulebook, settings)
+
+
+def settings_beside(path: Path) -> Path | None:
+    """The settings file in the folder of the project, if there is one."""
+    folder = path if path.is_dir() else path.parent
+    candidate = folder / SETTINGS_NAME
+    return candidate if candidate.is_file() else None
+
+
+def in_force(settings: Settings, circuit: Circuit) -> tuple[Evidence, ...]:
+    """The board-wide assumptions as evidence: what was stated, and what was presumed in its place."""
+    site, policy = settings.site, settings.policy
+    grade = Grade.RULED if policy.verified else Grade.PRESUMED
+    margins = (
+        ("policy junction margin", policy.junction_over, "K"),
+        ("policy warning margin", policy.junction_tight, "K"),
+        ("policy input fraction", policy.input_fraction, "1"),
+        ("policy current fraction", policy.current_fraction, "1"),
+    )
+    return (
+        site.ambient,
+        site.enclosure_rise,
+        site.altitude,
+        site.air_speed,
+        settings.resistor_tolerance,
+        *((circuit.copper_layers,) if circuit.copper_layers else ()),
+        *((settings.board.pour,) if settings.board.pour else ()),
+        *((settings.board.conductivity,) if settings.board.conductivity else ()),
+        *(
+            Evidence(name, Span.exact(value), unit, f"policy {policy.name}: {policy.source}", grade)
+            for name, value, unit in margins
+        ),
+    )
+
+
+def _merged(stated: tuple[StatedDraw, ...], typed: Iterable[StatedDraw]) -> tuple[StatedDraw, ...]:
+    latest: Mapping[tuple[str, str], StatedDraw] = {(draw.ref, draw.rail): draw for draw in typed}
+    return (*(draw for draw in stated if (draw.ref, draw.rail) not in latest), *latest.values())
+
+
+def _settings_input(settings: Settings) -> tuple[InputFile, ...]:
+    if not settings.file:
+        return ()
+    import hashlib
+
+    data = Path(settings.file).read_bytes()
+    return (InputFile(Path(settings.file).name, hashlib.sha256(data).hexdigest()),)
+
+
+_VERDICTS = list(Verdict)
+_WEIGHTS = list(Weight)
+
+EntryKey = tuple[bool, int, float, tuple[tuple[int, int | str], ...], str]
+
+
+def _entry_key(entry: Entry) -> EntryKey:
+    margin = math.inf if entry.margin is None else entry.margin
+    return (not entry.fitted, _VERDICTS.index(entry.verdict), margin, natural_key(entry.ref), entry.key)
+
+
+def _finding_key(finding: Finding) -> tuple[int, str, tuple[tuple[int, int | str], ...], str, str]:
+    return (
+        _WEIGHTS.index(finding.weight),
+        finding.name,
+        natural_key(finding.subject),
+        finding.where,
+        finding.message,
+    )
+
+
+def _not_understood(parts: tuple[Part, ...]) -> tuple[str, ...]:
+    return tuple(
+        f"{part.ref} {part.identity}: {part.evidence}" for part in parts if part.rule is None and part.component.fitted
+    )
