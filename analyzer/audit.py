@@ -80,16 +80,15 @@ def close(circuit: Circuit, rulebook: Rulebook, settings: Settings) -> Audit:
     rails = find_rails(circuit, parts, rulebook, settings)
     loads = find_loads(circuit, parts, rails, settings, rulebook)
     entries = close_entries(circuit, parts, rails, loads, rulebook, settings)
-    findings = {
-        finding: None
-        for finding in (
+    findings = dict.fromkeys(
+        (
             *circuit.findings,
             *recognition,
             *rails.findings,
             *loads.findings,
             *(finding for entry in entries for finding in entry.findings),
         )
-    }
+    )
     ledger = Ledger(
         board=circuit.board,
         inputs=(
