@@ -80,15 +80,9 @@ def close(circuit: Circuit, rulebook: Rulebook, settings: Settings) -> Audit:
     rails = find_rails(circuit, parts, rulebook, settings)
     loads = find_loads(circuit, parts, rails, settings, rulebook)
     entries = close_entries(circuit, parts, rails, loads, rulebook, settings)
-    findings = dict.fromkeys(
-        (
-            *circuit.findings,
-            *recognition,
-            *rails.findings,
-            *loads.findings,
-            *(finding for entry in entries for finding in entry.findings),
-        )
-    )
+    of_entries = (finding for entry in entries for finding in entry.findings)
+    found = (*circuit.findings, *recognition, *rails.findings, *loads.findings, *of_entries)
+    findings = dict.fromkeys(found)
     ledger = Ledger(
         board=circuit.board,
         inputs=(

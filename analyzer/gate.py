@@ -75,10 +75,7 @@ def judge(ledger: Ledger, waivers: Iterable[Waiver], level: str, today: date) ->
     fails = any(finding.weight.value in stops for finding in standing) or any(
         _stands(entry, stops, accepted) for entry in ledger.entries
     )
-    if not ledger.complete:
-        status = STATUS_INCOMPLETE
-    else:
-        status = STATUS_FINDINGS if fails else 0
+    status = STATUS_INCOMPLETE if not ledger.complete else STATUS_FINDINGS if fails else 0
     return Gate(tuple(waived), (*standing, *notes), status)
 
 
