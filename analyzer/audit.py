@@ -42,6 +42,7 @@ def audit(
     typed: Iterable[StatedDraw] = (),
     variant: str | None = None,
     allow_outside: bool = False,
+    chance_seed: int | None = None,
 ) -> Audit:
     """Audit one board.
 
@@ -52,6 +53,7 @@ def audit(
         typed: Currents typed into a workbook; they beat the settings' own for the same part and rail.
         variant: Design variant to audit.
         allow_outside: Whether sheets outside the project folder may be read.
+        chance_seed: Seed of the Monte-Carlo estimate; None leaves it out.
 
     Raises:
         InputError: If an input is missing, unreadable or invalid.
@@ -66,10 +68,10 @@ def audit(
     base = found.parent if found else path.parent
     rulebook = load_rulebook([*(base / name for name in settings.rule_files), *rule_files])
     circuit = read(path, settings=settings, variant=variant, allow_outside=allow_outside)
-    return close(circuit, rulebook, settings)
+    return close(circuit, rulebook, settings, chance_seed)
 
 
-def close(circuit: Circuit, rulebook: Rulebook, settings: Settings) -> Audit:
+def close(circuit: Circuit, rulebook: Rulebook, settings: Settings, chance_seed: int | None = None) -> Audit:
     """The pure part of the job: from the circuit as read to the closed ledger."""
     from analyzer.draws import find_loads
     from analyzer.heat import close_entries
@@ -79,7 +81,7 @@ def close(circuit: Circuit, rulebook: Rulebook, settings: Settings) -> Audit:
     parts, recognition = recognise(circuit, rulebook, settings)
     rails = find_rails(circuit, parts, rulebook, settings)
     loads = find_loads(circuit, parts, rails, settings, rulebook)
-    entries = close_entries(circuit, parts, rails, loads, rulebook, settings)
+    entries = close_entries(circuit, parts, rails, loads, rulebook, settings, chance_seed=chance_seed)
     of_entries = (finding for entry in entries for finding in entry.findings)
     found = (*circuit.findings, *recognition, *rails.findings, *loads.findings, *of_entries)
     findings = dict.fromkeys(found)

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from pathlib import Path
 
 from analyzer.circuit import natural_key
@@ -41,6 +41,14 @@ def find_projects(roots: Iterable[Path]) -> tuple[Path, ...]:
         for project in _below(root) if root.is_dir() else (root,):
             found[project] = None
     return tuple(sorted(found, key=lambda path: natural_key(path.as_posix())))
+
+
+def is_archive(paths: Sequence[Path]) -> bool:
+    """Whether `paths` ask for several projects: more than one path, or a folder without a project of its own."""
+    if len(paths) != 1:
+        return True
+    (path,) = paths
+    return path.is_dir() and not any(path.glob("*.kicad_pro")) and not any(path.glob("*.kicad_sch"))
 
 
 def _below(root: Path) -> Iterator[Path]:

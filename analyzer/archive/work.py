@@ -25,7 +25,7 @@ class Job:
         out: Folder that its workbook and JSON go into; made if absent.
         settings_file: Settings for all boards; None takes the one beside each project.
         rule_files: Further rule files.
-        level: Level of the release gate.
+        level: Level of the release gate; "" takes the one of each board's settings.
         today: The day waivers are judged on, ISO 8601.
     """
 
@@ -34,7 +34,7 @@ class Job:
     out: Path
     settings_file: Path | None = None
     rule_files: tuple[Path, ...] = ()
-    level: str = "over"
+    level: str = ""
     today: str = "1970-01-01"
 
 
@@ -84,7 +84,7 @@ def _work(job: Job) -> Outcome:
 
     result = audit(job.project, settings_file=job.settings_file, rule_files=job.rule_files)
     ledger = result.ledger
-    gate = judge(ledger, result.settings.waivers, job.level, date.fromisoformat(job.today))
+    gate = judge(ledger, result.settings.waivers, job.level or result.settings.fail_on, date.fromisoformat(job.today))
     job.out.mkdir(parents=True, exist_ok=True)
     ledger_file, workbook_file = job.out / "ledger.json", job.out / "ledger.xlsx"
     write_json(ledger_file, ledger)

@@ -1,0 +1,55 @@
+"""`heatledger audit PATH --variant all`: one ledger for each design variant, compared with the base."""
+
+from __future__ import annotations
+
+import argparse
+import copy
+from pathlib import Path
+
+from analyzer.errors import Fault, InputError
+
+
+def run_variants(arguments: argparse.Namespace) -> int:
+    """Audit the base design and every variant; outputs get the variant's name before their ending.
+
+    Returns:
+        The worst exit status among them.
+
+    Raises:
+        InputError: If the project has no variants.
+    """
+    from analyzer.archive.since import changes, standings_of
+    from analyzer.commands.audit import audited, judged, print_report, write_files
+    from analyzer.output.ledger_json import as_document
+    from analyzer.reading import variants
+
+    (path,) = arguments.paths
+    names = variants(path)
+    if not names:
+        raise InputError(Fault("the project has no design variants", str(path), remedy="Leave out --variant."))
+    statuses, base = [], None
+    for name in (None, *names):
+        one = copy.copy(arguments)
+        one.variant = name
+        for output in ("workbook", "json", "sarif", "page"):
+            setattr(one, output, _named(getattr(arguments, output), name))
+        result = audited(one)
+        gate = judged(result, one)
+        print(f"variant: {name or 'base design'}")
+        print_report(result, gate, one)
+        for file in write_files(result, gate, one):
+            print(f"written: {file}")
+        now = standings_of(as_document(result.ledger), "")
+        for change in changes(base, now) if base is not None else ():
+            print(f"against the base design, {change}")
+        base = base if base is not None else now
+        statuses.append(gate.status)
+        print()
+    return max(statuses)
+
+
+def _named(file: Path | None, variant: str | None) -> Path | None:
+    if file is None or variant is None or str(file) == "-":
+        return file
+    safe = "".join(character if character.isalnum() or character in "-_." else "_" for character in variant)
+    return file.with_name(f"{file.stem}.{safe}{file.suffix}")
