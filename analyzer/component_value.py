@@ -98,7 +98,12 @@ def _first_value(text: str) -> ComponentValue | None:
         pieces.pop(0)
     if not pieces:
         return None
-    if len(pieces) > 1 and pieces[0][-1].isdigit() and (joined := _one(pieces[0] + pieces[1])):
+    if (
+        len(pieces) > 1
+        and pieces[0][-1].isdigit()
+        and not pieces[1][0].isdigit()
+        and (joined := _one(pieces[0] + pieces[1]))
+    ):
         return joined  # "2.2 uH"
     if len(pieces) > 1 and _OTHER_UNIT.fullmatch(pieces[1]) and pieces[0][-1].isdigit():
         return None  # "100 mA" is a rating
