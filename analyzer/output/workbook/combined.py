@@ -56,7 +56,7 @@ def write_combined(
         buffer, {"constant_memory": True, "strings_to_formulas": False, "strings_to_urls": False}
     )
     # a fixed date keeps the same input at the same bytes
-    book.set_properties({"title": "heatledger archive", "created": datetime.datetime(1980, 1, 1)})  # noqa: DTZ001
+    book.set_properties({"title": "heatledger archive", "created": datetime.datetime(1980, 1, 1)})
     head = book.add_format({"bold": True, "text_wrap": True, "bottom": 1, "valign": "top"})
     sheets = {}
     for name, columns in (("Boards", BOARDS), ("Entries", ENTRIES), ("Gaps", GAPS), ("Changes", ("Change",))):
