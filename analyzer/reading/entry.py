@@ -1,0 +1,30 @@
+"""The way in: tells schematics from netlists and reads either."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from analyzer.circuit import Circuit
+from analyzer.findings import reading as kinds
+from analyzer.reading.files import Files
+from analyzer.reading.project import NETLIST_SUFFIXES, find_schematic, load_project
+from analyzer.reading.report import Report
+from analyzer.reading.schematic import read_schematic
+from analyzer.settings import Settings
+
+
+def read_board(path: Path, settings: Settings, variant: str | None, *, allow_outside: bool) -> Circuit:
+    """See `analyzer.reading.read`."""
+    report = Report()
+    if path.suffix.lower() in NETLIST_SUFFIXES:
+        from analyzer.reading.netlist import read_netlist
+
+        return read_netlist(path, settings)
+    found = find_schematic(path)
+    files = Files(found.parent, allow_outside)
+    project = load_project(found, files, report)
+    if variant is not None and variant not in project.variants:
+        shown = ", ".join(project.variants) or "none"
+        message = f"there is no variant '{variant}'; the project defines: {shown}"
+        report.add(kinds.VARIANT_UNKNOWN, variant, message, found.name)
+    return read_schematic(project, files, report, settings, variant)

@@ -1,0 +1,82 @@
+"""From joined nodes to named nets."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from dataclasses import dataclass
+
+from analyzer.circuit import natural_key
+from analyzer.reading.joins import Netting
+from analyzer.reading.names import Candidate, UnitStyle, pin_name
+from analyzer.reading.placement import PlacedPin, Placement
+
+
+@dataclass(frozen=True, slots=True)
+class NetNames:
+    """Names by root node, and which of them a person gave."""
+
+    of_root: dict[int, str]
+    given: frozenset[str]
+
+
+def name_nets(placements: list[Placement], netting: Netting, style: UnitStyle) -> NetNames:
+    """Name every net that has a pin.
+
+    Nets that a person gave the same full name are one name here, as they are one net on the board.
+    Automatic names that would occur twice get "_1", "_2" in the order of the pins they come from.
+    """
+    root = netting.joins.root
+    pins: dict[int, list[PlacedPin]] = defaultdict(list)
+    for placement in placements:
+        for placed in placement.pins:
+            pins[root(placed.node)].append(placed)
+    best: dict[int, Candidate] = {}
+    for node, candidate in netting.candidates:
+        net = root(node)
+        if net in pins and (net not in best or candidate < best[net]):
+            best[net] = candidate
+    named = {net: candidate.name for net, candidate in best.items()}
+    given = frozenset(named.values())
+    unconnected = {root(node) for node in netting.no_connects}
+    taken = set(given)
+    automatic = [
+        (_driver_key(placed), net, name)
+        for net, members in pins.items()
+        if net not in named
+        for name, placed in [_automatic(members, style, unconnected=net in unconnected)]
+    ]
+    for _, net, name in sorted(automatic, key=lambda entry: (entry[2], entry[0])):
+        members = pins[net]
+        unique = _unused(name, taken)
+        taken.add(unique)
+        if len(members) == 1 and not name.startswith("unconnected-("):
+            # KiCad numbers equal names first and only then sees that a net has a single pin
+            unique = _unused(pin_name(members[0], style, unconnected=True), taken)
+            taken.add(unique)
+        named[net] = unique
+    return NetNames(named, given)
+
+
+def _automatic(members: list[PlacedPin], style: UnitStyle, *, unconnected: bool) -> tuple[str, PlacedPin]:
+    names = [
+        (pin_name(pin, style, unconnected=unconnected or pin.pin.kind == "no_connect"), pin) for pin in members
+    ]
+    return min(names, key=lambda pair: ("-Pad" in pair[0], pair[0], _driver_key(pair[1])))
+
+
+DriverKey = tuple[tuple[tuple[int, int | str], ...], tuple[tuple[int, int | str], ...], tuple[int, int], str]
+
+
+def _driver_key(placed: PlacedPin) -> DriverKey:
+    owner = placed.owner
+    # library pins have y downwards; KiCad goes through them as the library drew them, top pin last
+    return natural_key(owner.reference), natural_key(placed.pin.number), (-placed.pin.at[1], placed.pin.at[0]), owner.key
+
+
+def _unused(name: str, taken: set[str]) -> str:
+    if name not in taken:
+        return name
+    number = 1
+    while f"{name}_{number}" in taken:
+        number += 1
+    return f"{name}_{number}"
