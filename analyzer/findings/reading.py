@@ -49,7 +49,8 @@ LIMIT_REACHED = FindingKind(
 BAD_ITEM = FindingKind(
     "item-unreadable",
     Weight.OPEN,
-    "An item of the drawing lacks something it needs (position, number, name) or holds an impossible value; it was left out.",
+    "An item of the drawing lacks something it needs (position, number, name) or holds an impossible value. "
+    "It was left out.",
     "Delete and draw the item again, or restore the file.",
 )
 NEWER_FORMAT = FindingKind(
@@ -133,7 +134,8 @@ VARIABLE_CYCLE = FindingKind(
 PROJECT_UNREADABLE = FindingKind(
     "project-unreadable",
     Weight.OPEN,
-    "The .kicad_pro could not be used, so bus aliases, text variables, variants and further top-level sheets are unknown.",
+    "The .kicad_pro, or an entry of it, could not be used: bus aliases, text variables, variants and further top-level "
+    "sheets may be unknown.",
     "Restore the project file, or open and save the project in KiCad.",
 )
 PROJECT_MISSING = FindingKind(

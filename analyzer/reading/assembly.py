@@ -183,6 +183,4 @@ def _report_pad(part: Part, pad: str, nets: list[str], report: Report) -> None:
     head = part[0]
     place = head.sheet.drawing.place(head.symbol.at, head.sheet.name)
     shown = " and ".join(nets)
-    report.add(
-        kinds.PAD_ON_TWO_NETS, head.reference, f"{head.reference}.{pad} is on {shown}", place, key=head.key
-    )
+    report.add(kinds.PAD_ON_TWO_NETS, head.reference, f"{head.reference}.{pad} is on {shown}", place, key=head.key)

@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections import Counter, defaultdict
 
 from analyzer.findings import reading as kinds
+from analyzer.findings.base import FindingKind
 from analyzer.reading.geometry import Point
 from analyzer.reading.joins import Netting
 from analyzer.reading.netlisting import NetNames
@@ -83,7 +84,7 @@ def check_pins(
                 _report(kinds.POWER_PIN_LOOSE, placed, f"({placed.pin.name}) is not connected", report)
 
 
-def _report(kind: kinds.FindingKind, placed: PlacedPin, what: str, report: Report) -> None:
+def _report(kind: FindingKind, placed: PlacedPin, what: str, report: Report) -> None:
     owner = placed.owner
     place = owner.sheet.drawing.place(placed.at, owner.sheet.name)
     report.add(kind, owner.reference, f"{owner.reference}.{placed.pin.number} {what}", place, key=owner.key)

@@ -23,6 +23,11 @@ Flags = tuple[bool, bool, bool]
 """(populated, in the bill of materials, on the board)."""
 
 
+def both(one: Flags, other: Flags) -> Flags:
+    """The marks of a thing inside another: each must hold for both."""
+    return one[0] and other[0], one[1] and other[1], one[2] and other[2]
+
+
 @dataclass(frozen=True, slots=True)
 class Label:
     """A label: `kind` is "local", "global" or "hierarchical"."""

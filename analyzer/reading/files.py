@@ -54,9 +54,7 @@ class Files:
         data = read_regular(path, most, name)
         self._bytes += len(data)
         if self._bytes > limits.PROJECT_BYTES:
-            raise InputError(
-                Fault(f"the project's files together exceed {limits.PROJECT_BYTES // 2**20} MiB", name)
-            )
+            raise InputError(Fault(f"the project's files together exceed {limits.PROJECT_BYTES // 2**20} MiB", name))
         self.inputs[name] = InputFile(name, hashlib.sha256(data).hexdigest())
         return data
 

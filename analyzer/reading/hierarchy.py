@@ -9,9 +9,10 @@ from pathlib import Path
 from analyzer import limits
 from analyzer.errors import InputError
 from analyzer.findings import reading as kinds
-from analyzer.reading.drawing import Drawing, Flags, SheetSymbol, Usage, read_drawing
+from analyzer.reading.drawing import Drawing, Flags, SheetSymbol, Usage, both, read_drawing
 from analyzer.reading.files import Files, OutsideError
 from analyzer.reading.report import Report
+from analyzer.reading.variants import changed_flags
 
 ALL: Flags = (True, True, True)
 
@@ -39,7 +40,6 @@ class SheetInstance:
         symbol: The sheet symbol on the parent; None for a root.
         parent: The instance that symbol stands on.
         flags: Marks inherited from the sheet symbols above.
-        usage: The use of the sheet symbol, for variants.
         children: Uses below, by position of the sheet symbol in the parent's drawing.
     """
 
@@ -52,14 +52,14 @@ class SheetInstance:
     symbol: SheetSymbol | None = None
     parent: SheetInstance | None = None
     flags: Flags = ALL
-    usage: Usage | None = None
     children: dict[int, SheetInstance] = field(default_factory=dict)
 
 
 class Hierarchy:
     """Reads the files of a project sheet by sheet, each file once."""
 
-    def __init__(self, files: Files, report: Report) -> None:
+    def __init__(self, files: Files, report: Report, variant: str | None = None) -> None:
+        self._variant = variant
         self._files = files
         self._report = report
         self._drawings: dict[Path, Drawing | None] = {}
@@ -125,11 +125,7 @@ class Hierarchy:
             drawing = self._drawing(target, where, sheet.file)
             if drawing is None:
                 continue
-            flags: Flags = (
-                parent.flags[0] and sheet.flags[0],
-                parent.flags[1] and sheet.flags[1],
-                parent.flags[2] and sheet.flags[2],
-            )
+            usage = next((usage for usage in sheet.usages if usage.path == parent.path), None)
             child = SheetInstance(
                 drawing,
                 f"{parent.path}/{sheet.uuid}",
@@ -139,12 +135,16 @@ class Hierarchy:
                 self._next(),
                 sheet,
                 parent,
-                flags,
-                next((usage for usage in sheet.usages if usage.path == parent.path), None),
+                both(parent.flags, self._flags(sheet, usage, parent.drawing.version)),
             )
             parent.children[position] = child
             self.instances.append(child)
             queue(child, (*trail, target))
+
+    def _flags(self, sheet: SheetSymbol, usage: Usage | None, version: int) -> Flags:
+        if self._variant is None or usage is None:
+            return sheet.flags
+        return changed_flags(sheet.flags, usage.variants, self._variant, version)
 
     def _next(self) -> int:
         return len(self.instances) + 1
@@ -196,7 +196,7 @@ class Hierarchy:
 
 
 def _in_path(name: str) -> str:
-    return name.replace("/", "{slash}")
+    return name.strip().replace("/", "{slash}")
 
 
 def _near_name(path: Path) -> str:

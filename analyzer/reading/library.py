@@ -68,6 +68,11 @@ class LibrarySymbol:
     fields: dict[str, str]
     node: Node
 
+    @property
+    def names_nets(self) -> bool:
+        """Whether its pins may name a net; those of flags and other symbols with a "#" reference may not."""
+        return not self.fields.get("Reference", "").startswith("#")
+
     def pins_of(self, unit: int, style: int) -> tuple[LibraryPin, ...]:
         """The pins one placed unit shows in one body style."""
         return tuple(pin for pin in self.pins if pin.unit in {0, unit} and pin.style in {0, style})

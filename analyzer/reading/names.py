@@ -8,9 +8,7 @@ from enum import IntEnum
 
 from analyzer.reading.placement import PlacedPin, Placement
 
-_ESCAPED = re.compile(
-    r"\{(dblquote|quote|lt|gt|backslash|slash|bar|comma|colon|space|dollar|tab|return|brace)\}"
-)
+_ESCAPED = re.compile(r"\{(dblquote|quote|lt|gt|backslash|slash|bar|comma|colon|space|dollar|tab|return|brace)\}")
 _CHARACTERS = {
     "dblquote": '"',
     "quote": "'",

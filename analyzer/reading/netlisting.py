@@ -58,8 +58,9 @@ def name_nets(placements: list[Placement], netting: Netting, style: UnitStyle) -
 
 
 def _automatic(members: list[PlacedPin], style: UnitStyle, *, unconnected: bool) -> tuple[str, PlacedPin]:
+    able = [pin for pin in members if pin.owner.flags[2] and pin.owner.library and pin.owner.library.names_nets]
     names = [
-        (pin_name(pin, style, unconnected=unconnected or pin.pin.kind == "no_connect"), pin) for pin in members
+        (pin_name(pin, style, unconnected=unconnected or pin.pin.kind == "no_connect"), pin) for pin in able or members
     ]
     return min(names, key=lambda pair: ("-Pad" in pair[0], pair[0], _driver_key(pair[1])))
 
@@ -69,8 +70,9 @@ DriverKey = tuple[tuple[tuple[int, int | str], ...], tuple[tuple[int, int | str]
 
 def _driver_key(placed: PlacedPin) -> DriverKey:
     owner = placed.owner
-    # library pins have y downwards; KiCad goes through them as the library drew them, top pin last
-    return natural_key(owner.reference), natural_key(placed.pin.number), (-placed.pin.at[1], placed.pin.at[0]), owner.key
+    x, y = placed.pin.at
+    # pins of the same number are told apart by where the library drew them, from below
+    return natural_key(owner.reference), natural_key(placed.pin.number), (-y, x), owner.key
 
 
 def _unused(name: str, taken: set[str]) -> str:

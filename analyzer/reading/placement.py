@@ -7,7 +7,8 @@ from dataclasses import dataclass, field
 
 from analyzer import limits
 from analyzer.findings import reading as kinds
-from analyzer.reading.drawing import Drawing, Flags, Symbol, Usage
+from analyzer.reading.areas import areas_of, flags_from
+from analyzer.reading.drawing import Drawing, Flags, Symbol, Usage, both
 from analyzer.reading.geometry import Point, turned
 from analyzer.reading.hierarchy import SheetInstance
 from analyzer.reading.library import LibraryPin, LibrarySymbol
@@ -82,9 +83,13 @@ def place_all(
     offsets: dict[tuple[int, str, int, int, int, str], list[tuple[LibraryPin, Point]]] = {}
     pins = 0
     for sheet in instances:
+        areas = areas_of(sheet.drawing)
         for symbol in sheet.drawing.symbols:
             usage = _usage(symbol, sheet, old_usages, project)
             placement = _place(sheet, symbol, usage, variant)
+            if areas:
+                left = flags_from(areas, symbol, placement.library, placement.unit)
+                placement.flags = both(placement.flags, left)
             shape = (
                 id(sheet.drawing),
                 symbol.library_name,
@@ -138,10 +143,8 @@ def _place(sheet: SheetInstance, symbol: Symbol, usage: Usage | None, variant: s
             fields.update(changed_fields(usage.variants, variant))
             flags = changed_flags(flags, usage.variants, variant, sheet.drawing.version)
     fields["Reference"] = reference
-    above = sheet.flags
-    flags = (flags[0] and above[0], flags[1] and above[1], flags[2] and above[2])
     library = sheet.drawing.library_symbol(symbol.library_name)
-    return Placement(sheet, symbol, library, reference, unit, fields, flags)
+    return Placement(sheet, symbol, library, reference, unit, fields, both(flags, sheet.flags))
 
 
 def _offsets(placement: Placement) -> list[tuple[LibraryPin, Point]]:

@@ -28,7 +28,7 @@ def read_schematic(project: Project, files: Files, report: Report, settings: Set
     Raises:
         InputError: If the root sheet cannot be read; everything else becomes a finding.
     """
-    hierarchy = Hierarchy(files, report)
+    hierarchy = Hierarchy(files, report, variant)
     hierarchy.read(project.roots)
     sheets = hierarchy.instances
     placements = place_all(sheets, sheets[0].drawing.old_usages, project.name, variant, report)
@@ -88,9 +88,7 @@ def _wire(
             return Bus((), (), is_vector=True)
         return found
 
-    return [
-        wire_sheet(sheet, on_sheet[sheet.number], netting, scope.on(sheet), bus, report) for sheet in sheets
-    ]
+    return [wire_sheet(sheet, on_sheet[sheet.number], netting, scope.on(sheet), bus, report) for sheet in sheets]
 
 
 def _join_sheet_pins(wired: list[WiredSheet], netting: Netting) -> None:
@@ -111,4 +109,3 @@ def _notes(sheets: list[SheetInstance], scope: Scope) -> list[Note]:
         for text, at in sheet.drawing.notes
         if text.strip()
     ]
-

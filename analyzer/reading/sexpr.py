@@ -78,13 +78,13 @@ def parse(data: bytes, file: str, root: str) -> Node:
 
 
 def decode(data: bytes, file: str) -> str:
-    """The text of a file that must be UTF-8, without byte-order mark and with "\\n" line ends.
+    """The text of a file that must be UTF-8, without byte-order mark and with plain line ends.
 
     Raises:
         InputError: If it is empty, UTF-16, holds NUL bytes or merge markers, or is not UTF-8.
     """
     if not data.strip():
-        raise InputError(Fault("the file is empty", file, remedy="Restore it from a backup, or save it again in KiCad."))
+        raise InputError(Fault("the file is empty", file, remedy="Restore it from a backup or save it in KiCad."))
     if data.startswith((b"\xff\xfe", b"\xfe\xff")):
         raise InputError(Fault("the file is UTF-16, not UTF-8", file, remedy="Save it as UTF-8; KiCad writes UTF-8."))
     if data.startswith(b"PK\x03\x04"):
@@ -224,9 +224,7 @@ def _diagnose(source: str, file: str) -> Fault | None:
             opened.pop()
             ended = not opened
         elif what == '"':
-            return Fault(
-                "a string that begins here never ends", file, f"line {_line(source, at)}", "Restore the file."
-            )
+            return Fault("a string that begins here never ends", file, f"line {_line(source, at)}", "Restore the file.")
         elif ended:
             return Fault("there is text after the end of the data", file, f"line {_line(source, at)}")
         elif (end := at + len(what)) < len(source) and not (source[end].isspace() or source[end] == ")"):

@@ -77,7 +77,7 @@ def _sum(match: re.Match[str]) -> str:
 
 
 def _value(node: ast.AST) -> float:
-    if isinstance(node, ast.Constant) and type(node.value) in {int, float}:
+    if isinstance(node, ast.Constant) and isinstance(node.value, int | float):
         return float(node.value)
     if isinstance(node, ast.BinOp) and type(node.op) in _OPERATIONS:
         return _OPERATIONS[type(node.op)](_value(node.left), _value(node.right))

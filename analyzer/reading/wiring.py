@@ -145,8 +145,7 @@ def wire_sheet(
             if bus is not None:
                 line = buses.tap(at)
                 line = netting.joins.new() if line is None else line
-                label = BusLabel(text, "pin", bus, line)
-                wired.bus_pins[position, text] = label
+                wired.bus_pins[position, text] = BusLabel(text, "pin", bus, line)
                 continue
             under = wires.tap(at) if at in occupied or wires.index.under(at) else None
             node = netting.joins.new() if under is None else under
