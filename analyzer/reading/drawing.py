@@ -10,7 +10,7 @@ from analyzer.circuit import Place
 from analyzer.errors import Fault, InputError
 from analyzer.findings import reading as kinds
 from analyzer.reading.geometry import GRID_PER_MM, Point, point
-from analyzer.reading.library import LibrarySymbol, read_fields, read_symbol
+from analyzer.reading.library import TILDE_IS_A_NAME, LibrarySymbol, read_fields, read_symbol
 from analyzer.reading.report import Report
 from analyzer.reading.sexpr import Node, every, first, flag, parse, text, word
 
@@ -402,6 +402,8 @@ def _symbol(drawing: Drawing, node: Node) -> bool:
             fitted = entry != "yes"
         elif key == "instances":
             usages = _usages(child)
+    empty = {"~", " "} if drawing.version < TILDE_IS_A_NAME else {" "}
+    fields = {name: "" if value in empty else value for name, value in fields.items()}
     turns = _quarter_turns(angle)
     if at is None or turns is None or unit is None or style is None or not lib_id:
         return False

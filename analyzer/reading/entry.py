@@ -17,9 +17,14 @@ def read_board(path: Path, settings: Settings, variant: str | None, *, allow_out
     """See `analyzer.reading.read`."""
     report = Report()
     if path.suffix.lower() in NETLIST_SUFFIXES:
-        from analyzer.reading.netlist import read_netlist
+        from analyzer.reading.netlist import read_netlist, schematic_beside
 
-        return read_netlist(path, settings)
+        beside = schematic_beside(path)
+        if beside is None:
+            return read_netlist(path, settings, variant)
+        message = f"{beside.name} lies beside {path.name} and was read instead: it holds more than a netlist"
+        report.add(kinds.SCHEMATIC_PREFERRED, path.name, message, path.name)
+        path = beside
     found = find_schematic(path)
     files = Files(found.parent, allow_outside)
     project = load_project(found, files, report)

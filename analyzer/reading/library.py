@@ -10,7 +10,7 @@ from analyzer.reading.geometry import Point, point
 from analyzer.reading.sexpr import Node, every, first, flag, text, word
 
 TILDE_IS_A_NAME = 20250318
-"""From this format on a pin named "~" has that name; before, "~" means no name."""
+"""From this format on a pin named "~" has that name; before, "~" means no name, in fields too."""
 
 
 @dataclass(frozen=True, slots=True)

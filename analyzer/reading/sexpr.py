@@ -43,20 +43,21 @@ KINDS = {
 }
 
 
-def parse(data: bytes, file: str, root: str) -> Node:
+def parse(data: bytes, file: str, root: str, *, bare_words: bool = False) -> Node:
     """Read one file into nested lists.
 
     Args:
         data: The bytes of the file.
         file: Its name for messages.
         root: Keyword the outermost expression must have, e.g. "kicad_sch".
+        bare_words: Whether words stand without quotes, as in netlists of KiCad 5; they are kept as written.
 
     Raises:
         InputError: If the bytes are no such file; the message says what they are, and where they break.
     """
     source = decode(data, file)
     _check_kind(source, file, root)
-    guarded = source.replace("\\\\", GUARD)
+    guarded = (quote_words(source) if bare_words else source).replace("\\\\", GUARD)
     if not _WELL_QUOTED.match(guarded):
         raise InputError(_diagnose(source, file) or Fault("a string runs into the next word", file))
     from kiutils.utils.sexpr import parse_sexp
