@@ -162,12 +162,6 @@ SCHEMATIC_PREFERRED = FindingKind(
     "A netlist was given and the schematic it was made from lies beside it: the schematic was read instead.",
     "Nothing to do; move the netlist elsewhere to have it read by itself.",
 )
-VARIANT_UNKNOWN = FindingKind(
-    "variant-unknown",
-    Weight.OPEN,
-    "The design variant asked for is not defined in the project; the base design was read.",
-    "Choose one of the variants named in the message.",
-)
 POWER_PIN_LOOSE = FindingKind(
     "power-pin-unconnected",
     Weight.NOTE,

@@ -28,3 +28,14 @@ def read(
     from analyzer.reading.entry import read_board
 
     return read_board(path, settings, variant, allow_outside=allow_outside)
+
+
+def variants(path: Path) -> tuple[str, ...]:
+    """Names of the design variants of a project or netlist, in the order they are defined.
+
+    Raises:
+        InputError: If the input is missing or unreadable.
+    """
+    from analyzer.reading.entry import variant_names
+
+    return variant_names(path)

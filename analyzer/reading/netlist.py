@@ -16,6 +16,7 @@ from analyzer.reading.board_file import copper_layers
 from analyzer.reading.files import Files, read_regular
 from analyzer.reading.netlist_names import NameWriter
 from analyzer.reading.netlist_tree import Branch, read_tree
+from analyzer.reading.project import check_variant
 from analyzer.reading.report import Report
 from analyzer.settings import Settings
 
@@ -47,6 +48,20 @@ def read_netlist(path: Path, settings: Settings, variant: str | None = None) -> 
     return _Reader(path, root, settings, variant).circuit(hashlib.sha256(data).hexdigest())
 
 
+def names_of_variants(path: Path) -> tuple[str, ...]:
+    """Names of the design variants a netlist lists.
+
+    Raises:
+        InputError: If the file is no netlist, damaged, or beyond the limits.
+    """
+    return _variants(read_tree(read_regular(path, limits.NETLIST_BYTES, path.name), path.name))
+
+
+def _variants(root: Branch) -> tuple[str, ...]:
+    holder = root.first("variants")
+    return tuple(each.text_of("name") for each in (holder.all("variant") if holder else ()))
+
+
 class _Reader:
     """Carries what the parts of one netlist have in common while it is read."""
 
@@ -56,6 +71,7 @@ class _Reader:
         self._settings = settings
         self._variant = variant
         self._report = Report()
+        check_variant(variant, _variants(root), path.name)
         design = root.first("design")
         self._tool = design.text_of("tool") if design else ""
         self._source = design.text_of("source") if design else ""
@@ -75,7 +91,6 @@ class _Reader:
             raise InputError(Fault(f"more than {limits.NETLIST_PARTS} parts", self._path.name))
         nodes = self._nodes(nets)
         library = self._library()
-        self._check_variant()
         components: list[Component] = []
         seen: set[str] = set()
         for comp in sorted(comps, key=lambda each: natural_key(each.text_of("ref"))):
@@ -214,15 +229,6 @@ class _Reader:
                     {entry.text_of("name"): entry.text for entry in (fields.all("field") if fields else ())},
                 )
         return {}, {}
-
-    def _check_variant(self) -> None:
-        if self._variant is None:
-            return
-        holder = self._root.first("variants")
-        names = [each.text_of("name") for each in (holder.all("variant") if holder else ())]
-        if self._variant not in names:
-            message = f"there is no variant '{self._variant}'; the netlist defines: {', '.join(names) or 'none'}"
-            self._report.add(kinds.VARIANT_UNKNOWN, self._variant, message, self._path.name)
 
     def _cannot_contain(self) -> tuple[str, ...]:
         missing = ["free texts of the sheets", "positions of parts"]

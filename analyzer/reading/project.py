@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import difflib
 import json
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
@@ -70,6 +71,18 @@ def find_schematic(path: Path) -> Path:
         remedy = "Open and save it in KiCad 6 or newer, or give its netlist (.net or .xml)."
         raise InputError(Fault("only a project of KiCad 5 or older is in this folder", str(path), remedy=remedy))
     raise InputError(Fault("no KiCad project is in this folder", str(path), remedy="Give a .kicad_pro or .kicad_sch."))
+
+
+def check_variant(variant: str | None, known: tuple[str, ...], file: str) -> None:
+    """Refuse a variant the design does not define: reading another one in its place could hide a fault.
+
+    Raises:
+        InputError: If it is not among those known.
+    """
+    if variant is not None and variant not in known:
+        near = difflib.get_close_matches(variant, known, 1)
+        remedy = f"Did you mean '{near[0]}'?" if near else f"Defined: {', '.join(known) or 'none'}."
+        raise InputError(Fault(f"there is no design variant '{variant}'", file, remedy=remedy))
 
 
 def load_project(path: Path, files: Files, report: Report) -> Project:
