@@ -9,9 +9,10 @@ from pathlib import Path
 from analyzer import limits
 from analyzer.errors import InputError
 from analyzer.findings import reading as kinds
-from analyzer.reading.drawing import Drawing, Flags, SheetSymbol, Usage, both, read_drawing
+from analyzer.reading.drawing import Drawing, Flags, SheetSymbol, Usage, both
 from analyzer.reading.files import Files, OutsideError
 from analyzer.reading.report import Report
+from analyzer.reading.sheet_file import read_drawing
 from analyzer.reading.variants import changed_flags
 
 ALL: Flags = (True, True, True)

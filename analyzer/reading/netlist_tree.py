@@ -8,7 +8,8 @@ from typing import Any
 
 from analyzer import limits
 from analyzer.errors import Fault, InputError
-from analyzer.reading.sexpr import Node, decode, parse, text
+from analyzer.reading.plain_text import decode
+from analyzer.reading.sexpr import Node, parse, text
 
 
 @dataclass(slots=True)
