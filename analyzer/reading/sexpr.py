@@ -9,6 +9,8 @@ from __future__ import annotations
 
 import gc
 import re
+from collections.abc import Iterator
+from contextlib import contextmanager
 from typing import Any
 
 from analyzer import limits
@@ -44,20 +46,31 @@ def parse(data: bytes, file: str, root: str, *, bare_words: bool = False) -> Nod
         raise InputError(diagnose(source, file) or Fault("a string runs into the next word", file))
     from kiutils.utils.sexpr import parse_sexp
 
-    collecting = gc.isenabled()
-    gc.disable()  # nothing is garbage here, but a million new lists would make the collector search every time
-    try:
-        outer = parse_sexp(f"({guarded})")  # in parentheses of our own, so that text after the root shows
-    except (AssertionError, IndexError):
-        outer = []
-    finally:
-        if collecting:
-            gc.enable()
+    with no_collector():
+        try:
+            outer = parse_sexp(f"({guarded})")  # in parentheses of our own, so that text after the root shows
+        except (AssertionError, IndexError):
+            outer = []
     if len(outer) != 1 or not isinstance(outer[0], list):
         raise InputError(diagnose(source, file) or Fault("the parentheses do not match", file))
     tree: Node = outer[0]
     check_nesting(tree, file)
     return tree
+
+
+@contextmanager
+def no_collector() -> Iterator[None]:
+    """Switch the cyclic garbage collector off for a while.
+
+    Reading makes a million lists and no garbage, and every so many new lists the collector would search them all.
+    """
+    was_on = gc.isenabled()
+    gc.disable()
+    try:
+        yield
+    finally:
+        if was_on:
+            gc.enable()
 
 
 def text(atom: Any) -> str:
