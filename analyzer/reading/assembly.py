@@ -135,9 +135,7 @@ def _component(
         lib_id=head.symbol.lib_id,
         footprint=expand(head, head.fields.get("Footprint", "")),
         fields=fields,
-        description=fields.get("Description")
-        or library_fields.get("Description")
-        or library_fields.get("ki_description", ""),
+        description=_described(fields, library_fields),
         keywords=library_fields.get("ki_keywords", ""),
         pins=_pins(part, netting, names, report),
         place=place,
@@ -145,6 +143,13 @@ def _component(
         in_bom=flags[1],
         on_board=flags[2],
     )
+
+
+def _described(fields: dict[str, str], library_fields: dict[str, str]) -> str:
+    for text in (fields.get("Description"), library_fields.get("Description"), library_fields.get("ki_description")):
+        if text and text.strip():
+            return text
+    return ""
 
 
 def declared_unfitted(fields: dict[str, str], value: str, settings: Settings) -> bool:
