@@ -103,6 +103,9 @@ class Loads:
     input_amps: Mapping[tuple[str, str], Evidence] = field(default_factory=dict)
     """(part key, channel) → current taken from its input rail, where known."""
 
+    possible: tuple[Gap, ...] = ()
+    """Parts that may draw without a supply pin to show it (connectors with signals, transistors); no gaps."""
+
     @property
     def gaps(self) -> tuple[Gap, ...]:
         """All gaps, rail by rail."""
