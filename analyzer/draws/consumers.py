@@ -1,0 +1,116 @@
+"""Which parts draw from which rail, whether or not anybody has said how much.
+
+Sure consumers, one for each (part, rail): a pin of type "power input" that is neither ground nor a regulator's input;
+a supply-named pin of another type on a chip that has no such pin; relays, motors, sounders and the like; a connector
+that carries nothing but power, or that supplies by its very kind. They are gaps until a current is known.
+
+Possible ones: connectors with signals beside a rail, transistors, chips whose rail pins have other names. Their own
+list: each is named, none holds up a verdict, unless a rail has nothing else that could draw from it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+from analyzer.circuit import Component, Pin
+from analyzer.draws.board import Board
+from analyzer.draws.kinds import (
+    CHIPS,
+    IN_SERIES,
+    NO_DIRECT_CURRENT,
+    SURE_LOADS,
+    is_connector,
+    is_led,
+    is_outlet,
+    letters,
+    named_supply,
+    takes_supply,
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Consumer:
+    """A part that draws from a rail.
+
+    Attributes:
+        component: The part.
+        rail: Name of the rail.
+        pins: Its pins that draw from this rail.
+        through: Reference of the part between the rail and the pins, "" if there is none.
+        is_sure: False for a part that only may draw.
+    """
+
+    component: Component
+    rail: str
+    pins: tuple[Pin, ...]
+    through: str = ""
+    is_sure: bool = True
+
+
+def find_consumers(board: Board) -> tuple[Consumer, ...]:
+    """All consumers, in natural order of reference, then in pin order."""
+    found: list[Consumer] = []
+    for component in board.fitted:
+        if component.key not in board.regulators:
+            found += _of(board, component)
+    return tuple(consumer for consumer in found if (consumer.component.ref, consumer.rail) not in board.feeders)
+
+
+def unfed_supplies(board: Board) -> Iterable[tuple[Component, Pin]]:
+    """Supply pins on a named net that no rail reaches."""
+    for component in board.fitted:
+        if component.key in board.regulators or is_connector(component):
+            continue
+        for pin in component.pins:
+            net = board.circuit.net_by_name.get(pin.net)
+            is_named = net is not None and net.is_named
+            if is_named and takes_supply(pin) and not board.rail(pin.net) and not board.supplying(pin):
+                yield component, pin
+
+
+def _of(board: Board, component: Component) -> list[Consumer]:
+    kind = letters(component.ref)
+    if is_connector(component):
+        return _connector(board, component)
+    supply = [pin for pin in component.pins if takes_supply(pin)]
+    if found := _by_rail(board, component, supply):
+        return found
+    if kind in NO_DIRECT_CURRENT - CHIPS or (kind in IN_SERIES and len(component.pins) <= 2) or is_led(component):
+        return []
+    if not supply and (found := _by_rail(board, component, [p for p in component.pins if named_supply(component, p)])):
+        return found
+    if supply:
+        return []
+    return _on_rails(board, component, is_sure=kind in SURE_LOADS)
+
+
+def _by_rail(board: Board, component: Component, pins: Iterable[Pin]) -> list[Consumer]:
+    at: dict[str, tuple[list[Pin], str]] = {}
+    for pin in pins:
+        for rail, through in board.supplying(pin):
+            at.setdefault(rail, ([], through))[0].append(pin)
+    return [Consumer(component, rail, tuple(pins), through) for rail, (pins, through) in at.items()]
+
+
+def _on_rails(board: Board, component: Component, *, is_sure: bool) -> list[Consumer]:
+    at: dict[str, list[Pin]] = {}
+    for pin in component.pins:
+        rail = board.live_rail(pin.net)
+        if rail and pin.kind not in ("no_connect", "power_out"):
+            at.setdefault(rail.name, []).append(pin)
+    if len(at) == 1 and is_sure and len({pin.net for pin in component.pins}) == 1:
+        return []  # both ends on one net: no current
+    return [Consumer(component, rail, tuple(pins), is_sure=is_sure) for rail, pins in at.items()]
+
+
+def _connector(board: Board, component: Component) -> list[Consumer]:
+    wired = [pin for pin in component.pins if pin.kind != "no_connect" and _is_wired(board, pin)]
+    only_power = all(board.rail(pin.net) for pin in wired) and len({board.rails.of_net[p.net] for p in wired}) > 1
+    found = _on_rails(board, component, is_sure=only_power or is_outlet(component))
+    # on a rail that nothing on the board makes, a connector is the source rather than a load
+    return [consumer for consumer in found if consumer.rail in board.made_here]
+
+
+def _is_wired(board: Board, pin: Pin) -> bool:
+    return len(board.circuit.on_net.get(pin.net, ())) > 1 or board.rail(pin.net) is not None

@@ -1,0 +1,89 @@
+"""What leads current from rail to rail: the channels of regulators and passages, and filter resistors."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from functools import partial
+
+from analyzer.circuit import Component
+from analyzer.draws.board import Board
+from analyzer.draws.resistances import Resistances, Resistor, is_rail, rail_node, rail_of
+from analyzer.draws.resistors import gap
+from analyzer.draws.tree import Edge
+from analyzer.evidence import Evidence, Grade
+from analyzer.load import Gap
+from analyzer.quantity import Span
+from analyzer.rail import Wiring
+from analyzer.rule import Role, Topology
+
+InputCurrent = Callable[[Wiring, Span], Evidence | None]
+"""(wiring, load of its output [A]) → current from its input rail [A], None if it cannot be known."""
+
+
+def find_edges(board: Board, network: Resistances, input_current: InputCurrent) -> tuple[list[Edge], list[Gap]]:
+    """The edges of channels, and gaps for those whose input rail is not known."""
+    edges: list[Edge] = []
+    gaps: list[Gap] = []
+    between = {frozenset((resistor.a, resistor.b)) for resistor in network.resistors}
+    for wiring in board.rails.wirings:
+        if not wiring.part.component.fitted or wiring.is_off:
+            continue
+        above, below = _live(board, wiring.input_rail), _live(board, wiring.output_rail)
+        if above is None:
+            gaps += _lost(board, wiring)
+            continue
+        if above == below:
+            continue  # bypassed: nothing flows through it
+        fed = frozenset((rail_node(above), rail_node(below or "")))
+        if wiring.channel.topology is Topology.SHUNT and fed in between:
+            continue  # the resistor in front of it is in the network
+        takes = partial(input_current, wiring)
+        share = _share(board, wiring, below)
+        edges.append(Edge(wiring.part.component, wiring.channel.name, above, below, takes, share))
+    return edges, gaps
+
+
+def filter_resistors(board: Board, network: Resistances) -> tuple[list[Edge], frozenset[str]]:
+    """Resistors that alone feed a rail, as edges; and their keys. What flows through one is the load of that rail."""
+    edges = []
+    for resistor in network.resistors:
+        if not (is_rail(resistor.a) and is_rail(resistor.b)):
+            continue
+        a, b = (board.rails.by_name[rail_of(node)] for node in (resistor.a, resistor.b))
+        if a.is_ground or b.is_ground or bool(a.feeds) == bool(b.feeds):
+            continue
+        above, below = (a, b) if a.feeds else (b, a)
+        edges.append(Edge(resistor.component, "", above.name, below.name, partial(_passed, resistor, below.name)))
+    return edges, frozenset(edge.component.key for edge in edges)
+
+
+def _passed(resistor: Resistor, below: str, load: Span) -> Evidence:
+    component = resistor.component
+    source = f"{component.place}, {component.ref}"
+    return Evidence(f"current through {component.ref}", load, "A", source, Grade.DERIVED, f"I = load of {below}")
+
+
+def _live(board: Board, name: str | None) -> str | None:
+    rail = board.rails.by_name.get(name) if name else None
+    return None if rail is None or rail.is_ground else rail.name
+
+
+def _share(board: Board, wiring: Wiring, below: str | None) -> float:
+    if below is None:
+        return 1.0
+    feeds = board.rails.by_name[below].feeds
+    own = [feed for feed in feeds if feed.ref == wiring.part.ref and feed.channel == wiring.channel.name]
+    return own[0].share if own else 1.0
+
+
+def _lost(board: Board, wiring: Wiring) -> list[Gap]:
+    """A part whose input rail was not found may hang on any rail that its input pins can be traced to."""
+    component: Component = wiring.part.component
+    rails = [
+        rail
+        for pin in wiring.channel.pins.get(Role.INPUT, ())
+        if wiring.input_rail is None
+        for rail, _ in board.supplying(pin)
+    ]
+    why = f"load of {component.ref} not known: its input rail was not found"
+    return [gap(component, rail, why) for rail in dict.fromkeys(rails)]
