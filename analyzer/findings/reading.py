@@ -65,6 +65,12 @@ NO_SYMBOL = FindingKind(
     "The file lacks the library symbol of a part, so its pins are unknown.",
     "In KiCad, update the symbols from the library and save.",
 )
+LIBRARY_TWICE = FindingKind(
+    "library-symbol-twice",
+    Weight.OPEN,
+    "A file holds two different library symbols of one name, so it is unknown which pins a part has.",
+    "In KiCad, update the symbols from the library and save.",
+)
 NO_UNIT = FindingKind(
     "unit-unknown",
     Weight.OPEN,

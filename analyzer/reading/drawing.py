@@ -93,6 +93,7 @@ class Drawing:
         version: Format version.
         uuid: The file's own uuid, "" in early files.
         library: Expressions of the library symbols by name.
+        twice: Names that two different library symbols bear.
         old_usages: Symbol uuid path → use, of files before 20221002 (root file only).
         title: Title-block entries by upper-case name.
     """
@@ -112,6 +113,7 @@ class Drawing:
     aliases: dict[str, tuple[str, ...]] = field(default_factory=dict)
     areas: list[Node] = field(default_factory=list)
     library: dict[str, Node] = field(default_factory=dict)
+    twice: list[str] = field(default_factory=list)
     old_usages: dict[str, Usage] = field(default_factory=dict)
     title: dict[str, str] = field(default_factory=dict)
     _symbols_read: dict[str, LibrarySymbol | None] = field(default_factory=dict)

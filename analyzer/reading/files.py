@@ -36,14 +36,19 @@ class Files:
         """Path for messages and the list of inputs: relative to the project folder, with forward slashes."""
         return Path(os.path.relpath(path, self.root)).as_posix()
 
-    def read(self, path: Path, most: int = limits.SHEET_BYTES) -> bytes:
+    def read(self, path: Path, most: int = limits.SHEET_BYTES, *, asked_for: bool = False) -> bytes:
         """The bytes of a file.
+
+        Args:
+            path: The file.
+            most: Largest size accepted [bytes].
+            asked_for: Whether the user named this very file; then it may be a link to another folder.
 
         Raises:
             InputError: If it is missing, no regular file, too large, not readable, or outside the project.
         """
         name = self.name(path)
-        if not self.allow_outside and not is_inside(path, self.root):
+        if not (self.allow_outside or asked_for) and not is_inside(path, self.root):
             raise OutsideError(
                 Fault(
                     f"the file lies outside the project folder {self.root}",

@@ -78,7 +78,7 @@ class Hierarchy:
                 if drawing is None:
                     continue
             else:
-                drawing = read_drawing(self._files.read(root.path), self._files.name(root.path), self._report)
+                drawing = self._read_first(root.path)
                 self._drawings[root.path.resolve()] = drawing
             several = len(roots) > 1
             name = f"/{_in_path(root.name)}/" if several else "/"
@@ -86,6 +86,9 @@ class Hierarchy:
             top = SheetInstance(drawing, f"/{uuid}", f"/{uuid}/" if several else "/", name, 0, self._next())
             self.instances.append(top)
             self._below(top, root.path)
+
+    def _read_first(self, path: Path) -> Drawing:
+        return read_drawing(self._files.read(path, asked_for=True), self._files.name(path), self._report)
 
     def _below(self, top: SheetInstance, path: Path) -> None:
         # a stack instead of recursion; children are put on it in reverse so that they come off in file order

@@ -12,9 +12,10 @@ from typing import Any
 from analyzer import limits
 from analyzer.errors import Fault, InputError
 from analyzer.findings import reading as kinds
-from analyzer.reading.files import Files
+from analyzer.reading.files import Files, read_regular
 from analyzer.reading.hierarchy import Root
 from analyzer.reading.names import UnitStyle
+from analyzer.reading.plain_text import check_kind, decode
 from analyzer.reading.report import Report
 
 NETLIST_SUFFIXES = {".net", ".xml"}
@@ -56,6 +57,8 @@ def find_schematic(path: Path) -> Path:
         if path.suffix == ".sch":
             remedy = "Open and save it in KiCad 6 or newer, or give its netlist (.net or .xml)."
             raise InputError(Fault("this is a schematic of KiCad 5 or older", str(path), remedy=remedy))
+        if path.suffix not in {".kicad_sch", ".kicad_pro"}:
+            raise InputError(_other_kind(path))
         return path
     projects = _listed(path, ".kicad_pro")
     if len(projects) > 1:
@@ -71,6 +74,17 @@ def find_schematic(path: Path) -> Path:
         remedy = "Open and save it in KiCad 6 or newer, or give its netlist (.net or .xml)."
         raise InputError(Fault("only a project of KiCad 5 or older is in this folder", str(path), remedy=remedy))
     raise InputError(Fault("no KiCad project is in this folder", str(path), remedy="Give a .kicad_pro or .kicad_sch."))
+
+
+def _other_kind(path: Path) -> Fault:
+    name = path.name
+    remedy = "Give a .kicad_pro, a .kicad_sch, a netlist (.net, .xml), or a folder with one project."
+    start = decode(read_regular(path, limits.SHEET_BYTES, name), name)
+    try:
+        check_kind(start, name, "kicad_sch")
+    except InputError as error:
+        return replace(error.faults[0], remedy=remedy)
+    return Fault("this is a schematic, but its name does not end in .kicad_sch", name, remedy="Rename it.")
 
 
 def check_variant(variant: str | None, known: tuple[str, ...], file: str) -> None:

@@ -43,6 +43,9 @@ def read_drawing(data: bytes, file: str, report: Report) -> Drawing:
                     drawing.place(None),
                     lost=True,
                 )
+    for name in drawing.twice:
+        message = f"{file} holds two different library symbols named '{name}'; the first was used"
+        report.add(kinds.LIBRARY_TWICE, name, message, file, lost=True)
     return drawing
 
 
@@ -131,7 +134,9 @@ def _label(drawing: Drawing, node: Node) -> bool:
 def _library(drawing: Drawing, node: Node) -> bool:
     for child in node:
         if type(child) is list and len(child) > 1 and child[0] == "symbol":
-            drawing.library.setdefault(text(child[1]), child)
+            name = text(child[1])
+            if drawing.library.setdefault(name, child) != child:
+                drawing.twice.append(name)
     return True
 
 

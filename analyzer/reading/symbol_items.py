@@ -8,6 +8,9 @@ from analyzer.reading.geometry import Point, point
 from analyzer.reading.library import TILDE_IS_A_NAME, read_fields
 from analyzer.reading.sexpr import Node, every, first, flag, text, word
 
+NO_SUCH_UNIT = -1
+"""Stands for a unit that is no number: no library symbol has it, so the part is reported."""
+
 
 def take_old_usages(drawing: Drawing, node: Node) -> bool:
     """Take the uses listed in the root file (formats before 20221002)."""
@@ -28,6 +31,7 @@ def _usage(project: str, node: Node) -> Usage:
             reference = text(child[1])
         elif child[0] == "unit":
             unit = _integer(child[1])
+            unit = NO_SUCH_UNIT if unit is None else unit
         elif child[0] == "value":
             value = text(child[1])
         elif child[0] == "footprint":
