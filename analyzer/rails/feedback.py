@@ -13,10 +13,12 @@ from dataclasses import dataclass
 
 from analyzer.evidence import Evidence, Grade
 from analyzer.quantity import ZERO, Span
-from analyzer.rails.network import End, Leg, Network, Resistance
+from analyzer.rails.links import Groups
+from analyzer.rails.network import End, Network, Resistance
 from analyzer.rails.nodal import Branch, current_into, node_volts
 
-OUTPUT = "output"
+OUTPUT = "the output"
+GROUND = "the ground"
 _EXHAUSTIVE = 7
 
 
@@ -85,7 +87,7 @@ def solve_feedback(
     for leg in network.legs.values():
         if leg.end in (End.DRIVEN, End.RAIL) and leg.group not in drives:
             trouble.append(f"voltage of {leg.group} in the feedback network is not known")
-    if not network.legs_of(End.OUTPUT) and not any(leg.end is End.SWITCHED for leg in network.legs.values()):
+    if not network.legs_of(End.OUTPUT):
         trouble.append("no resistor leads from the feedback pin to the output")
     if trouble:
         return Solved(None, tuple(dict.fromkeys(trouble)))
@@ -106,7 +108,7 @@ def solve_feedback(
     if nominal is None:
         return Solved(None, ("the feedback network fixes no output voltage",))
     reasons = [drives[group].reason for group in sorted(drives) if drives[group].reason]
-    reasons += [f"{leg.ref} switches a leg of the divider" for leg in network.legs_of(End.SWITCHED)]
+    reasons += [f"{switch.ref} switches a leg of the divider" for switch in network.switches]
     reasons += [f"{item[0]} is adjustable" for item in network.trimmers]
     low, high = min(lows), max(highs)
     if reasons and reference.nominal > 0:
@@ -119,6 +121,7 @@ def solve_feedback(
 def _live(network: Network) -> tuple[Resistance, ...]:
     """Resistances that can carry current: dead ends pruned."""
     ends = {network.tap, *network.legs, *(node for item in network.trimmers for node in item[1:4])}
+    ends.update(node for switch in network.switches for pair in switch.pairs for node in pair)
     kept = list(network.resistances)
     while True:
         count: dict[str, int] = {}
@@ -134,8 +137,8 @@ def _live(network: Network) -> tuple[Resistance, ...]:
 def _choices(network: Network) -> list[_Choice]:
     """All positions of switched legs and trimmers; the first is "as drawn": switches open, trimmers in the middle."""
     options: list[list[_Choice]] = []
-    for leg in network.legs_of(End.SWITCHED):
-        options.append([_Choice(), _Choice(((leg.group, leg.to),))] if leg.to else [_Choice()])
+    for switch in network.switches:
+        options.append([_Choice(), *(_Choice((pair,)) for pair in switch.pairs)])
     for ref, first, wiper, last, span in network.trimmers:
         places = []
         for part in (0.5, 0.0, 1.0):
@@ -162,19 +165,22 @@ class _Solver:
         self, network: Network, live: Sequence[Resistance], across: str, driven: Sequence[str], choice: _Choice
     ) -> None:
         rename = {leg.group: OUTPUT for leg in network.legs_of(End.OUTPUT)}
-        rename.update({leg.group: "ground" for leg in network.legs_of(End.GROUND)})
+        rename.update({leg.group: GROUND for leg in network.legs_of(End.GROUND)})
+        merged = Groups()
         for near, far in choice.merged:
-            rename[near] = rename.get(far, far)
-        self.tap = rename.get(network.tap, network.tap)
-        self.live = [(item.ref, rename.get(item.one, item.one), rename.get(item.other, item.other)) for item in live]
-        self.added = [
-            Branch(item.name, rename.get(item.one, item.one), rename.get(item.other, item.other), item.ohms)
-            for item in choice.added
-        ]
+            merged.join(rename.get(near, near), rename.get(far, far))
+        # a merged set keeps the name of the member whose voltage is fixed
+        keep = {merged.of(node): node for node in (*sorted(driven), network.tap, OUTPUT, GROUND)}
+
+        def name(group: str) -> str:
+            root = merged.of(rename.get(group, group))
+            return keep.get(root, root)
+
+        self.tap = name(network.tap)
+        self.live = [(item.ref, name(item.one), name(item.other)) for item in live]
+        self.added = [Branch(item.name, name(item.one), name(item.other), item.ohms) for item in choice.added]
         self.driven = driven
         self.upper = across == "upper"
-        open_ends = {leg.group for leg in network.legs_of(End.SWITCHED)} - set(rename)
-        self.open_ends = open_ends
 
     def volts(self, numbers: Sequence[float]) -> float | None:
         """Output voltage for one set of numbers, in the order: resistors, reference, pin current, drives."""
@@ -183,11 +189,13 @@ class _Solver:
         branches = [
             Branch(name, one, other, ohms)
             for (name, one, other), ohms in zip(self.live, numbers, strict=False)
-            if one != other and not self.open_ends.intersection((one, other))
+            if one != other
         ]
         branches += [branch for branch in self.added if branch.one != branch.other]
-        branches = _reachable(branches, self.tap)
-        fixed = {"ground": 0.0, **dict(zip(self.driven, numbers[count + 2 :], strict=True))}
+        fixed = {GROUND: 0.0, **dict(zip(self.driven, numbers[count + 2 :], strict=True))}
+        branches = _reachable(branches, {*fixed, OUTPUT, self.tap})
+        if not branches or self.tap in fixed or self.tap == OUTPUT:
+            return None
         wanted = -pin_current if self.upper else pin_current
         flows = []
         for trial in (0.0, 1.0):
@@ -203,8 +211,8 @@ class _Solver:
         return (wanted - flows[0]) / slope
 
 
-def _reachable(branches: list[Branch], tap: str) -> list[Branch]:
-    """Branches without those hanging on one node only, so that the system is never singular."""
+def _reachable(branches: list[Branch], held: set[str]) -> list[Branch]:
+    """Branches without those that end in the air or float as a whole, so that the system is never singular."""
     kept = branches
     while True:
         count: dict[str, int] = {}
@@ -212,21 +220,22 @@ def _reachable(branches: list[Branch], tap: str) -> list[Branch]:
             for node in (branch.one, branch.other):
                 count[node] = count.get(node, 0) + 1
         pruned = [
-            branch
-            for branch in kept
-            if all(count[node] > 1 or node in (tap, "ground", OUTPUT) for node in (branch.one, branch.other))
-            or len(kept) == 1
+            branch for branch in kept if all(count[node] > 1 or node in held for node in (branch.one, branch.other))
         ]
         if len(pruned) == len(kept):
-            return kept
+            break
         kept = pruned
+    islands = Groups()
+    for branch in kept:
+        islands.join(branch.one, branch.other)
+    alive = {islands.of(node) for node in held}
+    return [branch for branch in kept if islands.of(branch.one) in alive]
 
 
 def _extremes(solver: _Solver, spans: Sequence[Span]) -> tuple[float, float]:
     middle = [span.nominal for span in spans]
     loose = [number for number, span in enumerate(spans) if not span.is_exact]
-    best = solver.volts(middle)
-    low = high = middle_volts = best if best is not None else 0.0
+    low = high = middle_volts = solver.volts(middle) or 0.0
     if len(loose) <= _EXHAUSTIVE:
         for signs in itertools.product((False, True), repeat=len(loose)):
             numbers = list(middle)
@@ -276,7 +285,3 @@ def divider_evidence(
         "output voltage", solved.volts, "V", where, Grade.DERIVED, solved.formula, tuple(parents), "; ".join(notes)
     )
 
-
-def legs_at(network: Network, *ends: End) -> tuple[Leg, ...]:
-    """Legs that end in one of several ways."""
-    return tuple(leg for end in ends for leg in network.legs_of(end))

@@ -6,10 +6,10 @@ import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
-from analyzer.circuit import Circuit, Component, Pin, plain_name
+from analyzer.circuit import Circuit, Component, Pin, natural_key, plain_name
 from analyzer.part import Part
 from analyzer.rails.kinds import Kind, kind_of, ohms, symbol_of, value_of
-from analyzer.rule import Role
+from analyzer.rule import SWITCHERS, Role
 from analyzer.settings import Settings
 
 ZERO_OHMS = 0.011
@@ -65,6 +65,7 @@ class Joined:
         unpaired: References of chokes whose windings could not be told apart.
         kinds: Kind of every component by key.
         ground: Groups that are ground.
+        pulsed: Groups that carry pulses: switch and bootstrap nodes.
     """
 
     groups: Groups
@@ -72,6 +73,7 @@ class Joined:
     unpaired: tuple[str, ...]
     kinds: Mapping[str, Kind]
     ground: frozenset[str]
+    pulsed: frozenset[str] = frozenset()
 
 
 _SWITCH_PIN = re.compile(r"(?:V?SW|LX|VLX\w*|PH|PHASE|L|LS?W|VSW|SWC|SWE|BUCK\w*_?(?:SW|LX)\w*|VSSSMPS|(?:SW|LX)[A-D_]?\d?)")
@@ -95,10 +97,10 @@ def _value_says_unfitted(component: Component, kind: Kind) -> bool:
     return value is not None and value.is_unfitted
 
 
-def is_switch_like(circuit: Circuit, net: str, switch_nets: frozenset[str], kinds: Mapping[str, Kind]) -> bool:
-    """Whether a net is pulsed: a converter's switch node, by recognised role, pin name or drain without capacitor."""
-    if net in switch_nets:
-        return True
+def is_switch_like(circuit: Circuit, net: str, kinds: Mapping[str, Kind]) -> bool:
+    """Whether a net that an inductor is on is pulsed: a chip's switch pin by its name, or a drain without capacitor."""
+    if not any(kinds[component.key] in _MAGNETIC for component, _ in circuit.on_net[net]):
+        return False
     has_drain = has_capacitor = False
     for component, pin in circuit.on_net[net]:
         kind = kinds[component.key]
@@ -120,44 +122,56 @@ def join(circuit: Circuit, parts: tuple[Part, ...], settings: Settings, ground: 
         ground: Names of ground nets.
     """
     kinds = {component.key: kind_of(component) for component in circuit.components}
-    switch_nets = frozenset(
-        net
-        for part in parts
-        if part.component.fitted
-        for channel in part.channels
-        for net in (*channel.nets(Role.SWITCH), *channel.nets(Role.BOOTSTRAP))
-    )
     recognised = frozenset(part.key for part in parts)
-    links: list[Link] = []
+    plain: list[Link] = []
+    magnetic: list[Link] = []
     unpaired: list[str] = []
     for component in circuit.components:
-        if component.key in recognised:
-            continue
         stated = settings.links.get(component.ref)
-        if stated is False:
-            continue
         kind = kinds[component.key]
-        if stated is None and not conducts(component, kind):
+        if component.key in recognised or stated is False or (stated is None and not conducts(component, kind)):
             continue
         pairs = _all_pairs(component) if stated else _pairs(circuit, component, kind, settings, ground)
         if pairs is None:
             unpaired.append(component.ref)
             continue
-        for one, other in pairs:
-            if one == other:
-                continue
-            if (
-                stated is None
-                and kind in (Kind.INDUCTOR, Kind.BEAD, Kind.CHOKE)
-                and any(is_switch_like(circuit, net, switch_nets, kinds) for net in (one, other))
-            ):
-                continue
-            resistance = (ohms(component) or 0.0) if kind is Kind.RESISTOR else 0.0
-            links.append(Link(component.ref, one, other, resistance))
+        resistance = (ohms(component) or 0.0) if kind is Kind.RESISTOR else 0.0
+        links = (Link(component.ref, one, other, resistance) for one, other in pairs if one != other)
+        (plain if stated or kind not in _MAGNETIC else magnetic).extend(links)
     groups = Groups()
-    for link in links:
+    for link in plain:
         groups.join(link.one, link.other)
-    return Joined(groups, tuple(links), tuple(unpaired), kinds, frozenset(groups.of(net) for net in ground))
+    # a converter's inductor joins nothing, also where a 0 Ω part lies between it and the switch pin
+    pulsed = {groups.of(net) for net in _pulsed_nets(circuit, parts, kinds)}
+    pulsed.update(groups.of(net.name) for net in circuit.nets if is_switch_like(circuit, net.name, kinds))
+    kept = [link for link in magnetic if not pulsed.intersection((groups.of(link.one), groups.of(link.other)))]
+    for link in kept:
+        groups.join(link.one, link.other)
+    everything = sorted((*plain, *kept), key=lambda link: (natural_key(link.ref), link.one, link.other))
+    pulsed_now = frozenset(groups.of(net) for net in pulsed)
+    return Joined(
+        groups, tuple(everything), tuple(unpaired), kinds, frozenset(groups.of(net) for net in ground), pulsed_now
+    )
+
+
+_MAGNETIC = frozenset({Kind.INDUCTOR, Kind.BEAD, Kind.CHOKE})
+
+
+def _pulsed_nets(circuit: Circuit, parts: tuple[Part, ...], kinds: Mapping[str, Kind]) -> Iterable[str]:
+    """Switch and bootstrap nets of recognised parts; of parts without a switch pin, outputs that feed an inductor."""
+    for part in parts:
+        if not part.component.fitted:
+            continue
+        for channel in part.channels:
+            yield from channel.nets(Role.SWITCH)
+            yield from channel.nets(Role.BOOTSTRAP)
+            if channel.topology in SWITCHERS and not channel.pins.get(Role.SWITCH):
+                yield from (net for net in channel.nets(Role.OUTPUT) if _feeds_inductor(circuit, net, kinds))
+
+
+def _feeds_inductor(circuit: Circuit, net: str, kinds: Mapping[str, Kind]) -> bool:
+    there = {kinds[component.key] for component, _ in circuit.on_net[net] if component.fitted}
+    return Kind.INDUCTOR in there and Kind.CAPACITOR not in there
 
 
 def _pairs(

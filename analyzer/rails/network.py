@@ -46,8 +46,6 @@ class End(StrEnum):
     RAIL = "rail"
     DRIVEN = "driven"
     """An output pin of another chip: DAC, PWM, port pin."""
-    SWITCHED = "switched"
-    """A transistor, open jumper or switch: joined to something or open."""
     UNKNOWN = "unknown"
 
 
@@ -59,13 +57,19 @@ class Leg:
         group: The group it ends on.
         end: How.
         ref: Reference of what is there, "" for rails.
-        to: For switched legs, the group it can be joined to.
     """
 
     group: str
     end: End
     ref: str = ""
-    to: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Switch:
+    """A transistor, open jumper or switch in the network: open, or joining one of its pairs of groups."""
+
+    ref: str
+    pairs: tuple[tuple[str, str], ...]
 
 
 @dataclass(frozen=True)
@@ -76,6 +80,7 @@ class Network:
         tap: Group of the pin.
         resistances: Its fixed resistors.
         trimmers: (reference, end, wiper, end, span) of adjustable ones.
+        switches: What may join its nodes.
         legs: Where it ends, by group.
         trouble: What makes it unsolvable, one line each.
     """
@@ -83,6 +88,7 @@ class Network:
     tap: str
     resistances: tuple[Resistance, ...]
     trimmers: tuple[tuple[str, str, str, str, Span], ...] = ()
+    switches: tuple[Switch, ...] = ()
     legs: Mapping[str, Leg] = field(default_factory=dict)
     trouble: tuple[str, ...] = ()
 
@@ -180,6 +186,8 @@ def network_at(
     resistances: list[Resistance] = []
     trimmers: list[tuple[str, str, str, str, Span]] = []
     legs: dict[str, Leg] = {}
+    switches: list[Switch] = []
+    met: set[str] = set()
     trouble: list[str] = []
     grounds = mesh.joined.ground | ({ground} if ground else set())
 
@@ -211,9 +219,12 @@ def network_at(
                 continue
             resistances.append(branch)
             arrive(far)
-        for component, _pin in mesh.pins(group):
+        for component, pin in mesh.pins(group):
+            if component.key in met or component.key == own_key or not component.fitted:
+                continue
             kind = mesh.joined.kinds[component.key]
-            if kind is Kind.TRIMMER and component.fitted and not any(item[0] == component.ref for item in trimmers):
+            if kind is Kind.TRIMMER:
+                met.add(component.key)
                 trimmer = _trimmer(mesh, component)
                 if trimmer is None:
                     trouble.append(f"{component.ref} is adjustable and not understood")
@@ -221,7 +232,29 @@ def network_at(
                 trimmers.append(trimmer)
                 for end in trimmer[1:4]:
                     arrive(end)
-    return Network(tap, tuple(resistances), tuple(trimmers), legs, tuple(dict.fromkeys(trouble)))
+            elif kind in (Kind.JUMPER, Kind.SWITCH, Kind.TRANSISTOR) and not _is_gate(kind, pin):
+                met.add(component.key)
+                switch = _switch(mesh, component, kind)
+                switches.append(switch)
+                for pair in switch.pairs:
+                    for end in pair:
+                        arrive(end)
+            elif group == tap and kind is Kind.CHIP and pin.kind in _DRIVES:
+                trouble.append(f"{component.ref} drives the feedback pin itself")
+    return Network(
+        tap, tuple(resistances), tuple(trimmers), tuple(switches), legs, tuple(dict.fromkeys(trouble))
+    )
+
+
+def _is_gate(kind: Kind, pin: Pin) -> bool:
+    return kind is Kind.TRANSISTOR and plain_name(pin.name).upper() in _GATES
+
+
+def _switch(mesh: Mesh, component: Component, kind: Kind) -> Switch:
+    """The pairs a switch can join: its channel, or neighbouring contacts."""
+    groups = [mesh.groups.of(pin.net) for pin in component.pins if not _is_gate(kind, pin)]
+    groups = list(dict.fromkeys(groups))
+    return Switch(component.ref, tuple(zip(groups, groups[1:], strict=False)))
 
 
 def _trimmer(mesh: Mesh, component: Component) -> tuple[str, str, str, str, Span] | None:
@@ -258,13 +291,6 @@ def _leg(
             return Leg(group, End.DRIVEN, component.ref)
         if kind is Kind.CHIP and pin.kind in ("power_in",):
             return Leg(group, End.RAIL)
-        if kind is Kind.TRANSISTOR and plain_name(pin.name).upper() not in _GATES:
-            others = [other for other in component.pins if plain_name(other.name).upper() not in _GATES]
-            far = next((mesh.groups.of(other.net) for other in others if mesh.groups.of(other.net) != group), "")
-            return Leg(group, End.SWITCHED, component.ref, far)
-        if kind in (Kind.JUMPER, Kind.SWITCH):
-            far = next((mesh.groups.of(o.net) for o in component.pins if mesh.groups.of(o.net) != group), "")
-            return Leg(group, End.SWITCHED, component.ref, far)
         if kind is Kind.CONNECTOR:
             trouble.append(f"the network leads to connector {component.ref}")
             return Leg(group, End.UNKNOWN, component.ref)

@@ -1,0 +1,158 @@
+"""Which groups of nets are supplies, and which merely touch one."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterable
+from dataclasses import dataclass
+from functools import cached_property
+
+from analyzer.circuit import Component, plain_name
+from analyzer.part import Part
+from analyzer.rails.ground import is_ground_pin
+from analyzer.rails.kinds import Kind
+from analyzer.rails.names import named_volts
+from analyzer.rails.network import Mesh
+from analyzer.rails.supplies import matches_net, supply_by_name
+from analyzer.rule import Role, Rulebook
+
+_ENTRY_KINDS = frozenset(
+    {
+        Kind.CONNECTOR,
+        Kind.BATTERY,
+        Kind.CAPACITOR,
+        Kind.CLAMP,
+        Kind.TEST_POINT,
+        Kind.FUSE,
+        Kind.BEAD,
+        Kind.INDUCTOR,
+        Kind.CHOKE,
+        Kind.DIODE,
+        Kind.LED,
+        Kind.RESISTOR,
+        Kind.TRANSISTOR,
+        Kind.SWITCH,
+        Kind.JUMPER,
+        Kind.NET_TIE,
+    }
+)
+_SUPPLY_PIN = re.compile(
+    r"V?BUS[A-Z0-9]*|VBUS\w*|\+?V(?:CC|DD|IN|BAT|SYS|\+)\w*|V\+|\+|\+BATT?|PWR|[+-]?\d+V\d*\w?|\+|BAT\+?|VSUPPLY|DC\+?", re.IGNORECASE
+)
+_BOOT = re.compile(r"BOOT\w*|C?BST\w*|VBST|CB|VB|VBOOT|BS")
+
+
+@dataclass(frozen=True)
+class Power:
+    """What is known of every group before any voltage is.
+
+    Attributes:
+        mesh: The circuit's groups.
+        parts: Recognised parts.
+        rulebook: For the names of standard supplies.
+        stated: Names of nets that the settings give a voltage.
+    """
+
+    mesh: Mesh
+    parts: tuple[Part, ...]
+    rulebook: Rulebook
+    stated: tuple[str, ...]
+
+    @cached_property
+    def ground(self) -> frozenset[str]:
+        """Ground groups."""
+        return self.mesh.joined.ground
+
+    @cached_property
+    def outputs(self) -> frozenset[str]:
+        """Groups at output pins of recognised parts."""
+        return frozenset(self._of_role(Role.OUTPUT))
+
+    @cached_property
+    def rails(self) -> frozenset[str]:
+        """Groups that are supplies, ground excluded."""
+        found = set(self.outputs) | set(self._of_role(Role.INPUT))
+        for group in self.mesh.members:
+            if group not in found and self._looks_like_supply(group):
+                found.add(group)
+        return frozenset(found - self.ground - self.mesh.joined.pulsed)
+
+    def is_rail(self, group: str) -> bool:
+        """Whether a group is a supply."""
+        return group in self.rails
+
+    def _of_role(self, role: Role) -> Iterable[str]:
+        for part in self.parts:
+            for channel in part.channels:
+                for net in channel.nets(role):
+                    yield self.mesh.groups.of(net)
+
+    def names(self, group: str) -> tuple[str, ...]:
+        """Names of the nets of a group that a person gave."""
+        return tuple(
+            net for net in self.mesh.members.get(group, ()) if self.mesh.circuit.net_by_name[net].is_named
+        )
+
+    def _looks_like_supply(self, group: str) -> bool:
+        nets = self.mesh.members[group]
+        if any(matches_net(key, nets) for key in self.stated):
+            return True
+        capacitor = supplied = several = False
+        count = 0
+        for component, pin in self.mesh.pins(group):
+            count += 1
+            kind = self.mesh.joined.kinds[component.key]
+            if kind is Kind.BATTERY:
+                return True
+            capacitor |= kind is Kind.CAPACITOR
+            if kind is Kind.CHIP and pin.kind in ("power_in", "power_out") and not is_ground_pin(pin.name):
+                supplied = True
+        several = count > 1
+        if supplied and several and (capacitor or self.names(group)):
+            return True
+        return capacitor and any(named_volts(net) or supply_by_name(net, self.rulebook) for net in self.names(group))
+
+    @cached_property
+    def _entries(self) -> dict[str, bool]:
+        return {}
+
+    def is_entry(self, group: str) -> bool:
+        """Whether power can come in here from outside: a connector or battery, and no chip's signal pin."""
+        if group not in self._entries:
+            self._entries[group] = group not in self.ground and self._is_entry(group)
+        return self._entries[group]
+
+    def _is_entry(self, group: str) -> bool:
+        comes_in = False
+        for component, pin in self.mesh.pins(group):
+            kind = self.mesh.joined.kinds[component.key]
+            if kind in (Kind.CONNECTOR, Kind.BATTERY):
+                comes_in = True
+            elif kind is Kind.CHIP and pin.kind not in ("power_in", "power_out", "passive", "no_connect", "unspecified"):
+                return False
+            elif kind not in _ENTRY_KINDS and kind is not Kind.CHIP:
+                return False
+        return comes_in
+
+    def sources(self, group: str) -> tuple[tuple[Component, str], ...]:
+        """Connectors and batteries on a group: (part, name of its pin there), in natural order."""
+        found: dict[str, tuple[Component, str]] = {}
+        for component, pin in self.mesh.pins(group):
+            kind = self.mesh.joined.kinds[component.key]
+            if kind in (Kind.CONNECTOR, Kind.BATTERY) and component.fitted:
+                found.setdefault(component.key, (component, plain_name(pin.name)))
+        return tuple(found.values())
+
+    def supply_pin_name(self, group: str) -> str | None:
+        """Name of a connector pin on this group that says "supply"; None if there is none."""
+        for _, name in self.sources(group):
+            if _SUPPLY_PIN.fullmatch(name):
+                return name
+        return None
+
+    def is_boot(self, group: str) -> bool:
+        """Whether a group is the supply of a floating driver."""
+        return group in self.mesh.joined.pulsed or any(
+            _BOOT.fullmatch(plain_name(pin.name).upper()) for component, pin in self.mesh.pins(group)
+            if self.mesh.joined.kinds[component.key] is Kind.CHIP
+        )

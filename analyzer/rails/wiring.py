@@ -1,0 +1,300 @@
+"""How one channel of a part is wired: from its pins to the nets where its input comes from and its output goes."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass, field, replace
+
+from analyzer.circuit import Component, Pin, plain_name
+from analyzer.evidence import Evidence, Grade
+from analyzer.part import Channel, Part
+from analyzer.quantity import Span
+from analyzer.rail import Outside
+from analyzer.rails.kinds import Kind, value_of
+from analyzer.rails.network import End, network_at
+from analyzer.rails.power import Power
+from analyzer.rule import SWITCHERS, Role, Topology
+
+
+@dataclass(frozen=True)
+class Trace:
+    """One channel's nets.
+
+    Attributes:
+        part, channel: What it is.
+        inputs: Nets of its inputs; more than one for multiplexers.
+        output: Net where its output is available, behind the inductor or diode.
+        ground: Net of its ground pin.
+        control: Net of its control supply.
+        tap: Net of its feedback pin.
+        outside: Parts of its power path.
+        first: References of the parts between its own pin and `output`.
+        is_inverted: A converter whose ground pin is its (negative) output.
+        is_off: Strapped off.
+        trouble: What could not be found, one line each.
+    """
+
+    part: Part
+    channel: Channel
+    inputs: tuple[str, ...] = ()
+    output: str | None = None
+    ground: str | None = None
+    control: str | None = None
+    tap: str | None = None
+    outside: tuple[Outside, ...] = ()
+    first: tuple[str, ...] = ()
+    is_inverted: bool = False
+    is_off: bool = False
+    trouble: tuple[str, ...] = field(default=())
+
+
+def trace(power: Power, part: Part, channel: Channel) -> Trace:
+    """Trace one channel."""
+    of, ground = power.mesh.groups.of, power.ground
+    grounds = channel.nets(Role.GROUND)
+    at_ground = [net for net in grounds if of(net) in ground]
+    inputs = channel.nets(Role.INPUT)
+    live = tuple(net for net in inputs if of(net) not in ground or of(net) in {of(n) for n in grounds if n not in at_ground})
+    found = Trace(
+        part,
+        channel,
+        inputs=_one_each(power, live) or inputs,
+        ground=(at_ground or list(grounds) or [None])[0],
+        control=next(iter(channel.nets(Role.BIAS)), None),
+        tap=next(iter(channel.nets(Role.FEEDBACK)), None),
+        is_off=bool(inputs) and not live,
+    )
+    if channel.topology is Topology.SHUNT:
+        return _shunt(power, found)
+    if channel.topology in SWITCHERS and channel.topology is not Topology.MODULE:
+        found = _switcher(power, found)
+    else:
+        found = replace(found, output=_output_pin(power, found))
+    if found.output is None and not found.is_off:
+        found = _by_feedback(power, found)
+    if not found.inputs:
+        found = replace(found, trouble=(*found.trouble, "no input pin found"))
+    if found.output is None and not found.is_off:
+        found = replace(found, trouble=(*found.trouble, "no output found behind its pins"))
+    return found
+
+
+def _one_each(power: Power, nets: tuple[str, ...]) -> tuple[str, ...]:
+    """One net per group, in pin order."""
+    found: dict[str, str] = {}
+    for net in nets:
+        found.setdefault(power.mesh.groups.of(net), net)
+    return tuple(found.values())
+
+
+def _output_pin(power: Power, found: Trace) -> str | None:
+    """Net of the output pins, unconnected ones and those strapped to ground left out."""
+    nets = found.channel.nets(Role.OUTPUT)
+    wired = [net for net in nets if len(power.mesh.members.get(power.mesh.groups.of(net), ())) > 1 or _is_wired(power, net)]
+    live = [net for net in wired if power.mesh.groups.of(net) not in power.ground or found.channel.sign < 0]
+    return (live or wired or [None])[0]
+
+
+def _is_wired(power: Power, net: str) -> bool:
+    return len(power.mesh.circuit.net_by_name[net].pins) > 1 if net in power.mesh.circuit.net_by_name else False
+
+
+def _switch_groups(power: Power, channel: Channel) -> tuple[str, ...]:
+    of = power.mesh.groups.of
+    nets = channel.nets(Role.SWITCH) or tuple(
+        net for net in channel.nets(Role.OUTPUT) if of(net) in power.mesh.joined.pulsed
+    )
+    return tuple(dict.fromkeys(of(net) for net in nets))
+
+
+def _inductors(power: Power, group: str) -> Iterator[tuple[Component, str]]:
+    """Fitted inductors at a switch node with the net at their far end."""
+    seen: set[str] = set()
+    for component, pin in power.mesh.pins(group):
+        kind = power.mesh.joined.kinds[component.key]
+        if kind not in (Kind.INDUCTOR, Kind.BEAD, Kind.CHOKE) or not component.fitted or component.key in seen:
+            continue
+        seen.add(component.key)
+        far = _far_end(power, component, pin, group)
+        if far is not None:
+            yield component, far
+
+
+def _far_end(power: Power, component: Component, pin: Pin, group: str) -> str | None:
+    others = [other.net for other in component.pins if power.mesh.groups.of(other.net) != group]
+    if len(component.pins) > 2 and power.mesh.joined.kinds[component.key] is Kind.CHOKE:
+        partner = {"1": "2", "2": "1", "3": "4", "4": "3"}.get(pin.number)
+        others = [other.net for other in component.pins if other.number == partner] or others
+    return others[0] if others else None
+
+
+def _diodes(power: Power, group: str) -> Iterator[tuple[Component, str, bool]]:
+    """Fitted diodes at a group: (part, far net, whether it conducts away from the group)."""
+    for component, pin in power.mesh.pins(group):
+        if power.mesh.joined.kinds[component.key] is Kind.DIODE and component.fitted:
+            end = diode_end(pin)
+            for other in component.pins:
+                if end and diode_end(other) not in (end, "") and power.mesh.groups.of(other.net) != group:
+                    yield component, other.net, end == "A"
+
+
+def diode_end(pin: Pin) -> str:
+    """ "A" or "K" by pin name, else by KiCad's numbers for diodes (1 is the cathode); "" for other pins."""
+    name = plain_name(pin.name).upper()
+    if name[:1] in ("A", "K") and (len(name) <= 2 or name in ("ANODE", "KATHODE")):
+        return name[0]
+    if name in ("C", "CATHODE", "-"):
+        return "K"
+    if name == "+":
+        return "A"
+    if name in ("", "~", pin.number):
+        return {"1": "K", "2": "A", "K": "K", "A": "A"}.get(pin.number.upper(), "")
+    return ""
+
+
+def _outside_inductor(component: Component) -> Outside:
+    value = value_of(component)
+    resistance = None
+    if value is not None and value.dcr is not None:
+        resistance = Evidence(
+            "inductor resistance",
+            Span.exact(value.dcr),
+            "Ω",
+            f"{component.ref} Value '{component.value}'",
+            Grade.DERIVED,
+        )
+    return Outside(component.ref, "inductor", resistance)
+
+
+def _switcher(power: Power, found: Trace) -> Trace:
+    topology = found.channel.topology
+    switches = _switch_groups(power, found.channel)
+    coils = [(coil, far, group) for group in switches for coil, far in _inductors(power, group)]
+    outside = tuple(dict.fromkeys(_outside_inductor(coil) for coil, _, _ in coils))
+    found = replace(found, outside=outside)
+    if topology is Topology.CONTROLLER:
+        found = _controller(power, found)
+        if found.output is not None:
+            return found
+        switches = switches or _switch_groups(power, found.channel)
+    if topology is Topology.BOOST:
+        return _boost(power, found, switches, coils)
+    if topology is Topology.BUCK_BOOST:
+        return replace(found, output=_output_pin(power, found))
+    return _buck_or_inverting(power, found, switches, coils)
+
+
+def _buck_or_inverting(
+    power: Power, found: Trace, switches: tuple[str, ...], coils: list[tuple[Component, str, str]]
+) -> Trace:
+    of = power.mesh.groups.of
+    rectifiers = [(diode, far, away) for group in switches for diode, far, away in _diodes(power, group)]
+    found = replace(found, outside=(*found.outside, *(Outside(diode.ref, "diode") for diode, _, _ in rectifiers)))
+    live = [(coil, far) for coil, far, _ in coils if of(far) not in power.ground and of(far) not in switches]
+    to_ground = [(coil, far) for coil, far, _ in coils if of(far) in power.ground]
+    if found.channel.topology is Topology.INVERTING or (to_ground and not live):
+        own = found.ground
+        if own is not None and of(own) not in power.ground:
+            # the chip's ground pin is the negative output; the inductor returns to the board's ground
+            return replace(found, output=own, is_inverted=True, first=tuple(coil.ref for coil, _ in to_ground[:1]))
+        negative = [(diode, far) for diode, far, away in rectifiers if not away and of(far) not in power.ground]
+        if negative:
+            return replace(found, output=negative[0][1], first=(negative[0][0].ref,))
+        return replace(found, output=_output_pin_not(power, found, switches))
+    if live:
+        coil, far = live[0]
+        return replace(found, output=far, first=(coil.ref,))
+    return replace(found, output=_output_pin_not(power, found, switches))
+
+
+def _output_pin_not(power: Power, found: Trace, switches: tuple[str, ...]) -> str | None:
+    net = _output_pin(power, found)
+    return None if net is None or power.mesh.groups.of(net) in switches else net
+
+
+def _boost(
+    power: Power, found: Trace, switches: tuple[str, ...], coils: list[tuple[Component, str, str]]
+) -> Trace:
+    of = power.mesh.groups.of
+    entry = [far for _, far, _ in coils if of(far) not in power.ground and of(far) not in switches]
+    inputs = tuple(dict.fromkeys(entry)) or found.inputs
+    output = _output_pin_not(power, found, switches)
+    rectifiers = [(diode, far) for group in switches for diode, far, away in _diodes(power, group) if away]
+    rectifiers = [(diode, far) for diode, far in rectifiers if of(far) not in power.ground]
+    found = replace(found, inputs=inputs[:1], is_off=found.is_off and not entry)
+    if rectifiers and (output is None or of(output) == of(rectifiers[0][1])):
+        diode, far = rectifiers[0]
+        return replace(
+            found, output=far, first=(diode.ref,), outside=(*found.outside, Outside(diode.ref, "diode"))
+        )
+    return replace(found, output=output)
+
+
+def _controller(power: Power, found: Trace) -> Trace:
+    """External transistors: those whose gate the part reaches, directly or through one resistor."""
+    of = power.mesh.groups.of
+    own = {of(pin.net) for pin in found.part.component.pins} - power.ground - power.rails
+    reach = own | {far for group in own for _, _, far in power.mesh.by_group.get(group, ())}
+    transistors: list[Component] = []
+    for group in sorted(reach - power.ground - power.rails):
+        for component, pin in power.mesh.pins(group):
+            gate = plain_name(pin.name).upper() in ("G", "GATE", "B", "BASE", "G1", "G2")
+            if power.mesh.joined.kinds[component.key] is Kind.TRANSISTOR and gate and component.fitted:
+                transistors.append(component)
+    transistors = list(dict.fromkeys(transistors))
+    outside = tuple(Outside(component.ref, "transistor") for component in transistors)
+    switches = _switch_groups(power, found.channel)
+    channel_groups = [of(pin.net) for component in transistors for pin in component.pins if plain_name(pin.name).upper() not in ("G", "B")]
+    nodes = switches or tuple(group for group in dict.fromkeys(channel_groups) if group in power.mesh.joined.pulsed)
+    coils = [(coil, far) for group in nodes for coil, far in _inductors(power, group) if of(far) not in power.ground]
+    supplies = [
+        pin.net
+        for component in transistors
+        for pin in component.pins
+        if of(pin.net) in power.rails and of(pin.net) not in {of(far) for _, far in coils}
+    ]
+    found = replace(
+        found,
+        outside=(*found.outside, *(_outside_inductor(coil) for coil, _ in coils), *outside),
+        inputs=_one_each(power, tuple(supplies)) or found.inputs,
+    )
+    found = replace(found, outside=tuple(dict.fromkeys(found.outside)))
+    return replace(found, output=coils[0][1], first=(coils[0][0].ref,)) if coils else found
+
+
+def _by_feedback(power: Power, found: Trace) -> Trace:
+    """The output is where the feedback divider comes from, when no pin leads there."""
+    if found.tap is None:
+        return found
+    of = power.mesh.groups.of
+    tap = of(found.tap)
+    ground = of(found.ground) if found.ground else None
+    inputs = {of(net) for net in found.inputs}
+    if tap in power.rails and tap not in inputs:
+        return replace(found, output=found.tap)
+    network = network_at(power.mesh, tap, ground, frozenset(), power.is_rail, found.part.key)
+    candidates = [leg.group for leg in network.legs_of(End.RAIL) if leg.group not in inputs]
+    if len(candidates) == 1:
+        return replace(found, output=power.mesh.members[candidates[0]][0])
+    return found
+
+
+def _shunt(power: Power, found: Trace) -> Trace:
+    """A shunt regulator: its output is its live pin, its input lies behind the series resistor."""
+    of = power.mesh.groups.of
+    pins = [pin for role in (Role.INPUT, Role.OUTPUT, Role.GROUND) for pin in found.channel.pins.get(role, ())]
+    pins = pins or [pin for pin in found.part.component.pins if diode_end(pin)]
+    live = [pin.net for pin in pins if of(pin.net) not in power.ground]
+    if not live:
+        return replace(found, is_off=True)
+    output = live[0]
+    feeding: dict[str, float] = {}
+    for component, _, far in power.mesh.by_group.get(of(output), ()):
+        branch = power.mesh.resistance(component, of(output), far)
+        if branch and (far in power.rails or power.is_entry(far)) and far not in power.ground:
+            feeding[far] = feeding.get(far, 0.0) + 1 / branch.span.nominal
+    best = max(sorted(feeding), key=lambda group: feeding[group], default=None)
+    series = [c.ref for c, _, far in power.mesh.by_group.get(of(output), ()) if far == best]
+    inputs = (power.mesh.members[best][0],) if best else ()
+    trouble = () if best else ("no series resistor to a supply found",)
+    return replace(found, inputs=inputs, output=output, first=tuple(series), is_off=False, trouble=trouble)
