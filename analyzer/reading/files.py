@@ -83,14 +83,15 @@ def read_regular(path: Path, most: int, name: str) -> bytes:
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or str(error)
         raise InputError(Fault(f"cannot be opened: {reason}", name)) from None
-    with os.fdopen(handle, "rb") as stream:
-        about = os.fstat(stream.fileno())
-        if not stat.S_ISREG(about.st_mode):
+    try:
+        if not stat.S_ISREG(os.fstat(handle).st_mode):
             raise InputError(Fault("not a regular file", name, remedy="Give a file, not a folder or device."))
-        try:
+        with os.fdopen(handle, "rb", closefd=False) as stream:
             data = stream.read(most + 1)
-        except OSError as error:
-            raise InputError(Fault(f"cannot be read: {error.strerror}", name)) from None
+    except OSError as error:
+        raise InputError(Fault(f"cannot be read: {error.strerror}", name)) from None
+    finally:
+        os.close(handle)
     if len(data) > most:
         raise InputError(Fault(f"larger than {most // 2**20} MiB", name, remedy="No real file of this kind is."))
     return data

@@ -111,6 +111,8 @@ class Hierarchy:
                     lost=True,
                 )
                 return
+            if not sheet.file:
+                continue  # reported when its sheet symbol was read
             target = trail[-1].parent / sheet.file.replace("\\", "/")
             resolved = target.resolve()
             if any(resolved == above.resolve() for above in trail):
