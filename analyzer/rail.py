@@ -63,7 +63,7 @@ class Outside:
 
     Attributes:
         ref: Its reference.
-        role: "inductor", "diode" or "transistor".
+        role: "inductor", "diode", "transistor" or "resistor" (the one before a shunt regulator).
         resistance: Series resistance (DCR, on-resistance) where its value text or a rule gives it.
         drop: Forward drop where a rule gives it.
     """
@@ -87,6 +87,7 @@ class Wiring:
         output_rail: Rail of that net.
         ground_rail: Rail its ground pins are on (the negative output of a buck wired as inverter).
         control_rail: Rail of the control supply of two-supply parts.
+        vcontrol: Its voltage, None if unknown.
         vin: Input voltage relative to the part's own ground pin, None if unknown.
         vout: Output voltage relative to board ground, None if unknown.
         is_off: True when the channel is strapped off and supplies nothing.
@@ -103,6 +104,7 @@ class Wiring:
     output_rail: str | None = None
     ground_rail: str | None = None
     control_rail: str | None = None
+    vcontrol: Evidence | None = None
     vin: Evidence | None = None
     vout: Evidence | None = None
     is_off: bool = False

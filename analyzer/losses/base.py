@@ -1,0 +1,180 @@
+"""What every loss model has in common: an operating point in, the losses there out.
+
+Voltages are magnitudes [V], so that negative regulators use the same formulas: `vin` is taken relative to the
+part's own ground pin, `vout` relative to board ground. Currents are A, temperatures °C.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from enum import Enum
+
+from analyzer.evidence import Evidence
+from analyzer.part import Channel
+from analyzer.quantity import Span
+from analyzer.rail import Wiring
+from analyzer.wording import show
+
+REFERENCE_CELSIUS = 25.0
+"""Temperature at which data sheets state figures unless they say otherwise (common practice)."""
+
+
+class End(Enum):
+    """Which end of each figure's span is taken: the one that makes least heat, the nominal, or the most."""
+
+    MILD = "mild"
+    NOMINAL = "nominal"
+    SEVERE = "severe"
+
+
+@dataclass(frozen=True, slots=True)
+class Point:
+    """An operating point of one channel: voltages [V] and load [A] as magnitudes, junction [°C]."""
+
+    vin: float
+    vout: float
+    iout: float
+    junction: float = REFERENCE_CELSIUS
+
+
+@dataclass(frozen=True, slots=True)
+class Loss:
+    """The losses at one point.
+
+    Attributes:
+        watts: Heat in the part [W].
+        iin: Current from the input rail [A].
+        elsewhere: (who, watts) of losses of this channel outside the part.
+        terms: (name, watts) that add up to `watts`.
+        formula: The formula with its numbers put in.
+        regulating: False where the input is too low for the output (dropout, or a buck below its output).
+    """
+
+    watts: float
+    iin: float
+    elsewhere: tuple[tuple[str, float], ...] = ()
+    terms: tuple[tuple[str, float], ...] = ()
+    formula: str = ""
+    regulating: bool = True
+
+
+@dataclass(frozen=True, slots=True)
+class LossModel:
+    """How one channel turns its operating point into heat.
+
+    Attributes:
+        at: The losses at a point, each figure taken at the given end. Raises ValueError outside the range that
+            the part's figures cover.
+        used: Evidence of every figure it uses.
+        missing: Figures it lacks, in words; while there are any, `at` must not be called.
+        notes: Assumptions it makes, each on the safe side.
+        interior: Input voltages inside (low, high) where the heat may have an extremum, besides the ends.
+        loads: Loads inside (low, high) where a table has its knots.
+        own_load: Load the part itself sets (chargers); None where the rail's draws do.
+        iin_needs_voltages: False where the input current follows from the load alone.
+        heats: Whether the losses change with the junction temperature.
+    """
+
+    at: Callable[[Point, End], Loss]
+    used: tuple[Evidence, ...] = ()
+    missing: tuple[str, ...] = ()
+    notes: tuple[str, ...] = ()
+    interior: Callable[[float, float, float, float], tuple[float, ...]] = field(default=lambda _a, _b, _c, _d: ())
+    loads: tuple[float, ...] = ()
+    own_load: Evidence | None = None
+    iin_needs_voltages: bool = True
+    heats: bool = False
+
+
+def lacking(*missing: str, notes: tuple[str, ...] = ()) -> LossModel:
+    """A model that cannot be used because figures are missing."""
+
+    def at(_point: Point, _end: End) -> Loss:
+        raise ValueError("missing: " + ", ".join(missing))
+
+    return LossModel(at, missing=missing, notes=notes)
+
+
+def high(span: Span, end: End) -> float:
+    """The value of a figure that makes the more heat the larger it is."""
+    return {End.MILD: span.low, End.NOMINAL: span.nominal, End.SEVERE: span.high}[end]
+
+
+def low(span: Span, end: End) -> float:
+    """The value of a figure that makes the more heat the smaller it is (efficiency)."""
+    return {End.MILD: span.high, End.NOMINAL: span.nominal, End.SEVERE: span.low}[end]
+
+
+@dataclass(frozen=True, slots=True)
+class Figures:
+    """The figures of a channel, as numbers at the end asked for."""
+
+    channel: Channel
+
+    def has(self, *keys: str) -> bool:
+        """Whether all of these figures are given, as a number or a table."""
+        return all(key in self.channel.figures or key in self.channel.curves for key in keys)
+
+    def high(self, key: str, end: End, load: float = 0.0, default: float | None = None) -> float:
+        """A figure that makes the more heat the larger it is; tables are read at `load`."""
+        return high(self._span(key, load, default), end)
+
+    def low(self, key: str, end: End, load: float = 0.0, default: float | None = None) -> float:
+        """A figure that makes the more heat the smaller it is; tables are read at `load`."""
+        return low(self._span(key, load, default), end)
+
+    def _span(self, key: str, load: float, default: float | None) -> Span:
+        curve = self.channel.curves.get(key)
+        if curve is not None:
+            # below its first point a table over the load is held level; above its last nothing is known
+            return curve.at(max(load, curve.lowest))
+        figure = self.channel.figures.get(key)
+        if figure is not None:
+            return figure.span
+        if default is None:
+            raise ValueError(f"{key} is not given")
+        return Span.exact(default)
+
+    def used(self, *keys: str) -> tuple[Evidence, ...]:
+        """Evidence of those of the figures that are given."""
+        channel = self.channel
+        return tuple(
+            channel.curves[key].evidence if key in channel.curves else channel.figures[key]
+            for key in keys
+            if key in channel.curves or key in channel.figures
+        )
+
+    def knots(self, *keys: str) -> tuple[float, ...]:
+        """Loads at which the tables of these figures have their points."""
+        curves = (self.channel.curves[key] for key in keys if key in self.channel.curves)
+        return tuple(sorted({x for curve in curves for x, _ in curve.points}))
+
+    def hot(self, end: End, junction: float) -> float:
+        """Factor on on-resistances at `junction`: 1 + tempco · (Tj − 25 °C), never below the cold figure."""
+        tempco = self.high("resistance_tempco", end, default=0.0)
+        return max(1.0, 1.0 + tempco * (junction - REFERENCE_CELSIUS))
+
+
+def outside(wiring: Wiring, role: str) -> tuple[tuple[str, Span | None, Span | None, tuple[Evidence, ...]], ...]:
+    """(reference, resistance, drop, evidence) of the parts with this role in the channel's power path."""
+    return tuple(
+        (
+            part.ref,
+            part.resistance.span if part.resistance else None,
+            part.drop.span if part.drop else None,
+            tuple(evidence for evidence in (part.resistance, part.drop) if evidence),
+        )
+        for part in wiring.outside
+        if part.role == role
+    )
+
+
+def volts(value: float) -> str:
+    """A voltage for a formula."""
+    return show(value, "V")
+
+
+def amps(value: float) -> str:
+    """A current for a formula."""
+    return show(value, "A")

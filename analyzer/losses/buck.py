@@ -1,0 +1,173 @@
+"""Step-down converters: synchronous, with an external diode, with a bipolar switch, or wired as an inverter."""
+
+from __future__ import annotations
+
+from analyzer.losses import efficiency, terms
+from analyzer.losses.base import End, Figures, Loss, LossModel, Point, lacking, outside
+from analyzer.rail import Wiring
+from analyzer.wording import show
+
+_TIMES = ("switching_frequency", "rise_time", "fall_time")
+_KEYS = (
+    *_TIMES,
+    "high_side_resistance",
+    "low_side_resistance",
+    "saturation_voltage",
+    "resistance_tempco",
+    "quiescent",
+    "dead_time",
+    "body_diode_drop",
+    "gate_charge",
+    "gate_voltage",
+    "boost_current",
+    "boost_voltage",
+    "diode_drop",
+    "inductor_resistance",
+)
+
+
+def is_inverting(wiring: Wiring) -> bool:
+    """Whether the part's ground pin is its own output: a buck wired as an inverter."""
+    return wiring.ground_rail is not None and wiring.ground_rail == wiring.output_rail
+
+
+def build(wiring: Wiring) -> LossModel:
+    """Model of a buck: from its efficiency where one is given, else from its loss terms."""
+    if efficiency.is_given(wiring.channel):
+        return _from_efficiency(wiring)
+    lacks = missing_terms(wiring)
+    if lacks:
+        return lacking("efficiency, or for its loss terms: " + ", ".join(lacks))
+    return _from_terms(wiring)
+
+
+def missing_terms(wiring: Wiring) -> tuple[str, ...]:
+    """Which figures the loss terms lack, in words."""
+    figures = Figures(wiring.channel)
+    lacks = []
+    if not figures.has("high_side_resistance") and not figures.has("saturation_voltage"):
+        lacks.append("high-side on-resistance or saturation voltage")
+    if not figures.has("low_side_resistance") and not _diodes(wiring, figures):
+        lacks.append("low-side on-resistance or the rectifier's drop")
+    lacks += [key.replace("_", " ") for key in _TIMES if not figures.has(key)]
+    if not figures.has("quiescent"):
+        lacks.append("quiescent current")
+    return tuple(lacks)
+
+
+def _diodes(wiring: Wiring, figures: Figures) -> bool:
+    return figures.has("diode_drop") or any(drop for _, _, drop, _ in outside(wiring, "diode"))
+
+
+def _from_efficiency(wiring: Wiring) -> LossModel:
+    inverts = is_inverting(wiring)
+
+    def at(point: Point, end: End) -> Loss:
+        supply = point.vin - point.vout if inverts else point.vin
+        found = efficiency.at_point(wiring.channel, point, end)
+        if supply <= 0 or (not inverts and point.vin < point.vout):
+            return _below(point, found)
+        duty = terms.buck_duty(point.vin, point.vout)
+        coil = point.iout / (1 - duty) if inverts else point.iout
+        rectifier = point.iout if inverts else point.iout * (1 - duty)
+        parts = efficiency.shares(wiring, end, coil, rectifier)
+        return efficiency.loss_from_efficiency(point, found, supply, parts)
+
+    return LossModel(
+        at,
+        efficiency.evidence(wiring.channel),
+        notes=efficiency.outside_notes(wiring),
+        interior=interior_voltages,
+        loads=_load_knots(wiring),
+        heats=Figures(wiring.channel).has("efficiency_hot_loss"),
+    )
+
+
+def _below(point: Point, found: float) -> Loss:
+    """Input below the output: the switch stays on and the output follows; the loss is counted as if it regulated."""
+    power = point.vout * point.iout
+    total = efficiency.total_loss(power, found)
+    iin = power / found / point.vin if point.vin > 0 else 0.0
+    return Loss(total, iin, formula=f"{show(power, 'W')} · (1/{found:.3f} − 1)", regulating=False)
+
+
+def _load_knots(wiring: Wiring) -> tuple[float, ...]:
+    table = wiring.channel.efficiency_map
+    mapped = {x for x, _, _ in table.points} if table else set()
+    return tuple(sorted({*mapped, *Figures(wiring.channel).knots("efficiency")}))
+
+
+def interior_voltages(low: float, high: float, _vout: float, _iout: float) -> tuple[float, ...]:
+    """Input voltages between the ends that a search for the worst one should try.
+
+    Conduction falls and switching rises with the input voltage, so the heat has at most a minimum between the ends;
+    efficiency maps may have a maximum there, so an even grid is tried as well.
+    """
+    return tuple(low + (high - low) * step / 8 for step in range(1, 8))
+
+
+def _from_terms(wiring: Wiring) -> LossModel:
+    figures = Figures(wiring.channel)
+    inverts = is_inverting(wiring)
+
+    def at(point: Point, end: End) -> Loss:
+        return _terms_at(wiring, figures, point, end, inverts)
+
+    return LossModel(
+        at,
+        (*figures.used(*_KEYS), *(e for part in wiring.outside for e in (part.resistance, part.drop) if e)),
+        notes=efficiency.outside_notes(wiring),
+        interior=interior_voltages,
+        heats=figures.has("resistance_tempco"),
+    )
+
+
+def _terms_at(wiring: Wiring, figures: Figures, point: Point, end: End, inverts: bool) -> Loss:
+    vin, load = point.vin, point.iout
+    hot = figures.hot(end, point.junction)
+    synchronous = figures.has("low_side_resistance")
+    drop = 0.0 if synchronous else _rectifier_drop(wiring, figures, end)
+    switch_drop = figures.high("saturation_voltage", end, default=0.0)
+    duty = terms.buck_duty(vin, point.vout, drop, min(switch_drop, vin))
+    coil = load / (1 - duty) if inverts and duty < 1 else load
+    frequency = figures.high("switching_frequency", end)
+    rise, fall = figures.high("rise_time", end), figures.high("fall_time", end)
+    found = [
+        ("high side", terms.conduction(coil, figures.high("high_side_resistance", end, default=0.0) * hot, duty)),
+        ("saturation", terms.saturation(coil, switch_drop, duty)),
+        ("low side", terms.conduction(coil, figures.high("low_side_resistance", end, default=0.0) * hot, 1 - duty)),
+        ("switching", terms.switching(vin, coil, frequency, rise, fall)),
+        ("quiescent", vin * figures.high("quiescent", end)),
+    ]
+    if figures.has("dead_time", "body_diode_drop"):
+        seconds, body = figures.high("dead_time", end), figures.high("body_diode_drop", end)
+        found.append(("dead time", terms.dead_time(coil, body, frequency, seconds)))
+    if figures.has("gate_charge"):
+        gate = figures.high("gate_voltage", end, default=vin)
+        found.append(("gate drive", terms.gate_drive(figures.high("gate_charge", end), gate, frequency)))
+    if figures.has("boost_current", "boost_voltage"):
+        found.append(("bootstrap", figures.high("boost_current", end) * figures.high("boost_voltage", end)))
+    inside = [(name, watts) for name, watts in found if watts]
+    elsewhere = list(efficiency.shares(wiring, End.MILD if end is End.SEVERE else end, coil, coil * (1 - duty)).items)
+    if figures.has("inductor_resistance"):
+        elsewhere.append(("inductor", terms.conduction(coil, figures.high("inductor_resistance", end))))
+    if figures.has("diode_drop") and not synchronous and not outside(wiring, "diode"):
+        elsewhere.append(("rectifier", terms.saturation(coil, drop, 1 - duty)))
+    watts = sum(value for _, value in inside)
+    supply = vin - point.vout if inverts else vin
+    power = point.vout * load + watts + sum(value for _, value in elsewhere)
+    return Loss(
+        watts,
+        power / supply if supply > 0 else 0.0,
+        tuple(elsewhere),
+        tuple(inside),
+        " + ".join(f"{name} {show(value, 'W')}" for name, value in inside) + f" at D {duty:.3f}",
+        regulating=supply > 0 and (inverts or vin > point.vout),
+    )
+
+
+def _rectifier_drop(wiring: Wiring, figures: Figures, end: End) -> float:
+    drops = [drop for _, _, drop, _ in outside(wiring, "diode") if drop is not None]
+    if drops:
+        return drops[0].high if end is End.SEVERE else drops[0].nominal
+    return figures.high("diode_drop", end)

@@ -1,0 +1,77 @@
+"""What passes current: load switches, eFuses, ideal diodes, power multiplexers, diodes and pass transistors.
+
+Source of I²·Ron with the hot figure: TI TPS22968 data sheet section 10.2.2.3, TI TPS2062-1 SLVS714B.
+"""
+
+from __future__ import annotations
+
+import math
+
+from analyzer.losses.base import REFERENCE_CELSIUS, End, Figures, Loss, LossModel, Point, amps, lacking, volts
+from analyzer.rail import Wiring
+from analyzer.wording import show
+
+
+def switch_heat(current: float, resistance: float, channels: float = 1.0) -> float:
+    """Heat [W] of `channels` equal switches that share `current` [A] equally: I² · R / n."""
+    if resistance < 0 or channels < 1:
+        raise ValueError("needs a resistance ≥ 0 and at least one channel")
+    return current * current * resistance / channels
+
+
+def build_switch(wiring: Wiring) -> LossModel:
+    """Model of a part known by its on-resistance or, for regulated drops, its forward drop."""
+    figures = Figures(wiring.channel)
+    if figures.has("forward_drop") and not figures.has("on_resistance"):
+        return build_diode(wiring)
+    if not figures.has("on_resistance"):
+        return lacking("on-resistance or forward drop")
+
+    def at(point: Point, end: End) -> Loss:
+        resistance = figures.high("on_resistance", end) * figures.hot(end, point.junction)
+        channels = figures.low("pass_channels", End.NOMINAL, default=1.0)
+        own = figures.high("quiescent", end, default=0.0)
+        passed = switch_heat(point.iout, resistance, channels)
+        shared = f" / {channels:g}" if channels != 1 else ""
+        return Loss(
+            passed + point.vin * own,
+            point.iout + own,
+            terms=(("on-resistance", passed), ("quiescent", point.vin * own)),
+            formula=f"({amps(point.iout)})² · {show(resistance, 'Ω')}{shared} + {volts(point.vin)} · {amps(own)}",
+        )
+
+    used = figures.used("on_resistance", "resistance_tempco", "pass_channels", "quiescent")
+    notes = () if figures.has("quiescent") else ("quiescent current not given: taken as nothing beside the load",)
+    return LossModel(at, used, notes=notes, iin_needs_voltages=False, heats=figures.has("resistance_tempco"))
+
+
+def build_diode(wiring: Wiring) -> LossModel:
+    """Model of a series diode: Vf · I. A drop that falls with temperature is not credited above 25 °C."""
+    figures = Figures(wiring.channel)
+    if not figures.has("forward_drop"):
+        return lacking("forward drop")
+
+    def at(point: Point, end: End) -> Loss:
+        tempco = figures.high("forward_drop_tempco", end, default=0.0)
+        hot = max(1.0, 1.0 + tempco * (point.junction - REFERENCE_CELSIUS))
+        drop = figures.high("forward_drop", end, point.iout) * hot
+        return Loss(
+            drop * point.iout,
+            point.iout,
+            terms=(("forward drop", drop * point.iout),),
+            formula=f"{volts(drop)} · {amps(point.iout)}",
+        )
+
+    used = figures.used("forward_drop", "forward_drop_tempco")
+    knots = figures.knots("forward_drop")
+    return LossModel(at, used, loads=knots, iin_needs_voltages=False, heats=figures.has("forward_drop_tempco"))
+
+
+def leakage_heat(reverse: float, leakage_cold: float, junction: float, doubling: float = 10.0) -> float:
+    """Heat [W] of a diode in reverse: Vr · Ir, Ir doubling every `doubling` kelvin above 25 °C.
+
+    The 10 K are common practice for Schottky diodes (from memory).
+    """
+    if reverse < 0 or leakage_cold < 0 or doubling <= 0:
+        raise ValueError("needs magnitudes, and a positive doubling step")
+    return reverse * leakage_cold * math.pow(2.0, (junction - REFERENCE_CELSIUS) / doubling)
