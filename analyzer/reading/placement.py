@@ -164,7 +164,7 @@ def _has_style(placement: Placement, library: LibrarySymbol) -> bool:
 
 def _check(placement: Placement, drawing: Drawing, report: Report) -> None:
     library, symbol = placement.library, placement.symbol
-    if library is not None and placement.pins and not library.unreadable:
+    if library is not None and placement.pins and not library.unreadable and placement.unit in library.units:
         return
     place = drawing.place(symbol.at, placement.sheet.name)
     subject = placement.reference or symbol.lib_id
