@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from decimal import ROUND_HALF_EVEN, Decimal
 
-from analyzer.quantity import Span
+from analyzer.quantity import Dimension, Span
+from analyzer.units import EVERYDAY
 
 _PREFIXES = {-12: "p", -9: "n", -6: "µ", -3: "m", 0: "", 3: "k", 6: "M", 9: "G"}
 _PREFIXED_UNITS = frozenset({"A", "V", "W", "Ω", "F", "H", "Hz", "C", "s"})
@@ -26,8 +27,10 @@ def show(value: float, unit: str, digits: int = 3) -> str:
     if unit not in _PREFIXED_UNITS or not number:
         return f"{_rounded(number, digits)} {unit}".rstrip()
     # the prefix follows the rounded number, so that 0.9999 A is 1.00 A and not 1000 mA
-    exponent = _significant(number, digits).adjusted() // 3 * 3
-    exponent = min(max(exponent, -12), 9)
+    exponent = min(max(_significant(number, digits).adjusted() // 3 * 3, -12), 9)
+    units = EVERYDAY[Dimension(unit)]
+    while _PREFIXES[exponent] + unit not in units:  # nobody writes megaampere
+        exponent += 3 if exponent < 0 else -3
     return f"{_rounded(number.scaleb(-exponent), digits)} {_PREFIXES[exponent]}{unit}"
 
 

@@ -47,7 +47,7 @@ def find_loads(
         input_current: What a channel takes from its input for a load; None takes the loss models' own.
     """
     if input_current is None:
-        from analyzer.losses import input_current as of_losses
+        from analyzer.losses.dispatch import input_current as of_losses
 
         input_current = of_losses
     board = Board(circuit, parts, rails)

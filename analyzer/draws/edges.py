@@ -15,6 +15,7 @@ from analyzer.load import Gap
 from analyzer.quantity import Span
 from analyzer.rail import Wiring
 from analyzer.rule import Role, Topology
+from analyzer.wording import show_span
 
 InputCurrent = Callable[[Wiring, Span], Evidence | None]
 """(wiring, load of its output [A]) → current from its input rail [A], None if it cannot be known."""
@@ -40,6 +41,10 @@ def find_edges(board: Board, network: Resistances, input_current: InputCurrent) 
         takes = partial(input_current, wiring)
         share = _share(board, wiring, below)
         edges.append(Edge(wiring.part.component, wiring.channel.name, above, below, takes, share))
+        control = _live(board, wiring.control_rail)
+        if control and wiring.channel.topology is Topology.LINEAR_TWO_SUPPLY:
+            name = f"{wiring.channel.name} control".lstrip()
+            edges.append(Edge(wiring.part.component, name, control, below, partial(_control, wiring), share))
     return edges, gaps
 
 
@@ -61,6 +66,27 @@ def _passed(resistor: Resistor, below: str, load: Span) -> Evidence:
     component = resistor.component
     source = f"{component.place}, {component.ref}"
     return Evidence(f"current through {component.ref}", load, "A", source, Grade.DERIVED, f"I = load of {below}")
+
+
+def _control(wiring: Wiring, load: Span) -> Evidence | None:
+    """Current of the control supply: as stated for the load, or the load over the control ratio, the greater."""
+    figures, ref = wiring.channel.figures, wiring.part.ref
+    spans = []
+    if curve := wiring.channel.curves.get("control_current"):
+        try:
+            spans = [Span.hull(curve.at(max(load.nominal, curve.lowest)), curve.at(max(load.high, curve.lowest)))]
+        except ValueError:
+            return None
+    elif stated := figures.get("control_current"):
+        spans = [stated.span]
+    if ratio := figures.get("control_ratio"):
+        spans.append(Span(load.low / ratio.span.high, load.nominal / ratio.span.nominal, load.high / ratio.span.low))
+    if not spans:
+        return None
+    span = max(spans, key=lambda one: one.high)
+    used = tuple(figures[key] for key in ("control_current", "control_ratio") if key in figures)
+    source = f"{ref} control supply for {show_span(load, 'A')} of load"
+    return Evidence("control current", span, "A", source, Grade.DERIVED, parents=used)
 
 
 def _live(board: Board, name: str | None) -> str | None:

@@ -36,7 +36,7 @@ _PIN_COLOURS = {"R": "red", "G": "green", "B": "blue", "W": "white", "Y": "yello
 _LONGEST = 16
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Junction:
     """One diode of a LED: nodes of anode and cathode, presumed forward drop."""
 

@@ -17,7 +17,7 @@ from analyzer.settings import Settings
 _RESISTOR_LETTERS = frozenset({"R", "RS", "RSH"})
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True, slots=True, eq=False)
 class Resistor:
     """A fitted resistor with a value.
 
