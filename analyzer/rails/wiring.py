@@ -59,7 +59,7 @@ def trace(power: Power, part: Part, channel: Channel) -> Trace:
         part,
         channel,
         inputs=_one_each(power, live) or inputs,
-        ground=(at_ground or list(grounds) or [None])[0],
+        ground=next(iter((*at_ground, *grounds)), None),
         control=next(iter(channel.nets(Role.BIAS)), None),
         tap=next(iter(channel.nets(Role.FEEDBACK)), None),
         is_off=bool(inputs) and not live,
@@ -92,7 +92,7 @@ def _output_pin(power: Power, found: Trace) -> str | None:
     nets = found.channel.nets(Role.OUTPUT)
     wired = [net for net in nets if len(power.mesh.members.get(power.mesh.groups.of(net), ())) > 1 or _is_wired(power, net)]
     live = [net for net in wired if power.mesh.groups.of(net) not in power.ground or found.channel.sign < 0]
-    return (live or wired or [None])[0]
+    return next(iter((*live, *wired)), None)
 
 
 def _is_wired(power: Power, net: str) -> bool:

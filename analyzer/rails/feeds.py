@@ -1,0 +1,133 @@
+"""What feeds what: regulators, passages, connectors and batteries as edges between groups."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass
+from graphlib import CycleError, TopologicalSorter
+
+from analyzer.circuit import natural_key
+from analyzer.evidence import Evidence, Grade
+from analyzer.quantity import Span
+from analyzer.rails.kinds import Kind
+from analyzer.rails.passages import SILICON_DROP, Passage
+from analyzer.rails.power import Power
+from analyzer.rails.wiring import Trace
+from analyzer.rule import PASSAGES, Topology
+
+SWITCH_DROP = Span(0.0, 0.05, 0.2)
+
+
+@dataclass(frozen=True)
+class Edge:
+    """One feed.
+
+    Attributes:
+        ref, kind, channel: As in `rail.Feed`.
+        source: Group it draws from; None from outside.
+        sink: Group it feeds.
+        first: References between its own pin and the net where it arrives.
+        trace: The channel, for recognised parts.
+        drop: What it loses, for passages.
+    """
+
+    ref: str
+    kind: str
+    channel: str
+    source: str | None
+    sink: str
+    first: tuple[str, ...] = ()
+    trace: Trace | None = None
+    drop: Evidence | None = None
+
+
+def part_edges(power: Power, traces: Iterable[Trace]) -> tuple[Edge, ...]:
+    """Feeds of recognised parts that are fitted, switched on, and not bridged."""
+    of = power.mesh.groups.of
+    found: list[Edge] = []
+    for trace in traces:
+        if not trace.part.component.fitted or trace.is_off or trace.output is None:
+            continue
+        sink = of(trace.output)
+        is_passage = trace.channel.topology in PASSAGES
+        inputs = trace.inputs if is_passage else trace.inputs[:1]
+        drop = passage_drop(trace) if is_passage else None
+        kind = "passage" if is_passage else "regulator"
+        sources: list[str | None] = [of(net) for net in inputs]
+        for source in sources or [None]:
+            if source != sink:
+                found.append(Edge(trace.part.ref, kind, trace.channel.name, source, sink, trace.first, trace, drop))
+    return tuple(found)
+
+
+def passage_drop(trace: Trace) -> Evidence:
+    """Drop of a recognised passage: from its rule, else presumed for its kind."""
+    figures = trace.channel.figures
+    if "forward_drop" in figures:
+        return figures["forward_drop"]
+    if "on_resistance" in figures and "output_current_max" in figures:
+        ohms, amps = figures["on_resistance"], figures["output_current_max"]
+        worst = ohms.span.high * amps.span.high
+        return Evidence(
+            f"drop of {trace.part.ref}", Span(0.0, worst / 2, worst), "V", f"{trace.part.ref} on-resistance and rating",
+            Grade.DERIVED, f"0 to {ohms.span.high:g} Ω · {amps.span.high:g} A", (ohms, amps),
+        )
+    span = SILICON_DROP if trace.channel.topology is Topology.SERIES_DIODE else SWITCH_DROP
+    return Evidence(
+        f"drop of {trace.part.ref}", span, "V", f"presumed for {trace.channel.topology.value}", Grade.PRESUMED,
+        note="drop not stated, common practice",
+    )
+
+
+def discrete_edges(passages: Iterable[Passage]) -> tuple[Edge, ...]:
+    """Feeds through discrete parts."""
+    return tuple(
+        Edge(passage.ref, "passage", "", passage.source, passage.sink, (), None, passage.drop) for passage in passages
+    )
+
+
+def source_edges(power: Power, groups: Iterable[str], fed: frozenset[str]) -> tuple[Edge, ...]:
+    """Connectors and batteries as feeds: batteries everywhere, connectors only where nothing else feeds the rail."""
+    found: list[Edge] = []
+    for group in groups:
+        for component, _ in power.sources(group):
+            is_battery = power.mesh.joined.kinds[component.key] is Kind.BATTERY
+            if is_battery or group not in fed:
+                found.append(Edge(component.ref, "battery" if is_battery else "connector", "", None, group))
+    return tuple(found)
+
+
+def cut_cycles(
+    needs: dict[str, set[str]], prefer: frozenset[str] = frozenset()
+) -> tuple[tuple[str, ...], list[tuple[str, ...]], set[tuple[str, str]]]:
+    """Order of groups so that each follows what it needs, with every cycle cut.
+
+    Args:
+        needs: For each group, the groups it needs first.
+        prefer: Groups at which a cycle is cut first, because other evidence stands in there.
+
+    Returns:
+        The order; the cycles found, each as a path that ends where it began; the (group, needed) pairs cut.
+    """
+    cycles: list[tuple[str, ...]] = []
+    cut: set[tuple[str, str]] = set()
+    remaining = {group: set(needed) for group, needed in needs.items()}
+    while True:
+        sorter = TopologicalSorter({group: sorted(remaining[group], key=natural_key) for group in sorted(remaining, key=natural_key)})
+        try:
+            return tuple(sorter.static_order()), cycles, cut
+        except CycleError as error:
+            path: Sequence[str] = error.args[1]
+            # graphlib lists each node before the one that needs it
+            pairs = list(zip(path[1:], path, strict=False))
+            pair = min(pairs, key=lambda item: (item[1] not in prefer, natural_key(item[0]), natural_key(item[1])))
+            cycles.append(_rotated(path))
+            cut.add(pair)
+            remaining[pair[0]].discard(pair[1])
+
+
+def _rotated(path: Sequence[str]) -> tuple[str, ...]:
+    body = list(path[:-1])
+    start = body.index(min(body, key=natural_key))
+    body = body[start:] + body[:start]
+    return (*body, body[0])
