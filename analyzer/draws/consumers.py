@@ -24,6 +24,7 @@ from analyzer.draws.kinds import (
     is_led,
     is_outlet,
     letters,
+    named_ground,
     named_supply,
     takes_supply,
 )
@@ -64,8 +65,9 @@ def unfed_supplies(board: Board) -> Iterable[tuple[Component, Pin]]:
             continue
         for pin in component.pins:
             net = board.circuit.net_by_name.get(pin.net)
-            is_named = net is not None and net.is_named
-            if is_named and takes_supply(pin) and not board.rail(pin.net) and not board.supplying(pin):
+            if net is None or not net.is_named or board.rail(pin.net):
+                continue
+            if takes_supply(pin) and not named_ground(pin) and not board.supplying(pin):
                 yield component, pin
 
 

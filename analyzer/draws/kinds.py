@@ -31,6 +31,7 @@ _SUPPLY_NAME = re.compile(
 _IGNORED = re.compile(
     r"VLX\w*|VLCD|VREF\w*[+-]?|VDDLDO\w*|VCAP\w*|VCORE_?CAP|S|-VIN|VREG\w*|VDD_EXT|VBG", re.IGNORECASE
 )
+_GROUND_NAME = re.compile(r"[ADP]?GND\w*|[ADP]?VSS\w*|EP|PAD|EPAD|VEE", re.IGNORECASE)
 _LED = re.compile(r"(?<![A-Z])LED(?![A-Z]{2})|light[- ]emitting", re.IGNORECASE)
 _OUTLET = re.compile(r"USB_?-?A(?![A-Z0-9])|fan\b|outlet", re.IGNORECASE)
 
@@ -45,6 +46,8 @@ def letters(ref: str) -> str:
 def is_connector(component: Component) -> bool:
     """Whether the part leads off the board."""
     nickname, _, name = component.lib_id.partition(":")
+    if letters(component.ref) in NO_DIRECT_CURRENT or name.startswith("TestPoint"):
+        return False
     if nickname.casefold().startswith("connector") or name.startswith("Conn_"):
         return True
     return letters(component.ref) in CONNECTORS and not any(pin.kind == "power_in" for pin in component.pins)
@@ -66,6 +69,11 @@ def is_led(component: Component) -> bool:
 def takes_supply(pin: Pin) -> bool:
     """Whether a pin draws its part's supply current, by its type."""
     return pin.kind == "power_in" and not _IGNORED.fullmatch(plain_name(pin.name))
+
+
+def named_ground(pin: Pin) -> bool:
+    """Whether a pin is a ground or negative supply pin by its name."""
+    return bool(_GROUND_NAME.fullmatch(plain_name(pin.name)))
 
 
 def named_supply(component: Component, pin: Pin) -> bool:

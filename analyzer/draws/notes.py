@@ -1,7 +1,8 @@
 """Currents in the free texts of the sheets: suggestions for a person, never values.
 
-A line that states a current or a dissipation is a suggestion for the rails it names; a note that names no rail, for
-the output rails of the nearest regulator on its sheet and for the nearest part that waits for a current.
+A line that states a current or a dissipation is a suggestion for the nearest part that waits for a current (on the
+rail the line names, if it names one), and for a whole rail: the one it names, unless a part is nearer than any
+regulator, or else the output of the nearest regulator on its sheet.
 """
 
 from __future__ import annotations
@@ -18,7 +19,7 @@ from analyzer.load import Gap
 
 _NUMBER = r"[0-9]+(?:[.,][0-9]+)?"
 _CURRENT = re.compile(
-    rf"(?<![A-Za-z0-9_.]){_NUMBER}(?:\s*(?:-|–|\.\.|/|to)\s*{_NUMBER})?\s*(?:[munµμ]A|A|mA[hH]?|m?W)(?![A-Za-z0-9])(?!\s*(?:->|→))"
+    rf"(?<![A-Za-z0-9_.]){_NUMBER}(?:\s*(?:-|–|\.\.|/|to)\s*{_NUMBER})?\s*(?:[munµμ]A|A|mA[hH]?|m?W)(?![A-Za-z0-9])(?!\s*(?:->|<-|→|←))"
 )
 _CAPACITY = re.compile(rf"{_NUMBER}\s*m?A[hH]")
 _WORD = re.compile(r"[A-Za-z0-9_+.,/-]+")
@@ -54,12 +55,14 @@ def with_suggestions(board: Board, gaps: Iterable[Gap]) -> list[Gap]:
     for_rail: dict[str, list[str]] = defaultdict(list)
     for_part: dict[tuple[str, str], list[str]] = defaultdict(list)
     for hint in hints:
-        rails = hint.rails or _nearest_outputs(board, hint.place)
-        for rail in rails:
-            for_rail[rail].append(hint.text)
-        if not hint.rails:
-            for gap in _nearest_gaps(board, hint.place, waiting):
-                for_part[gap.key, gap.rail].append(hint.text)
+        parts, apart = _nearest_gaps(board, hint, waiting)
+        outputs, from_regulator = _nearest_outputs(board, hint.place)
+        for gap in parts:
+            for_part[gap.key, gap.rail].append(hint.text)
+        if hint.rails and apart < from_regulator:
+            continue  # about what one part takes from the rail it names
+        for rail in hint.rails or outputs:
+            for_rail[rail].append(f"for all of {rail}: {hint.text}")
     return [_extended(gap, for_part, for_rail) for gap in waiting]
 
 
@@ -105,26 +108,27 @@ def _volts(found: re.Match[str]) -> float:
     return float(f"{found[1]}.{found[2] or found[3] or '0'}")
 
 
-def _nearest_outputs(board: Board, place: Place) -> tuple[str, ...]:
-    """Output rails of the nearest regulator on the note's sheet."""
+def _nearest_outputs(board: Board, place: Place) -> tuple[tuple[str, ...], float]:
+    """Output rails of the nearest regulator on the note's sheet, and its distance [mm]."""
     at = {part.key: part.component.place for part in board.parts if part.component.fitted}
-    near = [(apart, key) for key, where in at.items() if (apart := _apart(place, where)) <= NEAR_REGULATOR_MM]
-    if not near:
-        return ()
-    key = min(near)[1]
+    apart, key = min(((_apart(place, where), key) for key, where in at.items()), default=(math.inf, ""))
+    if apart > NEAR_REGULATOR_MM:
+        return (), math.inf
     rails = (wiring.output_rail for wiring in board.rails.wirings if wiring.part.key == key)
-    return tuple(dict.fromkeys(rail for rail in rails if rail))
+    return tuple(dict.fromkeys(rail for rail in rails if rail)), apart
 
 
-def _nearest_gaps(board: Board, place: Place, gaps: Iterable[Gap]) -> list[Gap]:
+def _nearest_gaps(board: Board, hint: Hint, gaps: Iterable[Gap]) -> tuple[list[Gap], float]:
+    """The gaps of the nearest part that waits for a current on a rail of the hint, and its distance [mm]."""
     near = [
         (apart, gap)
         for gap in gaps
-        if (component := board.circuit.by_key.get(gap.key))
-        and (apart := _apart(place, component.place)) <= NEAR_PART_MM
+        if (not hint.rails or gap.rail in hint.rails)
+        and (component := board.circuit.by_key.get(gap.key))
+        and (apart := _apart(hint.place, component.place)) <= NEAR_PART_MM
     ]
-    least = min((apart for apart, _ in near), default=0.0)
-    return [gap for apart, gap in near if apart == least]
+    least = min((apart for apart, _ in near), default=math.inf)
+    return [gap for apart, gap in near if apart == least], least
 
 
 def _apart(one: Place, other: Place) -> float:

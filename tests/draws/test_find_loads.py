@@ -575,14 +575,17 @@ class TestNotes:
 
     def test_a_rail_named(self):
         place = "board.kicad_sch sheet / at (10, 0) mm"
-        assert self.suggestions("Imax @ 1V8 = 209 mA") == {"U3": (f'"Imax @ 1V8 = 209 mA" ({place})',), "U2": ()}
+        assert self.suggestions("Imax @ 1V8 = 209 mA") == {
+            "U3": (f'for all of +1V8: "Imax @ 1V8 = 209 mA" ({place})',),
+            "U2": (),
+        }
 
     @pytest.mark.parametrize(
         "text", ["up to 200mA", "65-100mA", "~99 mA (150 mA max) = 168 mW", "10 mA (estimated)", "0.8W"]
     )
     def test_near_a_regulator(self, text):
         found = self.suggestions(text)
-        assert found["U2"][0].startswith(f'"{text}"')
+        assert found["U2"][0].startswith(f'for all of +3V3: "{text}"')
         assert found["U3"] == ()
 
     @pytest.mark.parametrize(
