@@ -95,7 +95,7 @@ class Drawing:
         library: Expressions of the library symbols by name.
         twice: Names that two different library symbols bear.
         old_usages: Symbol uuid path → use, of files before 20221002 (root file only).
-        title: Title-block entries by upper-case name.
+        title: Title-block entries by the name of their text variable.
     """
 
     file: str

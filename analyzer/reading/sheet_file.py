@@ -166,13 +166,17 @@ def _area(drawing: Drawing, node: Node) -> bool:
     return True
 
 
+_TITLE_VARIABLES = {"rev": "REVISION", "date": "ISSUE_DATE"}
+
+
 def _title(drawing: Drawing, node: Node) -> bool:
     for child in node[1:]:
         if type(child) is list and len(child) > 1:
             if child[0] == "comment" and len(child) > 2:
                 drawing.title[f"COMMENT{text(child[1])}"] = text(child[2])
             else:
-                drawing.title[text(child[0]).upper()] = text(child[1])
+                key = text(child[0])
+                drawing.title[_TITLE_VARIABLES.get(key, key.upper())] = text(child[1])
     return True
 
 
