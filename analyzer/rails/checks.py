@@ -34,7 +34,9 @@ def check_feeds(rails: tuple[Rail, ...], wirings: tuple[Wiring, ...]) -> Iterabl
             yield kinds.OPPOSITE_FEEDS.found(rail.name, f"{rail.name} is fed with both signs: {listed}")
         unknown = [feed.ref for feed in rail.feeds if feed.volts is None]
         if known and unknown and len(rail.feeds) > 1:
-            yield kinds.FEED_VOLTS_UNKNOWN.found(rail.name, f"{rail.name}: voltage of feed {', '.join(unknown)} not known")
+            yield kinds.FEED_VOLTS_UNKNOWN.found(
+                rail.name, f"{rail.name}: voltage of feed {', '.join(unknown)} not known"
+            )
 
 
 def check_names(power: Power, levels: Levels, names: Mapping[str, str]) -> Iterable[Finding]:
@@ -45,7 +47,7 @@ def check_names(power: Power, levels: Levels, names: Mapping[str, str]) -> Itera
             named = named_volts(net)
             if named is None or found.source == f"net name {base_name(net)}":
                 continue
-            if not found.span.low * (1 - 1e-9) - 1e-9 <= named.volts <= found.span.high + 1e-9:
+            if not found.span.low - 1e-6 <= named.volts <= found.span.high + 1e-6:
                 yield kinds.NAME_DISAGREES.found(
                     names.get(group, net),
                     f"{base_name(net)} says {named.volts:g} V, {found.source} gives {_volts(found)}",
@@ -78,7 +80,7 @@ def check_dividers(power: Power, levels: Levels, wirings: tuple[Wiring, ...]) ->
         named = _named(power, wiring)
         if own is None or named is None or reasons:
             continue
-        if not own.span.low <= named <= own.span.high:
+        if not own.span.low - 1e-6 <= named <= own.span.high + 1e-6:
             message = f"{ref} makes {_volts(own)} by its divider, {wiring.output_rail} says {named:g} V"
             yield kinds.DIVIDER_AGAINST_NAME.found(ref, message, place, key=wiring.part.key)
         values = tuple(sorted(item.span.nominal for item in network.resistances))

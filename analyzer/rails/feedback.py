@@ -84,9 +84,11 @@ def solve_feedback(
     """
     drives = drives or {}
     trouble = list(network.trouble)
-    for leg in network.legs.values():
-        if leg.end in (End.DRIVEN, End.RAIL) and leg.group not in drives:
-            trouble.append(f"voltage of {leg.group} in the feedback network is not known")
+    trouble += [
+        f"voltage of {leg.group} in the feedback network is not known"
+        for leg in network.legs.values()
+        if leg.end in (End.DRIVEN, End.RAIL) and leg.group not in drives
+    ]
     if not network.legs_of(End.OUTPUT):
         trouble.append("no resistor leads from the feedback pin to the output")
     if trouble:
@@ -136,9 +138,7 @@ def _live(network: Network) -> tuple[Resistance, ...]:
 
 def _choices(network: Network) -> list[_Choice]:
     """All positions of switched legs and trimmers; the first is "as drawn": switches open, trimmers in the middle."""
-    options: list[list[_Choice]] = []
-    for switch in network.switches:
-        options.append([_Choice(), *(_Choice((pair,)) for pair in switch.pairs)])
+    options = [[_Choice(), *(_Choice((pair,)) for pair in switch.pairs)] for switch in network.switches]
     for ref, first, wiper, last, span in network.trimmers:
         places = []
         for part in (0.5, 0.0, 1.0):
@@ -147,15 +147,13 @@ def _choices(network: Network) -> list[_Choice]:
             pair = (Branch(ref, first, wiper, lower), Branch(ref, wiper, last, upper))
             places.append(_Choice(added=tuple(branch for branch in pair if branch.one != branch.other)))
         options.append(places)
-    found: list[_Choice] = []
-    for combination in itertools.islice(itertools.product(*options), 64):
-        found.append(
-            _Choice(
-                tuple(pair for choice in combination for pair in choice.merged),
-                tuple(branch for choice in combination for branch in choice.added),
-            )
+    return [
+        _Choice(
+            tuple(pair for choice in combination for pair in choice.merged),
+            tuple(branch for choice in combination for branch in choice.added),
         )
-    return found
+        for combination in itertools.islice(itertools.product(*options), 64)
+    ]
 
 
 class _Solver:
@@ -284,4 +282,3 @@ def divider_evidence(
     return Evidence(
         "output voltage", solved.volts, "V", where, Grade.DERIVED, solved.formula, tuple(parents), "; ".join(notes)
     )
-

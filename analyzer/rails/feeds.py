@@ -50,13 +50,15 @@ def part_edges(power: Power, traces: Iterable[Trace]) -> tuple[Edge, ...]:
             continue
         sink = of(trace.output)
         is_passage = trace.channel.topology in PASSAGES
-        inputs = trace.inputs if is_passage else trace.inputs[:1]
+        inputs = trace.inputs if trace.channel.topology is Topology.POWER_MUX else trace.inputs[:1]
         drop = passage_drop(trace) if is_passage else None
         kind = "passage" if is_passage else "regulator"
         sources: list[str | None] = [of(net) for net in inputs]
-        for source in sources or [None]:
-            if source != sink:
-                found.append(Edge(trace.part.ref, kind, trace.channel.name, source, sink, trace.first, trace, drop))
+        found += [
+            Edge(trace.part.ref, kind, trace.channel.name, source, sink, trace.first, trace, drop)
+            for source in sources or [None]
+            if source != sink
+        ]
     return tuple(found)
 
 
@@ -69,12 +71,21 @@ def passage_drop(trace: Trace) -> Evidence:
         ohms, amps = figures["on_resistance"], figures["output_current_max"]
         worst = ohms.span.high * amps.span.high
         return Evidence(
-            f"drop of {trace.part.ref}", Span(0.0, worst / 2, worst), "V", f"{trace.part.ref} on-resistance and rating",
-            Grade.DERIVED, f"0 to {ohms.span.high:g} Ω · {amps.span.high:g} A", (ohms, amps),
+            f"drop of {trace.part.ref}",
+            Span(0.0, worst / 2, worst),
+            "V",
+            f"{trace.part.ref} on-resistance and rating",
+            Grade.DERIVED,
+            f"0 to {ohms.span.high:g} Ω · {amps.span.high:g} A",
+            (ohms, amps),
         )
     span = SILICON_DROP if trace.channel.topology is Topology.SERIES_DIODE else SWITCH_DROP
     return Evidence(
-        f"drop of {trace.part.ref}", span, "V", f"presumed for {trace.channel.topology.value}", Grade.PRESUMED,
+        f"drop of {trace.part.ref}",
+        span,
+        "V",
+        f"presumed for {trace.channel.topology.value}",
+        Grade.PRESUMED,
         note="drop not stated, common practice",
     )
 
@@ -87,9 +98,13 @@ def discrete_edges(passages: Iterable[Passage]) -> tuple[Edge, ...]:
 
 
 def source_edges(power: Power, groups: Iterable[str], fed: frozenset[str]) -> tuple[Edge, ...]:
-    """Connectors and batteries as feeds: batteries everywhere, connectors only where nothing else feeds the rail."""
+    """Sources from outside: batteries everywhere; connectors and chips' supply outputs where nothing else feeds."""
     found: list[Edge] = []
     for group in groups:
+        inside = () if group in fed else power.chip_sources(group)
+        found += [Edge(component.ref, "supply", "", None, group) for component in inside]
+        if inside:
+            continue
         for component, _ in power.sources(group):
             is_battery = power.mesh.joined.kinds[component.key] is Kind.BATTERY
             if is_battery or group not in fed:
@@ -113,7 +128,9 @@ def cut_cycles(
     cut: set[tuple[str, str]] = set()
     remaining = {group: set(needed) for group, needed in needs.items()}
     while True:
-        sorter = TopologicalSorter({group: sorted(remaining[group], key=natural_key) for group in sorted(remaining, key=natural_key)})
+        sorter = TopologicalSorter(
+            {group: sorted(remaining[group], key=natural_key) for group in sorted(remaining, key=natural_key)}
+        )
         try:
             return tuple(sorter.static_order()), cycles, cut
         except CycleError as error:

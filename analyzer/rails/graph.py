@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass
+from itertools import pairwise
 
 from analyzer.circuit import Circuit, natural_key
 from analyzer.evidence import Evidence
@@ -21,8 +22,8 @@ from analyzer.rails.network import Mesh
 from analyzer.rails.passages import find_passages
 from analyzer.rails.power import Power
 from analyzer.rails.supplies import unused_supplies
-from analyzer.rails.wirings import wiring
 from analyzer.rails.wiring import Trace, trace
+from analyzer.rails.wirings import wiring
 from analyzer.rule import Rulebook
 from analyzer.settings import Settings
 
@@ -36,15 +37,14 @@ def find_rails(circuit: Circuit, parts: tuple[Part, ...], rulebook: Rulebook, se
     traces = tuple(trace(power, part, channel) for part in parts for channel in part.channels)
     fixed = part_edges(power, traces)
     taken = frozenset(
-        component.key
-        for one in traces
-        for outside in one.outside
-        for component in circuit.by_ref.get(outside.ref, ())
+        component.key for one in traces for outside in one.outside for component in circuit.by_ref.get(outside.ref, ())
     ) | frozenset(part.key for part in parts)
     passages = find_passages(power, taken, [(edge.source, edge.sink) for edge in fixed if edge.source])
     through = (*fixed, *discrete_edges(passages))
     groups = _rail_groups(power, through)
-    sources = source_edges(power, sorted(groups - power.ground, key=natural_key), frozenset(edge.sink for edge in through))
+    sources = source_edges(
+        power, sorted(groups - power.ground, key=natural_key), frozenset(edge.sink for edge in through)
+    )
     edges = tuple(sorted((*through, *sources), key=_edge_key))
     levels = Levels(power, settings, edges, traces)
     board = Board(power, groups, edges, levels, {group: rail_name(mesh, group) for group in groups})
@@ -150,7 +150,7 @@ class Board:
     def _findings(self, cycles: list[tuple[str, ...]], settings: Settings) -> Iterable[Finding]:
         for path in cycles:
             steps = [self.names[group] for group in path]
-            refs = [self._between(source, sink) for source, sink in zip(path, path[1:], strict=False)]
+            refs = [self._between(source, sink) for source, sink in pairwise(path)]
             text = steps[0] + "".join(f" → {ref} → {name}" for ref, name in zip(refs, steps[1:], strict=True))
             yield kinds.CIRCULAR_FEED.found(steps[0], f"feeds run in a circle: {text}")
         for ref in self.power.mesh.joined.unpaired:
@@ -162,7 +162,9 @@ class Board:
             fitted = one.part.component.fitted and not one.is_off and one.output is not None
             of = self.power.mesh.groups.of
             if fitted and one.inputs and of(one.inputs[0]) == of(one.output or ""):
-                message = f"input and output of {one.part.ref} are both on {self.names.get(of(one.inputs[0]), one.inputs[0])}"
+                message = (
+                    f"input and output of {one.part.ref} are both on {self.names.get(of(one.inputs[0]), one.inputs[0])}"
+                )
                 yield kinds.BYPASSED.found(one.part.ref, message, str(one.part.component.place), key=one.part.key)
 
     def _between(self, source: str, sink: str) -> str:

@@ -157,7 +157,7 @@ def kind_of(component: Component) -> Kind:
     if kind in (Kind.DIODE, Kind.CLAMP, Kind.LED):
         return _diode_kind(component, texts)
     if kind is Kind.RESISTOR:
-        return _resistor_kind(component, texts, pins)
+        return _resistor_kind(texts, pins)
     if kind is Kind.TRANSISTOR:
         return _transistor_kind(component, texts, pins)
     if kind in (Kind.INDUCTOR, Kind.BEAD):
@@ -177,7 +177,7 @@ def _diode_kind(component: Component, texts: tuple[str, ...]) -> Kind:
     return Kind.DIODE if len(component.pins) <= 6 else Kind.CHIP
 
 
-def _resistor_kind(component: Component, texts: tuple[str, ...], pins: int) -> Kind:
+def _resistor_kind(texts: tuple[str, ...], pins: int) -> Kind:
     if any(_THERMISTOR.search(text) for text in texts):
         return Kind.THERMISTOR
     if any(_TRIMMER.search(text) for text in texts):
@@ -226,7 +226,13 @@ def ohms(component: Component) -> float | None:
 
 def is_schottky(component: Component) -> bool:
     """Whether a diode's own texts say Schottky."""
-    texts = (symbol_of(component), component.value, component.description, component.keywords, *component.fields.values())
+    texts = (
+        symbol_of(component),
+        component.value,
+        component.description,
+        component.keywords,
+        *component.fields.values(),
+    )
     return any(_SCHOTTKY.search(text) for text in texts)
 
 

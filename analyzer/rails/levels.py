@@ -129,7 +129,8 @@ class Levels:
                 continue
             if abs(fallback.span.high) < abs(own.span.nominal) * 0.98:
                 self.distrusted[group] = (
-                    f"{fallback.source} says {fallback.span.nominal:g} V, but {one.part.ref} makes {own.span.nominal:g} V from it"
+                    f"{fallback.source} says {fallback.span.nominal:g} V, "
+                    f"but {one.part.ref} makes {own.span.nominal:g} V from it"
                 )
                 fallbacks[group] = None
 
@@ -147,7 +148,9 @@ class Levels:
         if fallback is not None:
             if not known:
                 return fallback
-            return replace(_hull([fallback, *known]), grade=Grade.PRESUMED, note=f"voltage of {', '.join(unknown)} not known")
+            return replace(
+                _hull([fallback, *known]), grade=Grade.PRESUMED, note=f"voltage of {', '.join(unknown)} not known"
+            )
         self._why[group] = self._reason(group, given)
         return None
 
@@ -205,8 +208,13 @@ def _key(one: Trace) -> tuple[str, str]:
 def _hull(known: list[Evidence]) -> Evidence:
     span = Span.hull(*(volts.span for volts in known))
     return Evidence(
-        "rail voltage", span, "V", "span over its feeds", Grade.DERIVED,
-        f"{span.low:.4g} to {span.high:.4g} V over {len(known)} feeds", tuple(known),
+        "rail voltage",
+        span,
+        "V",
+        "span over its feeds",
+        Grade.DERIVED,
+        f"{span.low:.4g} to {span.high:.4g} V over {len(known)} feeds",
+        tuple(known),
     )
 
 
@@ -217,11 +225,18 @@ def _less(source: Evidence, edge: Edge) -> Evidence:
         return source
     span = source.span if source.span.nominal >= 0 else -source.span
     lost = Span(
-        max(0.0, span.low - drop.span.high), max(0.0, span.nominal - drop.span.nominal), max(0.0, span.high - drop.span.low)
+        max(0.0, span.low - drop.span.high),
+        max(0.0, span.nominal - drop.span.nominal),
+        max(0.0, span.high - drop.span.low),
     )
     return Evidence(
-        "rail voltage", lost if source.span.nominal >= 0 else -lost, "V", f"through {edge.ref}", Grade.DERIVED,
-        f"{source.span.nominal:.4g} V less {drop.span.nominal:.3g} V", (source, drop),
+        "rail voltage",
+        lost if source.span.nominal >= 0 else -lost,
+        "V",
+        f"through {edge.ref}",
+        Grade.DERIVED,
+        f"{source.span.nominal:.4g} V less {drop.span.nominal:.3g} V",
+        (source, drop),
     )
 
 
@@ -232,12 +247,22 @@ def _battery(one: Trace, volts: Evidence) -> Evidence:
     if low is not None:
         floor, parents, note = low.span.low, (volts, low), ""
     elif 4.0 <= volts.span.nominal <= 4.5:
-        floor, parents, note = LOWEST_LI_ION, (volts,), f"empty lithium-ion cell taken as {LOWEST_LI_ION:g} V, common practice"
+        floor, parents, note = (
+            LOWEST_LI_ION,
+            (volts,),
+            f"empty lithium-ion cell taken as {LOWEST_LI_ION:g} V, common practice",
+        )
     else:
         return volts
     if floor >= volts.span.nominal:
         return volts
     return Evidence(
-        "battery voltage", Span(floor, volts.span.nominal, volts.span.high), "V", f"{one.part.ref} charge voltage",
-        Grade.DERIVED, f"{floor:g} V empty to {volts.span.nominal:g} V full", parents, note,
+        "battery voltage",
+        Span(floor, volts.span.nominal, volts.span.high),
+        "V",
+        f"{one.part.ref} charge voltage",
+        Grade.DERIVED,
+        f"{floor:g} V empty to {volts.span.nominal:g} V full",
+        parents,
+        note,
     )

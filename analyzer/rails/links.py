@@ -76,7 +76,9 @@ class Joined:
     pulsed: frozenset[str] = frozenset()
 
 
-_SWITCH_PIN = re.compile(r"(?:V?SW|LX|VLX\w*|PH|PHASE|L|LS?W|VSW|SWC|SWE|BUCK\w*_?(?:SW|LX)\w*|VSSSMPS|(?:SW|LX)[A-D_]?\d?)")
+_SWITCH_PIN = re.compile(
+    r"(?:V?SW|LX|VLX\w*|PH|PHASE|L|LS?W|VSW|SWC|SWE|BUCK\w*_?(?:SW|LX)\w*|VSSSMPS|(?:SW|LX)[A-D_]?\d?)"
+)
 _DRAIN = frozenset({"D", "C", "DRAIN", "COLLECTOR"})
 _OPEN_JUMPER = re.compile(r"(?:_|\b)(?:open|NO)(?:_|\b)", re.IGNORECASE)
 _CLOSED_JUMPER = re.compile(r"bridged|(?:_|\b)(?:NC|closed|short(?:ed)?)(?:_|\b)", re.IGNORECASE)
@@ -87,7 +89,11 @@ def conducts(component: Component, kind: Kind) -> bool:
     """Whether the part is there at all: copper shapes (net ties, bridged solder jumpers) need no fitting."""
     if component.fitted or kind is Kind.NET_TIE:
         return not _value_says_unfitted(component, kind)
-    return kind is Kind.JUMPER and "solder" in symbol_of(component).casefold() and bool(_CLOSED_JUMPER.search(symbol_of(component)))
+    return (
+        kind is Kind.JUMPER
+        and "solder" in symbol_of(component).casefold()
+        and bool(_CLOSED_JUMPER.search(symbol_of(component)))
+    )
 
 
 def _value_says_unfitted(component: Component, kind: Kind) -> bool:
@@ -217,11 +223,17 @@ def _choke_pairs(component: Component, ground: frozenset[str]) -> list[tuple[str
         return [(a, b), (c, d)]
     if len(pins) != 4:
         return None
-    choices = [((pins[0], pins[1]), (pins[2], pins[3])), ((pins[0], pins[3]), (pins[1], pins[2])), ((pins[0], pins[2]), (pins[1], pins[3]))]
+    choices = [
+        ((pins[0], pins[1]), (pins[2], pins[3])),
+        ((pins[0], pins[3]), (pins[1], pins[2])),
+        ((pins[0], pins[2]), (pins[1], pins[3])),
+    ]
     if re.search(r"L_Coupled|CommonMode", symbol_of(component)):
         return [(one.net, other.net) for one, other in choices[0]]
     fit = [choice for choice in choices if all(_alike(one, other, ground) for one, other in choice)]
-    with_return = [choice for choice in fit if any(one.net in ground or _is_return(one.net) for pair in choice for one in pair)]
+    with_return = [
+        choice for choice in fit if any(one.net in ground or _is_return(one.net) for pair in choice for one in pair)
+    ]
     return [(one.net, other.net) for one, other in with_return[0]] if len(with_return) == 1 else None
 
 
@@ -262,7 +274,9 @@ def resistor_pairs(component: Component) -> list[tuple[str, str]]:
     pins = component.pins
     if len(pins) == 2:
         return [(pins[0].net, pins[1].net)]
-    if len(pins) == 4 and all("SENSE" in pin.name.upper() or pin.name in ("", "~") or pin.name.isdigit() for pin in pins):
+    if len(pins) == 4 and all(
+        "SENSE" in pin.name.upper() or pin.name in ("", "~") or pin.name.isdigit() for pin in pins
+    ):
         distinct = list(dict.fromkeys(pin.net for pin in pins))
         if len(distinct) == 2:
             return [(distinct[0], distinct[1])]  # a four-terminal shunt with its sense pads

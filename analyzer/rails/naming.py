@@ -25,12 +25,11 @@ def rail_name(mesh: Mesh, group: str) -> str:
 
 def _score(circuit: Circuit, mesh: Mesh, net: str) -> tuple[bool, int, bool, bool, int]:
     entry = circuit.net_by_name[net]
-    consumers = {component.key for component, pin in circuit.on_net[net] if _consumes(mesh, component.key, pin.kind, pin.name)}
+    consumers = {
+        component.key for component, pin in circuit.on_net[net] if _consumes(mesh, component.key, pin.kind, pin.name)
+    }
     return (entry.is_named, len(consumers), named_volts(net) is not None, not net.startswith("/"), len(entry.pins))
 
 
 def _consumes(mesh: Mesh, key: str, kind: str, name: str) -> bool:
-    part = mesh.joined.kinds[key]
-    if part is Kind.CHIP:
-        return kind == "power_in" or is_ground_pin(name)
-    return part in (Kind.CONNECTOR, Kind.LED)
+    return kind == "power_in" or is_ground_pin(name) or mesh.joined.kinds[key] in (Kind.CONNECTOR, Kind.LED)

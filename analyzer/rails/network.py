@@ -7,8 +7,9 @@ from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field
 from enum import StrEnum
 from functools import cached_property
+from itertools import pairwise
 
-from analyzer.circuit import Circuit, Component, Pin, plain_name
+from analyzer.circuit import Circuit, Component, Pin, natural_key, plain_name
 from analyzer.quantity import Span
 from analyzer.rails.kinds import Kind, ohms, value_of
 from analyzer.rails.links import Groups, Joined, conducts, resistor_pairs
@@ -241,9 +242,8 @@ def network_at(
                         arrive(end)
             elif group == tap and kind is Kind.CHIP and pin.kind in _DRIVES:
                 trouble.append(f"{component.ref} drives the feedback pin itself")
-    return Network(
-        tap, tuple(resistances), tuple(trimmers), tuple(switches), legs, tuple(dict.fromkeys(trouble))
-    )
+    resistances.sort(key=lambda item: (natural_key(item.ref), item.one, item.other))
+    return Network(tap, tuple(resistances), tuple(trimmers), tuple(switches), legs, tuple(dict.fromkeys(trouble)))
 
 
 def _is_gate(kind: Kind, pin: Pin) -> bool:
@@ -254,7 +254,7 @@ def _switch(mesh: Mesh, component: Component, kind: Kind) -> Switch:
     """The pairs a switch can join: its channel, or neighbouring contacts."""
     groups = [mesh.groups.of(pin.net) for pin in component.pins if not _is_gate(kind, pin)]
     groups = list(dict.fromkeys(groups))
-    return Switch(component.ref, tuple(zip(groups, groups[1:], strict=False)))
+    return Switch(component.ref, tuple(pairwise(groups)))
 
 
 def _trimmer(mesh: Mesh, component: Component) -> tuple[str, str, str, str, Span] | None:

@@ -37,7 +37,8 @@ _ENTRY_KINDS = frozenset(
     }
 )
 _SUPPLY_PIN = re.compile(
-    r"V?BUS[A-Z0-9]*|VBUS\w*|\+?V(?:CC|DD|IN|BAT|SYS|\+)\w*|V\+|\+|\+BATT?|PWR|[+-]?\d+V\d*\w?|\+|BAT\+?|VSUPPLY|DC\+?", re.IGNORECASE
+    r"VBUS\w*|\+?V_?(?:IN|BATT?|SUPPLY)\w*|V\+|\+|\+?BATT?\+?|PWR_?IN|[+-]\d+V\d*\w?|VSUPPLY|DC(?:_?IN|\+)",
+    re.IGNORECASE,
 )
 _BOOT = re.compile(r"BOOT\w*|C?BST\w*|VBST|CB|VB|VBOOT|BS")
 
@@ -89,9 +90,7 @@ class Power:
 
     def names(self, group: str) -> tuple[str, ...]:
         """Names of the nets of a group that a person gave."""
-        return tuple(
-            net for net in self.mesh.members.get(group, ()) if self.mesh.circuit.net_by_name[net].is_named
-        )
+        return tuple(net for net in self.mesh.members.get(group, ()) if self.mesh.circuit.net_by_name[net].is_named)
 
     def _looks_like_supply(self, group: str) -> bool:
         nets = self.mesh.members[group]
@@ -105,7 +104,7 @@ class Power:
             if kind is Kind.BATTERY:
                 return True
             capacitor |= kind is Kind.CAPACITOR
-            if kind is Kind.CHIP and pin.kind in ("power_in", "power_out") and not is_ground_pin(pin.name):
+            if pin.kind in ("power_in", "power_out") and not is_ground_pin(pin.name):
                 supplied = True
         several = count > 1
         if supplied and several and (capacitor or self.names(group)):
@@ -128,9 +127,13 @@ class Power:
             kind = self.mesh.joined.kinds[component.key]
             if kind in (Kind.CONNECTOR, Kind.BATTERY):
                 comes_in = True
-            elif kind is Kind.CHIP and pin.kind not in ("power_in", "power_out", "passive", "no_connect", "unspecified"):
-                return False
-            elif kind not in _ENTRY_KINDS and kind is not Kind.CHIP:
+            elif (kind is Kind.CHIP and pin.kind not in (
+                "power_in",
+                "power_out",
+                "passive",
+                "no_connect",
+                "unspecified",
+            )) or (kind not in _ENTRY_KINDS and kind is not Kind.CHIP):
                 return False
         return comes_in
 
@@ -143,6 +146,28 @@ class Power:
                 found.setdefault(component.key, (component, plain_name(pin.name)))
         return tuple(found.values())
 
+    def chip_sources(self, group: str) -> tuple[Component, ...]:
+        """Fitted chips that are no recognised parts and have a supply output on this group."""
+        known = {part.key for part in self.parts}
+        found = (
+            component
+            for component, pin in self.mesh.pins(group)
+            if pin.kind == "power_out"
+            and component.fitted
+            and component.key not in known
+            and self.mesh.joined.kinds[component.key] is Kind.CHIP
+        )
+        return tuple({component.key: component for component in found}.values())
+
+    def is_sure_source(self, group: str) -> bool:
+        """Whether what comes in here is a supply by its name, by a connector's pin name, or because it is stated."""
+        nets = self.mesh.members.get(group, (group,))
+        if any(matches_net(key, nets) for key in self.stated):
+            return True
+        named = any(named_volts(net) or supply_by_name(net, self.rulebook) for net in self.names(group))
+        battery = any(self.mesh.joined.kinds[c.key] is Kind.BATTERY for c, _ in self.sources(group))
+        return self.is_entry(group) and (named or battery or self.supply_pin_name(group) is not None)
+
     def supply_pin_name(self, group: str) -> str | None:
         """Name of a connector pin on this group that says "supply"; None if there is none."""
         for _, name in self.sources(group):
@@ -153,6 +178,7 @@ class Power:
     def is_boot(self, group: str) -> bool:
         """Whether a group is the supply of a floating driver."""
         return group in self.mesh.joined.pulsed or any(
-            _BOOT.fullmatch(plain_name(pin.name).upper()) for component, pin in self.mesh.pins(group)
+            _BOOT.fullmatch(plain_name(pin.name).upper())
+            for component, pin in self.mesh.pins(group)
             if self.mesh.joined.kinds[component.key] is Kind.CHIP
         )

@@ -42,7 +42,9 @@ def reference_from_text(circuit: Circuit, component: Component) -> Evidence | No
         level = {item[1] for item in found if item[0] <= nearest + 1e-6}
         if len(level) == 1 and nearest <= _NEAR_MM:
             _, volts, note, text = min(found, key=lambda item: (item[0], item[1]))
-            return _evidence(volts, f"note '{' '.join(text.split())}' in {note.place}", "read from a note beside the part")
+            return _evidence(
+                volts, f"note '{' '.join(text.split())}' in {note.place}", "read from a note beside the part"
+            )
         if len(level) > 1:
             return None
     if match_found := _ADJUSTABLE.search(component.description):

@@ -54,7 +54,9 @@ def supply_by_name(name: str, rulebook: Rulebook) -> Evidence | None:
     rule = _rule_for(base_name(name).upper(), rulebook.supplies)
     if rule is None:
         return None
-    return replace(rule.volts, grade=Grade.PRESUMED, note=_note(f"suggested by the name {base_name(name)}", rule.volts.note))
+    return replace(
+        rule.volts, grade=Grade.PRESUMED, note=_note(f"suggested by the name {base_name(name)}", rule.volts.note)
+    )
 
 
 def _rule_for(name: str, rules: tuple[SupplyRule, ...]) -> SupplyRule | None:

@@ -21,7 +21,7 @@ Known = Callable[[str], Evidence | None]
 
 
 def network_of(power: Power, trace: Trace) -> Network | None:
-    """The resistive network at a channel's feedback pin, seen from its own ground; None if there is nothing to solve."""
+    """The network at a channel's feedback pin, seen from its own ground; None if there is nothing to solve."""
     tap_net = trace.tap
     if tap_net is None or trace.output is None:
         return None
@@ -35,7 +35,9 @@ def network_of(power: Power, trace: Trace) -> Network | None:
         # seen from the chip, its ground pin is zero and the board's ground is its output
         network = network_at(power.mesh, tap, ground, power.ground, power.is_rail, trace.part.key)
         legs = {
-            group: Leg(group, End.GROUND if group == ground else End.OUTPUT if group in power.ground else leg.end, leg.ref)
+            group: Leg(
+                group, End.GROUND if group == ground else End.OUTPUT if group in power.ground else leg.end, leg.ref
+            )
             for group, leg in network.legs.items()
         }
         return replace(network, legs=legs)
@@ -57,7 +59,9 @@ def supplies_of_drivers(power: Power, network: Network) -> dict[str, tuple[str, 
             power.mesh.groups.of(pin.net)
             for component in drivers
             for pin in component.pins
-            if pin.kind == "power_in" and not is_ground_pin(pin.name) and power.mesh.groups.of(pin.net) not in power.ground
+            if pin.kind == "power_in"
+            and not is_ground_pin(pin.name)
+            and power.mesh.groups.of(pin.net) not in power.ground
         )
         found[leg.group] = tuple(groups)
     return found
@@ -93,7 +97,9 @@ def channel_volts(
         return _by_gain(trace, figures["gain"], known(power.mesh.groups.of(trace.inputs[0])) if trace.inputs else None)
     if trace.tap is None:
         return None, ("its output voltage is neither in its name nor set by a feedback pin",), ()
-    reference = channel.reference or figures.get("reference") or reference_from_text(power.mesh.circuit, trace.part.component)
+    reference = (
+        channel.reference or figures.get("reference") or reference_from_text(power.mesh.circuit, trace.part.component)
+    )
     if reference is None:
         return None, ("reference voltage of the feedback pin not known",), ()
     reference = _with_tolerance(reference, figures.get("output_tolerance"))
@@ -101,7 +107,11 @@ def channel_volts(
     if network is None:
         if trace.output is not None and of(trace.tap) == of(trace.output):
             return _unity(power, trace, reference)
-        return None, ("feedback pin is on ground" if of(trace.tap) in power.ground else "no output found to regulate",), ()
+        return (
+            None,
+            ("feedback pin is on ground" if of(trace.tap) in power.ground else "no output found to regulate",),
+            (),
+        )
     return _by_network(power, trace, network, reference, known, settings)
 
 
@@ -138,11 +148,20 @@ def _unity(power: Power, trace: Trace, reference: Evidence) -> tuple[Evidence | 
     for net in power.names(output):
         named = volts_by_name(net)
         if named is not None and abs(named.span.nominal) > 1.3 * abs(reference.span.nominal):
-            return None, (f"feedback is wired to the output, so it is a fixed version; its voltage is not known ({net})",), ()
+            return (
+                None,
+                (f"feedback is wired to the output, so it is a fixed version; its voltage is not known ({net})",),
+                (),
+            )
     span = reference.span if trace.channel.sign > 0 or reference.span.nominal < 0 else -reference.span
     evidence = Evidence(
-        "output voltage", span, "V", f"{trace.part.ref} feedback wired to its output", Grade.DERIVED,
-        "output = reference", (reference,),
+        "output voltage",
+        span,
+        "V",
+        f"{trace.part.ref} feedback wired to its output",
+        Grade.DERIVED,
+        "output = reference",
+        (reference,),
     )
     return evidence, (), ()
 
@@ -193,7 +212,13 @@ def _by_gain(
     factor = gain.span.nominal * (-1 if trace.channel.sign < 0 and gain.span.nominal > 0 else 1)
     span = vin.span.scaled(factor)
     evidence = Evidence(
-        "output voltage", span, "V", f"{trace.part.ref} gain", Grade.DERIVED, f"{factor:g} · input voltage", (vin, gain),
+        "output voltage",
+        span,
+        "V",
+        f"{trace.part.ref} gain",
+        Grade.DERIVED,
+        f"{factor:g} · input voltage",
+        (vin, gain),
         "without load: the output falls with the load current",
     )
     return evidence, (), ()
@@ -211,14 +236,17 @@ def _by_set_current(
     parallel = [item for item in network.resistances if tap in (item.one, item.other)]
     if not parallel or len(parallel) != len(network.resistances):
         return None, ("the network at the SET pin is not plain resistance to ground",), ()
-    low, nominal, high = (
-        1 / sum(1 / item.span.corners[corner] for item in parallel) for corner in (0, 1, 2)
-    )
+    low, nominal, high = (1 / sum(1 / item.span.corners[corner] for item in parallel) for corner in (0, 1, 2))
     span = Span(current.span.low * low, current.span.nominal * nominal, current.span.high * high)
     parents = (current,) if all(item.tolerance_stated for item in parallel) else (current, settings.resistor_tolerance)
     evidence = Evidence(
-        "output voltage", span, "V", f"{trace.part.ref} SET resistor", Grade.DERIVED,
-        f"{current.span.nominal:g} A · {nominal:g} Ω", parents,
+        "output voltage",
+        span,
+        "V",
+        f"{trace.part.ref} SET resistor",
+        Grade.DERIVED,
+        f"{current.span.nominal:g} A · {nominal:g} Ω",
+        parents,
     )
     return evidence, (), ()
 

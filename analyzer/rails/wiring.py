@@ -54,7 +54,9 @@ def trace(power: Power, part: Part, channel: Channel) -> Trace:
     grounds = channel.nets(Role.GROUND)
     at_ground = [net for net in grounds if of(net) in ground]
     inputs = channel.nets(Role.INPUT)
-    live = tuple(net for net in inputs if of(net) not in ground or of(net) in {of(n) for n in grounds if n not in at_ground})
+    live = tuple(
+        net for net in inputs if of(net) not in ground or of(net) in {of(n) for n in grounds if n not in at_ground}
+    )
     found = Trace(
         part,
         channel,
@@ -90,7 +92,9 @@ def _one_each(power: Power, nets: tuple[str, ...]) -> tuple[str, ...]:
 def _output_pin(power: Power, found: Trace) -> str | None:
     """Net of the output pins, unconnected ones and those strapped to ground left out."""
     nets = found.channel.nets(Role.OUTPUT)
-    wired = [net for net in nets if len(power.mesh.members.get(power.mesh.groups.of(net), ())) > 1 or _is_wired(power, net)]
+    wired = [
+        net for net in nets if len(power.mesh.members.get(power.mesh.groups.of(net), ())) > 1 or _is_wired(power, net)
+    ]
     live = [net for net in wired if power.mesh.groups.of(net) not in power.ground or found.channel.sign < 0]
     return next(iter((*live, *wired)), None)
 
@@ -139,7 +143,7 @@ def _diodes(power: Power, group: str) -> Iterator[tuple[Component, str, bool]]:
 
 
 def diode_end(pin: Pin) -> str:
-    """ "A" or "K" by pin name, else by KiCad's numbers for diodes (1 is the cathode); "" for other pins."""
+    """Which end of a diode a pin is, "A" or "K": by name, else by KiCad's numbers (1 is the cathode); "" for others."""
     name = plain_name(pin.name).upper()
     if name[:1] in ("A", "K") and (len(name) <= 2 or name in ("ANODE", "KATHODE")):
         return name[0]
@@ -212,9 +216,7 @@ def _output_pin_not(power: Power, found: Trace, switches: tuple[str, ...]) -> st
     return None if net is None or power.mesh.groups.of(net) in switches else net
 
 
-def _boost(
-    power: Power, found: Trace, switches: tuple[str, ...], coils: list[tuple[Component, str, str]]
-) -> Trace:
+def _boost(power: Power, found: Trace, switches: tuple[str, ...], coils: list[tuple[Component, str, str]]) -> Trace:
     of = power.mesh.groups.of
     entry = [far for _, far, _ in coils if of(far) not in power.ground and of(far) not in switches]
     inputs = tuple(dict.fromkeys(entry)) or found.inputs
@@ -224,9 +226,7 @@ def _boost(
     found = replace(found, inputs=inputs[:1], is_off=found.is_off and not entry)
     if rectifiers and (output is None or of(output) == of(rectifiers[0][1])):
         diode, far = rectifiers[0]
-        return replace(
-            found, output=far, first=(diode.ref,), outside=(*found.outside, Outside(diode.ref, "diode"))
-        )
+        return replace(found, output=far, first=(diode.ref,), outside=(*found.outside, Outside(diode.ref, "diode")))
     return replace(found, output=output)
 
 
@@ -241,10 +241,15 @@ def _controller(power: Power, found: Trace) -> Trace:
             gate = plain_name(pin.name).upper() in ("G", "GATE", "B", "BASE", "G1", "G2")
             if power.mesh.joined.kinds[component.key] is Kind.TRANSISTOR and gate and component.fitted:
                 transistors.append(component)
-    transistors = list(dict.fromkeys(transistors))
+    transistors = list({component.key: component for component in transistors}.values())
     outside = tuple(Outside(component.ref, "transistor") for component in transistors)
     switches = _switch_groups(power, found.channel)
-    channel_groups = [of(pin.net) for component in transistors for pin in component.pins if plain_name(pin.name).upper() not in ("G", "B")]
+    channel_groups = [
+        of(pin.net)
+        for component in transistors
+        for pin in component.pins
+        if plain_name(pin.name).upper() not in ("G", "B")
+    ]
     nodes = switches or tuple(group for group in dict.fromkeys(channel_groups) if group in power.mesh.joined.pulsed)
     coils = [(coil, far) for group in nodes for coil, far in _inductors(power, group) if of(far) not in power.ground]
     supplies = [

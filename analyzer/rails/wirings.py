@@ -25,7 +25,7 @@ def wiring(
     ground_group = of(one.ground) if one.ground else None
     control = of(one.control) if one.control else None
     vin, why_in = _vin(power, levels, one, input_group, ground_group, settings)
-    vout, why_out = _vout(levels, one, output_group, settings)
+    vout, why_out = _vout(levels, one, output_group)
     return Wiring(
         part=one.part,
         channel=one.channel,
@@ -57,7 +57,7 @@ def _vin(
         return statement.vin, ()
     if one.is_off or group is None:
         return None, ()
-    if len(one.inputs) > 1:
+    if one.channel.topology is Topology.POWER_MUX and len(one.inputs) > 1:
         several = [levels.of.get(power.mesh.groups.of(net)) for net in one.inputs]
         known = [volts for volts in several if volts is not None]
         if len(known) < len(several):
@@ -76,8 +76,13 @@ def _vin(
         return None, (f"voltage at its ground pin not known: {levels.why(ground)}",)
     return (
         Evidence(
-            "input voltage", volts.span - below.span, "V", f"{one.part.ref} between its input and ground pins",
-            Grade.DERIVED, f"{volts.span.nominal:.4g} V - ({below.span.nominal:.4g} V)", (volts, below),
+            "input voltage",
+            volts.span - below.span,
+            "V",
+            f"{one.part.ref} between its input and ground pins",
+            Grade.DERIVED,
+            f"{volts.span.nominal:.4g} V - ({below.span.nominal:.4g} V)",
+            (volts, below),
         ),
         (),
     )
@@ -89,9 +94,7 @@ def _hull(one: Evidence, other: Evidence) -> Evidence:
     )
 
 
-def _vout(
-    levels: Levels, one: Trace, group: str | None, settings: Settings
-) -> tuple[Evidence | None, tuple[str, ...]]:
+def _vout(levels: Levels, one: Trace, group: str | None) -> tuple[Evidence | None, tuple[str, ...]]:
     if one.is_off:
         return None, ()
     if one.channel.topology in PASSAGES:

@@ -122,7 +122,9 @@ def recognised(
                 wanted = own[role].split(",")
                 pins[role] = tuple(pin for pin in component.pins if pin.number in wanted)
             elif not own:
-                matches = (re.fullmatch(pattern, re.sub(r"[_{}~^]", "", pin.name), re.IGNORECASE) for pin in component.pins)
+                matches = (
+                    re.fullmatch(pattern, re.sub(r"[_{}~^]", "", pin.name), re.IGNORECASE) for pin in component.pins
+                )
                 pins[role] = tuple(pin for pin, match in zip(component.pins, matches, strict=True) if match)
         made.append(
             Channel(
