@@ -71,7 +71,7 @@ def part(table: Table) -> PartStatement:
     theta = _D.THERMAL_RESISTANCE
     stated = {
         "rule": table.text("rule"),
-        "identity": table.text("part"),
+        "identity": table.text("identity"),
         "package": table.text("package"),
         "vin": table.evidence("vin", "input voltage", _D.VOLTAGE, -2000, 2000),
         "vout": table.evidence("vout", "output voltage", _D.VOLTAGE, -2000, 2000),
@@ -83,7 +83,7 @@ def part(table: Table) -> PartStatement:
         "board_measured": table.evidence("board_measured", "board temperature", _D.TEMPERATURE, COLDEST, HOTTEST),
         "junction_max": table.evidence("junction_max", "junction limit", _D.TEMPERATURE, COLDEST, HOTTEST),
         "share": table.number("share", _D.RATIO, 0, 1),
-        "is_regulator": table.boolean("regulator"),
+        "is_regulator": table.boolean("is_regulator"),
     }
     named = {key: _figure(table, key) for key in FIGURES}
     table.finish("heat_sink")

@@ -34,11 +34,11 @@ def site(table: Table) -> Site:
 def board(table: Table) -> Board:
     """[board]: what the bare board is."""
     stated = {
-        "board_class": board_class(table, "class"),
+        "board_class": board_class(table, "board_class"),
         "copper_layers": table.whole("copper_layers", 1, 100),
         "pour": table.evidence("pour", "copper area", _D.AREA, 0, 1),
         "conductivity": table.evidence("conductivity", "k_eff", _D.THERMAL_CONDUCTIVITY, 0, 1000, above=True),
-        "source": table.source("class") if "class" in table else None,
+        "source": table.source("board_class") if "board_class" in table else None,
     }
     table.finish()
     return Board(**given(stated))

@@ -25,7 +25,7 @@ cooling = "forced"
 altitude_exponent = 0.9
 
 [board]
-class = "2s2p"
+board_class = "2s2p"
 copper_layers = 4
 pour = "300 mm²"
 conductivity = "20 W/(m·K)"
@@ -47,7 +47,7 @@ U3 = "100/150 mA"
 
 [parts.U7]
 rule = "my-ldo"
-part = "XC6210B332"
+identity = "XC6210B332"
 package = "SOT-223"
 vin = "12 V"
 theta_ja = "50/62 K/W"
@@ -56,7 +56,7 @@ heat_sink = { theta_jc = "3 K/W", theta_cs = "0.5 K/W", theta_sa = "12 K/W" }
 case_measured = "71 °C"
 junction_max = "125 °C"
 share = "60 %"
-regulator = true
+is_regulator = true
 quiescent = "5 mA"
 efficiency = "85..90 %"
 
@@ -191,7 +191,7 @@ def test_all_faults_at_once_each_with_table_and_key(write):
         [parts.U7]
         efficency = 0.9
         efficiency = 1.2
-        regulator = "no"
+        is_regulator = "no"
         theta_ja = "0 K/W"
         heat_sink = { theta_jc = "3 K/W" }
         [links]
@@ -223,7 +223,7 @@ def test_all_faults_at_once_each_with_table_and_key(write):
         "[parts.U7] theta_ja: '0 K/W' lies outside the possible: above 0 K/W, at most 2000 K/W",
         "[parts.U7.heat_sink] theta_cs: is missing",
         "[parts.U7.heat_sink] theta_sa: is missing",
-        "[parts.U7] regulator: must be true or false, not text",
+        "[parts.U7] is_regulator: must be true or false, not text",
         "[parts.U7] efficiency: '1.2' lies outside the possible: at least 0 %, at most 100 %",
         "[parts.U7] efficency: unknown key; did you mean 'efficiency'?",
         "[links] FB3: must be true or false, not text",

@@ -17,6 +17,7 @@ from analyzer.draws.stated import stated_draws
 from analyzer.draws.tree import Edge, solve_tree
 from analyzer.findings import currents as kinds
 from analyzer.findings.base import Finding
+from analyzer.findings.rails import CIRCULAR_FEED
 from analyzer.load import Draw, Gap, Loads, RailLoad
 from analyzer.part import Part
 from analyzer.rail import Rails
@@ -77,7 +78,8 @@ def find_loads(
     findings = (
         *stated.findings,
         *rule_findings,
-        *tree.findings,
+        # a circle of feeds is reported once, by the stage that found it first
+        *(() if any(finding.name == CIRCULAR_FEED.name for finding in rails.findings) else tree.findings),
         *_unfed(board),
         *_possible(possible),
         *_below_minimum(rails, tree.loads),
