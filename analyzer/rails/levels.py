@@ -32,6 +32,7 @@ class Levels:
         networks: Feedback network by (part key, channel).
         outputs: By (part key, channel): own output voltage or None, why not, what makes it adjustable.
         distrusted: Groups whose name's voltage cannot be true, with the reason.
+        negotiated: Groups whose voltage a power-delivery contract sets, with the reason.
         conflicts: Groups whose nets' names state different voltages, with the names.
     """
 
@@ -47,6 +48,7 @@ class Levels:
         self.of: dict[str, Evidence] = {}
         self.distrusted: dict[str, str] = {}
         self.conflicts: dict[str, tuple[str, ...]] = {}
+        self.negotiated: dict[str, str] = {}
         self._why: dict[str, str] = {}
         self._links: dict[str, list[Link]] = {}
         for link in power.mesh.joined.links:
@@ -110,12 +112,19 @@ class Levels:
             return None
         if by_name:
             return by_name[0][1]
-        for net in self.power.names(group):
-            supply = supply_by_name(net, self.power.rulebook)
-            if supply is not None:
-                return supply
+        supply = next(
+            (found for net in self.power.names(group) if (found := supply_by_name(net, self.power.rulebook))), None
+        )
         pin = self.power.supply_pin_name(group)
-        return supply_by_name(pin, self.power.rulebook) or volts_by_name(pin) if pin else None
+        if supply is None and pin:
+            supply = supply_by_name(pin, self.power.rulebook) or volts_by_name(pin)
+        negotiator = self.power.negotiator(group)
+        if supply is not None and negotiator is not None:
+            self.negotiated[group] = (
+                f"{negotiator} can negotiate another voltage than {supply.span.nominal:g} V: state the contract"
+            )
+            return None
+        return supply
 
     def _distrust(self, fallbacks: dict[str, Evidence | None]) -> None:
         """Drop a name that a step-down part fed from it makes impossible."""
@@ -157,7 +166,7 @@ class Levels:
     def _reason(self, group: str, given: list[tuple[Edge, Evidence | None]]) -> str:
         if group in self.distrusted:
             return self.distrusted[group]
-        reasons = []
+        reasons = [self.negotiated[group]] if group in self.negotiated else []
         for edge, volts in given:
             if volts is not None:
                 continue
@@ -168,8 +177,13 @@ class Levels:
                 reasons.extend(f"{edge.ref}: {text}" for text in self.outputs[_key(edge.trace)][1][:1])
         if group in self.conflicts:
             reasons.append(f"names disagree: {', '.join(base_name(net) for net in self.conflicts[group])}")
-        if not given:
-            reasons.append("nothing on the board feeds it and its name states no voltage")
+        if not given and not reasons:
+            outside = dict.fromkeys(edge.ref for edge in self._incoming.get(group, []))
+            reasons.append(
+                f"it comes from {', '.join(outside)} and nothing states its voltage"
+                if outside
+                else "nothing on the board feeds it and its name states no voltage"
+            )
         return "; ".join(dict.fromkeys(reasons)) or "nothing states its voltage"
 
     def _given(self, edge: Edge, fallbacks: Mapping[str, Evidence | None]) -> Evidence | None:

@@ -40,6 +40,9 @@ _SUPPLY_PIN = re.compile(
     r"VBUS\w*|\+?V_?(?:IN|BATT?|SUPPLY)\w*|V\+|\+|\+?BATT?\+?|PWR_?IN|[+-]\d+V\d*\w?|VSUPPLY|DC(?:_?IN|\+)",
     re.IGNORECASE,
 )
+_NEGOTIATES = re.compile(
+    r"power[ _-]?delivery|(?<![A-Za-z])USB[ _-]?(?:C[ _-]?)?PD(?![A-Za-z])|PD[ _-]?(?:sink|controller)", re.IGNORECASE
+)
 _BOOT = re.compile(r"BOOT\w*|C?BST\w*|VBST|CB|VB|VBOOT|BS")
 
 
@@ -127,13 +130,17 @@ class Power:
             kind = self.mesh.joined.kinds[component.key]
             if kind in (Kind.CONNECTOR, Kind.BATTERY):
                 comes_in = True
-            elif (kind is Kind.CHIP and pin.kind not in (
-                "power_in",
-                "power_out",
-                "passive",
-                "no_connect",
-                "unspecified",
-            )) or (kind not in _ENTRY_KINDS and kind is not Kind.CHIP):
+            elif (
+                kind is Kind.CHIP
+                and pin.kind
+                not in (
+                    "power_in",
+                    "power_out",
+                    "passive",
+                    "no_connect",
+                    "unspecified",
+                )
+            ) or (kind not in _ENTRY_KINDS and kind is not Kind.CHIP):
                 return False
         return comes_in
 
@@ -145,6 +152,14 @@ class Power:
             if kind in (Kind.CONNECTOR, Kind.BATTERY) and component.fitted:
                 found.setdefault(component.key, (component, plain_name(pin.name)))
         return tuple(found.values())
+
+    def negotiator(self, group: str) -> str | None:
+        """Chip on this group that negotiates the voltage of a USB port; None if there is none."""
+        for component, _ in self.mesh.pins(group):
+            texts = (component.description, component.keywords, component.value, component.lib_id)
+            if component.fitted and any(_NEGOTIATES.search(text) for text in texts):
+                return component.ref
+        return None
 
     def chip_sources(self, group: str) -> tuple[Component, ...]:
         """Fitted chips that are no recognised parts and have a supply output on this group."""
