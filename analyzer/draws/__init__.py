@@ -7,7 +7,7 @@ from collections.abc import Iterable, Mapping
 from analyzer.circuit import Circuit, natural_key
 from analyzer.draws.board import Board
 from analyzer.draws.consumers import Consumer, find_consumers, unfed_supplies
-from analyzer.draws.edges import InputCurrent, filter_resistors, find_edges
+from analyzer.draws.edges import InputCurrent, find_edges, passage_edges
 from analyzer.draws.leds import led_draws
 from analyzer.draws.notes import with_suggestions
 from analyzer.draws.resistances import Resistances, find_resistances
@@ -51,13 +51,13 @@ def find_loads(
         from analyzer.losses.dispatch import input_current as of_losses
 
         input_current = of_losses
-    board = Board(circuit, parts, rails)
+    board = Board(circuit, parts, rails, settings)
     consumers = find_consumers(board)
     network = find_resistances(board, settings)
     stated = stated_draws(board, consumers, settings)
     ruled, rule_findings = ruled_draws(consumers, rulebook)
     computed, missing = _computed(board, network)
-    filters, filtering = filter_resistors(board, network)
+    filters, filtering = passage_edges(board, network)
     edges, lost = find_edges(board, network, input_current)
     edges += filters
     said = {(draw.key, draw.rail) for draw in stated.draws}
@@ -89,7 +89,7 @@ def find_loads(
 
 def _computed(board: Board, network: Resistances) -> tuple[list[Draw], list[Gap]]:
     leds, led_gaps, in_strings = led_draws(board, network)
-    _, filtering = filter_resistors(board, network)
+    _, filtering = passage_edges(board, network)
     resistors, resistor_gaps = resistor_draws(board, network, in_strings | filtering)
     unclear = [
         gap(component, rail, f"resistance '{component.value}' is not understood")

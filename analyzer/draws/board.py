@@ -6,10 +6,14 @@ from dataclasses import dataclass
 from functools import cached_property
 
 from analyzer.circuit import Circuit, Component, Pin
-from analyzer.draws.kinds import IN_SERIES, letters
+from analyzer.draws.kinds import IN_SERIES
 from analyzer.part import Part
 from analyzer.quantity import Span
 from analyzer.rail import Rail, Rails
+from analyzer.rails.ground import ground_nets
+from analyzer.rails.kinds import Kind
+from analyzer.rails.links import Joined, join
+from analyzer.settings import Settings
 
 
 @dataclass(frozen=True)
@@ -19,6 +23,16 @@ class Board:
     circuit: Circuit
     parts: tuple[Part, ...]
     rails: Rails
+    settings: Settings
+
+    @cached_property
+    def joined(self) -> Joined:
+        """All nets as links join them, those of signals too."""
+        return join(self.circuit, self.parts, self.settings, ground_nets(self.circuit))
+
+    def kind(self, component: Component) -> Kind:
+        """Kind of a component."""
+        return self.joined.kinds[component.key]
 
     @cached_property
     def fitted(self) -> tuple[Component, ...]:
@@ -29,6 +43,11 @@ class Board:
     def regulators(self) -> frozenset[str]:
         """Keys of the parts recognised as regulators or passages."""
         return frozenset(part.key for part in self.parts)
+
+    @cached_property
+    def passages(self) -> frozenset[str]:
+        """References of discrete parts through which rails are fed."""
+        return frozenset(feed.ref for rail in self.rails.rails for feed in rail.feeds if feed.kind == "passage")
 
     @cached_property
     def feeders(self) -> frozenset[tuple[str, str]]:
@@ -91,7 +110,7 @@ class Board:
     def _beyond(self, net: str) -> list[tuple[Component, str]]:
         found = []
         for component, pin in self.circuit.on_net.get(net, ()):
-            if not component.fitted or letters(component.ref) not in IN_SERIES or len(component.pins) != 2:
+            if not component.fitted or self.kind(component) not in IN_SERIES or len(component.pins) != 2:
                 continue
             other = component.pins[1] if component.pins[0] is pin else component.pins[0]
             found.append((component, other.net))

@@ -11,23 +11,22 @@ list: each is named, none holds up a verdict, unless a rail has nothing else tha
 from __future__ import annotations
 
 from collections.abc import Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from analyzer.circuit import Component, Pin
 from analyzer.draws.board import Board
 from analyzer.draws.kinds import (
-    CHIPS,
-    IN_SERIES,
-    NO_DIRECT_CURRENT,
+    PASSIVE,
     SURE_LOADS,
+    carries_nothing,
     is_connector,
     is_led,
     is_outlet,
-    letters,
     named_ground,
     named_supply,
     takes_supply,
 )
+from analyzer.rails.kinds import letters
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,7 +52,7 @@ def find_consumers(board: Board) -> tuple[Consumer, ...]:
     """All consumers, in natural order of reference, then in pin order."""
     found: list[Consumer] = []
     for component in board.fitted:
-        if component.key not in board.regulators:
+        if component.key not in board.regulators and component.ref not in board.passages:
             found += _of(board, component)
     return tuple(consumer for consumer in found if (consumer.component.ref, consumer.rail) not in board.feeders)
 
@@ -61,7 +60,7 @@ def find_consumers(board: Board) -> tuple[Consumer, ...]:
 def unfed_supplies(board: Board) -> Iterable[tuple[Component, Pin]]:
     """Supply pins on a named net that no rail reaches."""
     for component in board.fitted:
-        if component.key in board.regulators or is_connector(component):
+        if component.key in board.regulators or is_connector(component, board.kind(component)):
             continue
         for pin in component.pins:
             net = board.circuit.net_by_name.get(pin.net)
@@ -72,19 +71,23 @@ def unfed_supplies(board: Board) -> Iterable[tuple[Component, Pin]]:
 
 
 def _of(board: Board, component: Component) -> list[Consumer]:
-    kind = letters(component.ref)
-    if is_connector(component):
+    kind = board.kind(component)
+    if is_connector(component, kind):
         return _connector(board, component)
-    supply = [pin for pin in component.pins if takes_supply(pin)]
-    if found := _by_rail(board, component, supply):
-        return found
-    if kind in NO_DIRECT_CURRENT - CHIPS or (kind in IN_SERIES and len(component.pins) <= 2) or is_led(component):
+    powered = [pin for pin in component.pins if pin.kind == "power_in"]
+    if found := _by_rail(board, component, (pin for pin in powered if takes_supply(pin))):
+        # references and the like are on a rail of their own at times: then they may be all that draws there
+        return found + _others(_by_rail(board, component, powered), found)
+    if kind in PASSIVE or carries_nothing(component, kind) or is_led(component, kind):
         return []
-    if not supply and (found := _by_rail(board, component, [p for p in component.pins if named_supply(component, p)])):
+    if not powered and (found := _by_rail(board, component, (p for p in component.pins if named_supply(component, p)))):
         return found
-    if supply:
-        return []
-    return _on_rails(board, component, is_sure=kind in SURE_LOADS)
+    return _on_rails(board, component, is_sure=not powered and letters(component.ref) in SURE_LOADS)
+
+
+def _others(all_of_them: Iterable[Consumer], found: Iterable[Consumer]) -> list[Consumer]:
+    rails = {consumer.rail for consumer in found}
+    return [replace(consumer, is_sure=False) for consumer in all_of_them if consumer.rail not in rails]
 
 
 def _by_rail(board: Board, component: Component, pins: Iterable[Pin]) -> list[Consumer]:

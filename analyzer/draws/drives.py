@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from analyzer.circuit import Component, Pin
 from analyzer.draws.board import Board
-from analyzer.draws.kinds import JOINING, NO_DIRECT_CURRENT, is_connector, letters
+from analyzer.draws.kinds import JOINING, carries_nothing, is_connector
 from analyzer.draws.resistances import Resistances
 
 _HIGH_IMPEDANCE = frozenset({"input", "power_in", "no_connect", "unconnected", "free"})
@@ -51,7 +51,7 @@ class Drives:
                     continue
                 found = True
                 if pin.kind not in _DRIVES:
-                    is_signal = is_signal and is_connector(component)
+                    is_signal = is_signal and is_connector(component, self._board.kind(component))
                     continue
                 for name in self._board.rails_at(component):
                     if volts := self._board.rails.by_name[name].volts:
@@ -65,5 +65,5 @@ def _can_drive(board: Board, component: Component, pin: Pin) -> bool:
     if component.key in board.regulators:
         # power-good outputs pull; what a regulator's other pins take is in its own budget
         return pin.kind in _DRIVES and pin.kind != "output"
-    kind = letters(component.ref)
-    return kind not in NO_DIRECT_CURRENT and not (kind in JOINING and len(component.pins) == 2)
+    kind = board.kind(component)
+    return kind not in JOINING and not carries_nothing(component, kind)

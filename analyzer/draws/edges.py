@@ -7,7 +7,7 @@ from functools import partial
 
 from analyzer.circuit import Component
 from analyzer.draws.board import Board
-from analyzer.draws.resistances import Resistances, Resistor, is_rail, rail_node, rail_of
+from analyzer.draws.resistances import Resistances, is_rail, rail_node, rail_of
 from analyzer.draws.resistors import gap
 from analyzer.draws.tree import Edge
 from analyzer.evidence import Evidence, Grade
@@ -48,22 +48,35 @@ def find_edges(board: Board, network: Resistances, input_current: InputCurrent) 
     return edges, gaps
 
 
-def filter_resistors(board: Board, network: Resistances) -> tuple[list[Edge], frozenset[str]]:
-    """Resistors that alone feed a rail, as edges; and their keys. What flows through one is the load of that rail."""
+def passage_edges(board: Board, network: Resistances) -> tuple[list[Edge], frozenset[str]]:
+    """Discrete parts through which a rail is fed, as edges, and their keys: what flows there is the load of the rail.
+
+    Besides the feeds that the rails stage found, a resistor that alone leads from a fed rail to one without a feed.
+    """
+    wired = {(wiring.part.ref, wiring.channel.name, wiring.input_rail) for wiring in board.rails.wirings}
     edges = []
+    for rail in board.rails.rails:
+        for feed in rail.feeds:
+            above = _live(board, feed.from_rail)
+            if above is None or rail.is_ground or (feed.ref, feed.channel, above) in wired:
+                continue
+            # further inputs of a power multiplexer come here too
+            edges += [
+                Edge(component, feed.channel, above, rail.name, partial(_passed, component, rail.name), feed.share)
+                for component in board.circuit.by_ref.get(feed.ref, ())[:1]
+            ]
     for resistor in network.resistors:
         if not (is_rail(resistor.a) and is_rail(resistor.b)):
             continue
         a, b = (board.rails.by_name[rail_of(node)] for node in (resistor.a, resistor.b))
         if a.is_ground or b.is_ground or bool(a.feeds) == bool(b.feeds):
             continue
-        above, below = (a, b) if a.feeds else (b, a)
-        edges.append(Edge(resistor.component, "", above.name, below.name, partial(_passed, resistor, below.name)))
+        above, below = (a.name, b.name) if a.feeds else (b.name, a.name)
+        edges.append(Edge(resistor.component, "", above, below, partial(_passed, resistor.component, below)))
     return edges, frozenset(edge.component.key for edge in edges)
 
 
-def _passed(resistor: Resistor, below: str, load: Span) -> Evidence:
-    component = resistor.component
+def _passed(component: Component, below: str, load: Span) -> Evidence:
     source = f"{component.place}, {component.ref}"
     return Evidence(f"current through {component.ref}", load, "A", source, Grade.DERIVED, f"I = load of {below}")
 

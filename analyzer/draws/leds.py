@@ -58,7 +58,7 @@ class _Walk:
 
 def led_draws(board: Board, network: Resistances) -> tuple[list[Draw], list[Gap], frozenset[str]]:
     """Draws and gaps of LEDs, and the keys of the resistors in their strings."""
-    leds = [component for component in board.fitted if is_led(component)]
+    leds = [component for component in board.fitted if is_led(component, board.kind(component))]
     junctions = [junction for component in leds for junction in _junctions(network, component)]
     drives = Drives(board, network, frozenset(component.key for component in leds))
     finder = _Finder(network, junctions, drives)

@@ -9,26 +9,30 @@ from functools import cached_property
 from analyzer.circuit import Component, Pin
 from analyzer.component_value import component_value
 from analyzer.draws.board import Board
-from analyzer.draws.kinds import JOINING, letters
 from analyzer.evidence import Evidence, Grade
 from analyzer.quantity import Dimension, Span
+from analyzer.rails.kinds import Kind
+from analyzer.rails.links import resistor_pairs
 from analyzer.settings import Settings
 
-_RESISTOR_LETTERS = frozenset({"R", "RS", "RSH"})
+_THERMISTOR = Span(1 / 30, 1.0, 30.0)
+"""Resistance of a thermistor over its temperatures, relative to its value at 25 °C (common practice)."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Resistor:
-    """A fitted resistor with a value.
+    """A fitted resistor with a value, or one resistor of an array.
 
     Attributes:
         component: The part.
+        name: Its key; of an array with a number behind it.
         a: Node at its first pin.
         b: Node at its second pin.
         ohms: Resistance with its tolerance [Ω].
     """
 
     component: Component
+    name: str
     a: str
     b: str
     ohms: Evidence
@@ -40,7 +44,7 @@ class Resistances:
 
     Attributes:
         resistors: Those with a value above zero.
-        not_understood: Those whose value text says no resistance.
+        not_understood: Those whose value text says no resistance, or whose pins do not pair.
         node: Net → node; nets joined by links share one. A node on a rail has the rail's name behind "rail ".
         nets: Node → its nets, rails left out.
     """
@@ -52,7 +56,7 @@ class Resistances:
 
     @cached_property
     def keys(self) -> frozenset[str]:
-        """Keys of the resistors."""
+        """Keys of the parts."""
         return frozenset(resistor.component.key for resistor in self.resistors)
 
     def at_pin(self, pin: Pin) -> str:
@@ -80,82 +84,48 @@ def rail_node(rail: str) -> str:
 
 def find_resistances(board: Board, settings: Settings) -> Resistances:
     """The resistors and nodes of a board."""
-    pairs: list[tuple[Component, float | None, float | None]] = []
-    joined = _Nodes(board)
-    for component in board.fitted:
-        kind = letters(component.ref)
-        if len(component.pins) != 2 or component.key in board.regulators:
-            continue
-        if kind in _RESISTOR_LETTERS:
-            value = component_value(component.value)
-            usable = value and value.dimension in (None, Dimension.RESISTANCE) and not value.is_unfitted
-            ohms = value.magnitude if value and usable else None
-            pairs.append((component, ohms, value.tolerance if value else None))
-            joins = ohms == 0
-        else:
-            joins = kind in JOINING and not (kind in ("JP", "SJ") and "open" in component.lib_id.casefold())
-        if settings.links.get(component.ref, joins):
-            joined.join(component.pins[0].net, component.pins[1].net)
+    node = {net.name: _node(board, net.name) for net in board.circuit.nets}
+    members: dict[str, list[str]] = {}
+    for net, at in node.items():
+        if not is_rail(at):
+            members.setdefault(at, []).append(net)
     found: list[Resistor] = []
     unknown: list[Component] = []
-    for component, ohms, tolerance in pairs:
-        a, b = (joined.node(pin.net) for pin in component.pins)
-        if a == b or ohms == 0 or settings.links.get(component.ref):
+    for component in board.fitted:
+        kind = board.kind(component)
+        if kind not in (Kind.RESISTOR, Kind.THERMISTOR) or component.key in board.regulators:
             continue
-        if ohms is None:
-            unknown.append(component)
-        else:
-            found.append(Resistor(component, a, b, _resistance(component, ohms, tolerance, settings)))
-    return Resistances(tuple(found), tuple(unknown), joined.nodes(), joined.members())
+        pairs = resistor_pairs(component)
+        value = component_value(component.value)
+        usable = value is not None and value.dimension in (None, Dimension.RESISTANCE) and not value.is_unfitted
+        ends = [(node[one], node[other]) for one, other in pairs if node[one] != node[other]]
+        if value is None or not usable or value.magnitude is None or (not pairs and len(component.pins) > 1):
+            unknown += [component] if ends or not pairs else []
+            continue
+        if value.magnitude == 0:
+            continue
+        ohms = _resistance(component, kind, value.magnitude, value.tolerance, settings)
+        many = len(pairs) > 1
+        found += [
+            Resistor(component, f"{component.key} {n}" if many else component.key, a, b, ohms)
+            for n, (a, b) in enumerate(ends, 1)
+        ]
+    return Resistances(tuple(found), tuple(unknown), node, {at: tuple(nets) for at, nets in members.items()})
 
 
-def _resistance(component: Component, ohms: float, tolerance: float | None, settings: Settings) -> Evidence:
+def _node(board: Board, net: str) -> str:
+    rail = board.rail(net)
+    return rail_node(rail.name) if rail else board.joined.groups.of(net)
+
+
+def _resistance(component: Component, kind: Kind, ohms: float, tolerance: float | None, settings: Settings) -> Evidence:
     default = settings.resistor_tolerance
-    spread = default.span.high if tolerance is None else tolerance
-    return Evidence(
-        f"resistance of {component.ref}",
-        Span.around(ohms, spread),
-        "Ω",
-        f"{component.place}, {component.ref} value '{component.value}'",
-        Grade.STATED,
-        parents=(default,) if tolerance is None else (),
-        note="tolerance not stated in the value" if tolerance is None else "",
-    )
-
-
-class _Nodes:
-    """Sets of nets that links make one node."""
-
-    def __init__(self, board: Board) -> None:
-        self._board = board
-        self._parent: dict[str, str] = {}
-
-    def join(self, one: str, other: str) -> None:
-        """Make two nets one node; two rails stay apart, the rails stage has decided about them."""
-        a, b = self.node(one), self.node(other)
-        if a == b or (is_rail(a) and is_rail(b)):
-            return
-        if is_rail(b) or (not is_rail(a) and b < a):
-            a, b = b, a
-        self._parent[b] = a
-
-    def node(self, net: str) -> str:
-        """The node of a net."""
-        rail = self._board.rail(net)
-        name = rail_node(rail.name) if rail else net
-        while name in self._parent:
-            name = self._parent[name]
-        return name
-
-    def nodes(self) -> dict[str, str]:
-        """Net → node, for every net of the circuit."""
-        return {net.name: self.node(net.name) for net in self._board.circuit.nets}
-
-    def members(self) -> dict[str, tuple[str, ...]]:
-        """Node → nets, for nodes that are no rail."""
-        found: dict[str, list[str]] = {}
-        for net in self._board.circuit.nets:
-            node = self.node(net.name)
-            if not is_rail(node):
-                found.setdefault(node, []).append(net.name)
-        return {node: tuple(nets) for node, nets in found.items()}
+    source = f"{component.place}, {component.ref} value '{component.value}'"
+    name = f"resistance of {component.ref}"
+    if kind is Kind.THERMISTOR:
+        note = "thermistor over its temperatures, common practice"
+        return Evidence(name, _THERMISTOR.scaled(ohms), "Ω", source, Grade.PRESUMED, note=note)
+    if tolerance is None:
+        span, note = Span.around(ohms, default.span.high), "tolerance not stated in the value"
+        return Evidence(name, span, "Ω", source, Grade.STATED, parents=(default,), note=note)
+    return Evidence(name, Span.around(ohms, tolerance), "Ω", source, Grade.STATED)

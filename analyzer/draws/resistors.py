@@ -106,7 +106,7 @@ class _Group:
                 continue
             spans = self._spans(node, adjacent)
             for resistor in adjacent:
-                span = spans[resistor.component.key]
+                span = spans[resistor.name]
                 if self._is_supply_line(resistor, node, span):
                     gaps.append(gap(resistor.component, rail.name, "current behind this resistor not stated"))
                 elif span.low or span.high:
@@ -117,7 +117,7 @@ class _Group:
         """Current of each resistor on the rail at `node`, positive where it loads the rail."""
         sign = 1.0 if self.known[node].nominal >= 0 else -1.0
         worst, best = (min, max) if sign > 0 else (max, min)
-        heavy: dict[str, list[float]] = {resistor.component.key: [] for resistor in adjacent}
+        heavy: dict[str, list[float]] = {resistor.name: [] for resistor in adjacent}
         light: dict[str, list[float]] = {key: [] for key in heavy}
         own_strong, own_weak = (self.known[node].high, self.known[node].low)
         if sign < 0:
@@ -149,7 +149,7 @@ class _Group:
         self, into: dict[str, list[float]], ohms: list[float], fixed: Mapping[str, float], node: str, sign: float
     ) -> None:
         branches = [
-            Branch(resistor.component.key, resistor.a, resistor.b, value)
+            Branch(resistor.name, resistor.a, resistor.b, value)
             for resistor, value in zip(self.group, ohms, strict=True)
         ]
         ends = {**dict.fromkeys(self.rails, 0.0), **self.grounds, **fixed}
