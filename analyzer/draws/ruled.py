@@ -2,24 +2,17 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Iterable
 from dataclasses import replace
-from fnmatch import fnmatchcase
 
 from analyzer.circuit import Component, plain_name
 from analyzer.draws.consumers import Consumer
 from analyzer.findings import currents as kinds
 from analyzer.findings.base import Finding
 from analyzer.load import Draw
+from analyzer.recognise.identity import identities
+from analyzer.recognise.pattern import glob, match
 from analyzer.rule import LoadRule, Rulebook
-
-_PLACEHOLDER = re.compile(r"\{[a-z]+\}")
-_PART_NUMBER = re.compile(
-    r"MPN|MPN.?ALT|PN|DPN|PARTNO|PART.?(?:NUMBER|NO|#)|MANF#|MFR?\.?.?(?:NO|#|PN)?\.?|MFG|MANUFACTURER.?PART.?(?:NUMBER|NO)?"
-    r"|PROD.?ID",
-    re.IGNORECASE,
-)
 
 
 def ruled_draws(consumers: Iterable[Consumer], rulebook: Rulebook) -> tuple[list[Draw], list[Finding]]:
@@ -50,7 +43,7 @@ def _of(consumer: Consumer, rule: LoadRule) -> list[Draw]:
     component = consumer.component
     draws = []
     for pattern, amps in rule.supplies:
-        pins = [pin for pin in consumer.pins if fnmatchcase(plain_name(pin.name).upper(), pattern.upper())]
+        pins = [pin for pin in consumer.pins if glob(pattern.upper(), plain_name(pin.name).upper())]
         if pins:
             evidence = replace(amps, quantity=f"supply current of {component.ref} at {plain_name(pins[0].name)}")
             draws.append(Draw(component.ref, component.key, consumer.rail, evidence, "ruled"))
@@ -58,16 +51,10 @@ def _of(consumer: Consumer, rule: LoadRule) -> list[Draw]:
 
 
 def _fitting(component: Component, rules: Iterable[LoadRule]) -> list[LoadRule]:
-    """The best rules for a part: by its part number, else its value, else its symbol; user rules before shipped."""
-    numbers = [text for name, text in component.fields.items() if _PART_NUMBER.fullmatch(name.strip())]
-    for texts in (numbers, [component.value], [component.lib_id.rpartition(":")[2]]):
-        names = [text.strip().upper() for text in texts if text.strip()]
-        found = [rule for rule in rules if any(_fits(rule, name) for name in names)]
+    """The best rules for a part: by the best text that names it; user rules before shipped ones."""
+    for identity in identities(component):
+        found = [rule for rule in rules if any(match(pattern, identity.text) for pattern in rule.patterns)]
         if found:
             best = [rule for rule in found if rule.is_user] or found
             return sorted(best, key=lambda rule: (rule.name, rule.where))
     return []
-
-
-def _fits(rule: LoadRule, name: str) -> bool:
-    return any(fnmatchcase(name, _PLACEHOLDER.sub("*", pattern.text).upper()) for pattern in rule.patterns)

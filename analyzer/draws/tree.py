@@ -95,11 +95,13 @@ def _add(here: _Rail, edge: Edge, solved: Mapping[str, RailLoad], taken: dict[tu
     if amps is None:
         _miss(here, edge, "what it takes from its input cannot be computed")
         return
-    here.draws.append(Draw(component.ref, component.key, edge.above, amps, "regulator", _pulse(edge, below)))
     if below.is_complete:
         taken[component.key, edge.channel] = amps
     else:
         _miss(here, edge, f"{edge.below} has gaps")
+        if amps.span.high == 0:
+            return  # nothing known yet is no draw of nothing
+    here.draws.append(Draw(component.ref, component.key, edge.above, amps, "regulator", _pulse(edge, below)))
 
 
 def _miss(here: _Rail, edge: Edge, why: str) -> None:

@@ -149,7 +149,7 @@ class TestStated:
         board, known = one_regulator(chip("U2", "+3V3"))
         found = loads(board, known, Settings(draws=(stated("U2", 0.1, "+5V"),)))
         assert "draw-off-its-rail" in names(found)
-        assert [draw.ref for draw in found.by_rail["+5V"].draws] == ["U1", "U2"]
+        assert [draw.ref for draw in found.by_rail["+5V"].draws] == ["U2"]
         assert [gap.ref for gap in found.by_rail["+3V3"].gaps] == ["U2"]
 
     def test_draw_on_a_regulator(self):
@@ -624,3 +624,69 @@ def test_shunt_regulator_s_resistor_is_counted_once():
     found = loads(board, rails({"+12V": 12, "VREF": 10}, [shunt]))
     assert found.by_rail["+12V"].total.nominal == pytest.approx(0.002)
     assert found.by_rail["VREF"].total == Span.exact(0.001)
+
+
+class TestDiscretePassages:
+    @staticmethod
+    def through(component, volts=4.6):
+        """VBUS feeds SYS through one part, SYS feeds U2."""
+        known = rails({"VBUS": 5.0, "SYS": volts})
+        feed = Feed(component.ref, "passage", "", "VBUS")
+        fed = tuple(Rail("SYS", ("SYS",), r.volts, (feed,)) if r.name == "SYS" else r for r in known.rails)
+        board = circuit(component, chip("U2", "SYS", fields={"I_load": "250 mA"}))
+        return loads(board, Rails(fed, (), of_net=known.of_net))
+
+    def test_diode(self):
+        found = self.through(part("D1", [("1", "K", "passive", "SYS"), ("2", "A", "passive", "VBUS")], "SS34"))
+        assert found.by_rail["VBUS"].total == Span.exact(0.25)
+        assert [(draw.ref, draw.kind) for draw in found.by_rail["VBUS"].draws] == [("D1", "regulator")]
+
+    def test_transistor_is_no_possible_load_of_its_own(self):
+        pins = [("1", "G", "passive", "GND"), ("2", "S", "passive", "SYS"), ("3", "D", "passive", "VBUS")]
+        found = self.through(part("Q1", pins, "Q_PMOS_GSD"))
+        assert found.by_rail["VBUS"].total == Span.exact(0.25)
+        assert found.possible == ()
+
+    def test_filter_resistor_is_not_solved_as_a_bleeder(self):
+        found = self.through(part("R1", ["VBUS", "SYS"], "2R2"))
+        assert found.by_rail["VBUS"].total == Span.exact(0.25)
+        assert found.by_rail["SYS"].total == Span.exact(0.25)
+
+    def test_every_input_of_a_multiplexer_carries_the_load(self):
+        u1 = part(
+            "U1",
+            [("1", "VIN", "power_in", "VA"), ("2", "VIN", "power_in", "VB"), ("3", "VOUT", "power_out", "SYS")],
+        )
+        mux = wire(u1, "VA", "SYS", Topology.POWER_MUX)
+        known = rails({"VA": 5, "VB": 5, "SYS": 5}, [mux])
+        feeds = (Feed("U1", "passage", "", "VA"), Feed("U1", "passage", "", "VB"))
+        fed = tuple(Rail("SYS", ("SYS",), r.volts, feeds) if r.name == "SYS" else r for r in known.rails)
+        board = circuit(u1, chip("U2", "SYS", fields={"I_load": "250 mA"}))
+        found = loads(board, Rails(fed, (mux,), of_net=known.of_net))
+        assert found.by_rail["VA"].total == found.by_rail["VB"].total == Span.exact(0.25)
+
+
+class TestArraysAndThermistors:
+    def test_resistor_array_pairs(self):
+        board, known = one_regulator(
+            chip("U2", "+3V3", fields={"I_load": "1 mA"}),
+            part("RN1", ["+3V3", "+3V3", "GND", "GND"], "1k 5%", "Device:R_Pack02"),
+        )
+        refs = [draw.ref for draw in loads(board, known).by_rail["+3V3"].draws]
+        assert refs == ["RN1", "RN1", "U2"]
+        assert loads(board, known).by_rail["+3V3"].total.nominal == pytest.approx(0.001 + 2 * 0.0033)
+
+    def test_thermistor_counts_hot(self):
+        board, known = one_regulator(
+            chip("U2", "+3V3", fields={"I_load": "0 mA"}),
+            part("TH1", ["+3V3", "GND"], "10k", "Device:Thermistor_NTC"),
+        )
+        total = loads(board, known).by_rail["+3V3"].total
+        assert total.nominal == pytest.approx(3.3 / 10e3)
+        assert total.high == pytest.approx(3.3 / 10e3 * 30)
+
+    def test_array_whose_pins_do_not_pair_is_a_gap(self):
+        board, known = one_regulator(
+            chip("U2", "+3V3", fields={"I_load": "1 mA"}), part("RN1", ["+3V3", "A", "B"], "10k", "Device:R_Network")
+        )
+        assert [gap.ref for gap in loads(board, known).by_rail["+3V3"].gaps] == ["RN1"]
