@@ -41,3 +41,7 @@ TABLE_BYTES = 16 * 1024 * 1024
 """Size of one parts table [bytes]."""
 TABLE_ROWS = 50_000
 """Rows of one parts table."""
+RULE_FILES = 100
+"""Rule files of one run, besides the shipped ones."""
+RULES = 20_000
+"""Rules of one run."""
