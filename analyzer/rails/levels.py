@@ -49,6 +49,7 @@ class Levels:
         self.distrusted: dict[str, str] = {}
         self.conflicts: dict[str, tuple[str, ...]] = {}
         self.negotiated: dict[str, str] = {}
+        self._standard: set[str] = set()
         self._why: dict[str, str] = {}
         self._links: dict[str, list[Link]] = {}
         for link in power.mesh.joined.links:
@@ -124,6 +125,8 @@ class Levels:
                 f"{negotiator} can negotiate another voltage than {supply.span.nominal:g} V: state the contract"
             )
             return None
+        if supply is not None:
+            self._standard.add(group)
         return supply
 
     def _distrust(self, fallbacks: dict[str, Evidence | None]) -> None:
@@ -154,6 +157,8 @@ class Levels:
         fallback = fallbacks.get(group)
         if known and not unknown:
             return known[0] if len(known) == 1 else _hull(known)
+        if given and group in self._standard:
+            fallback = None  # what feeds it is on the board, so a standard's supply name says nothing
         if fallback is not None:
             if not known:
                 return fallback
@@ -164,27 +169,27 @@ class Levels:
         return None
 
     def _reason(self, group: str, given: list[tuple[Edge, Evidence | None]]) -> str:
+        own = base_name((self.power.names(group) or self.power.mesh.members.get(group, (group,)))[0])
         if group in self.distrusted:
-            return self.distrusted[group]
-        reasons = [self.negotiated[group]] if group in self.negotiated else []
+            return f"{own}: {self.distrusted[group]}"
+        reasons = [f"{own}: {self.negotiated[group]}"] if group in self.negotiated else []
         for edge, volts in given:
             if volts is not None:
                 continue
             if edge.kind == "passage" and edge.source is not None:
-                source = self.power.names(edge.source) or self.power.mesh.members.get(edge.source, (edge.source,))
-                reasons.append(f"voltage of {base_name(source[0])} (through {edge.ref}) not known")
+                reasons.extend(self._why.get(edge.source, f"{own}: voltage behind {edge.ref} not known").split("; "))
             elif edge.trace is not None:
                 reasons.extend(f"{edge.ref}: {text}" for text in self.outputs[_key(edge.trace)][1][:1])
         if group in self.conflicts:
-            reasons.append(f"names disagree: {', '.join(base_name(net) for net in self.conflicts[group])}")
+            reasons.append(f"{own}: names disagree, {', '.join(base_name(net) for net in self.conflicts[group])}")
         if not given and not reasons:
             outside = dict.fromkeys(edge.ref for edge in self._incoming.get(group, []))
             reasons.append(
-                f"it comes from {', '.join(outside)} and nothing states its voltage"
+                f"{own} comes from {', '.join(outside)} and nothing states its voltage"
                 if outside
-                else "nothing on the board feeds it and its name states no voltage"
+                else f"nothing on the board feeds {own} and its name states no voltage"
             )
-        return "; ".join(dict.fromkeys(reasons)) or "nothing states its voltage"
+        return "; ".join(list(dict.fromkeys(reasons))[:3]) or f"nothing states the voltage of {own}"
 
     def _given(self, edge: Edge, fallbacks: Mapping[str, Evidence | None]) -> Evidence | None:
         if edge.trace is not None and edge.kind == "regulator":

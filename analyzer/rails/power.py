@@ -43,6 +43,8 @@ _SUPPLY_PIN = re.compile(
 _NEGOTIATES = re.compile(
     r"power[ _-]?delivery|(?<![A-Za-z])USB[ _-]?(?:C[ _-]?)?PD(?![A-Za-z])|PD[ _-]?(?:sink|controller)", re.IGNORECASE
 )
+_NEGOTIATING_PIN = re.compile(r"PD\d?_\w*CC|PD\d?_?VCONN|VBUS_?(?:EN_)?SNK", re.IGNORECASE)
+_CONTRACT_PIN = re.compile(r"(?:[AB]\d_?)?CC_?[12]?", re.IGNORECASE)
 _BOOT = re.compile(r"BOOT\w*|C?BST\w*|VBST|CB|VB|VBOOT|BS")
 
 
@@ -154,12 +156,32 @@ class Power:
         return tuple(found.values())
 
     def negotiator(self, group: str) -> str | None:
-        """Chip on this group that negotiates the voltage of a USB port; None if there is none."""
-        for component, _ in self.mesh.pins(group):
+        """Part that negotiates the voltage of a USB port on this group; None if there is none."""
+        nearby = [component for component, _ in self.mesh.pins(group)]
+        for component, _ in self.sources(group):
+            contract = [pin.net for pin in component.pins if _CONTRACT_PIN.fullmatch(plain_name(pin.name))]
+            nearby += self._reached_from(contract)
+        for component in nearby:
             texts = (component.description, component.keywords, component.value, component.lib_id)
-            if component.fitted and any(_NEGOTIATES.search(text) for text in texts):
+            if component.fitted and (
+                any(_NEGOTIATING_PIN.match(plain_name(pin.name)) for pin in component.pins)
+                or any(_NEGOTIATES.search(text) for text in texts)
+            ):
                 return component.ref
         return None
+
+    def _reached_from(self, nets: Iterable[str]) -> list[Component]:
+        """Parts on these nets, and those behind a protection array that the nets run through."""
+        circuit = self.mesh.circuit
+        near = [component for net in nets for component, _ in circuit.on_net[net]]
+        arrays = [
+            component
+            for component in near
+            if len(component.pins) <= 16 and self.mesh.joined.kinds[component.key] is not Kind.CONNECTOR
+        ]
+        beyond = {pin.net: None for component in arrays for pin in component.pins}
+        quiet = [net for net in beyond if self.mesh.groups.of(net) not in self.ground | self.rails]
+        return [*near, *(component for net in quiet for component, _ in circuit.on_net[net])]
 
     def chip_sources(self, group: str) -> tuple[Component, ...]:
         """Fitted chips that are no recognised parts and have a supply output on this group."""

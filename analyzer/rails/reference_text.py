@@ -15,10 +15,13 @@ _FORMULA = re.compile(
     rf"V_?\{{?\s*OUT?\s*\}}?\s*=\s*{_VOLTS}\s*[*x×·]?\s*[(\[]\s*(?:1\s*\+|[(\[]?\s*R\w*\s*/\s*R\w*\s*[)\]]?\s*\+\s*1)",
     re.IGNORECASE,
 )
-_ADJUSTABLE = re.compile(
-    r"adj(?:ustable)?\b[^.;]{0,40}?(?P<number>\d+(?:[.,]\d+)?)\s*(?P<unit>m?V)?\s*(?:-|–|to|\.\.)\s*\d+(?:[.,]\d+)?\s*V",
+_RANGE = re.compile(
+    r"(?<![\d.,])(?P<number>\d+(?:[.,]\d+)?)\s*(?P<unit>m?V)?\s*(?:-|–|to|\.\.+|~)\s*\d+(?:[.,]\d+)?\s*V(?P<tail>[^,;]{0,16})",
     re.IGNORECASE,
 )
+_ADJUSTABLE = re.compile(r"(?<![a-z])adj(?:ustable|\b)|variable", re.IGNORECASE)
+_OF_INPUT = re.compile(r"^\s*(?:in\b|in(?:put|\s|,|$)|supply|vin)", re.IGNORECASE)
+_NAMED_INPUT = re.compile(r"(?:input|vin|supply)[^,;]{0,16}$", re.IGNORECASE)
 _LEAST, _GREATEST = 0.1, 5.0
 _NEAR_MM = 120.0
 
@@ -47,12 +50,21 @@ def reference_from_text(circuit: Circuit, component: Component) -> Evidence | No
             )
         if len(level) > 1:
             return None
-    if match_found := _ADJUSTABLE.search(component.description):
-        volts = _volts(match_found)
+    return _from_description(component)
+
+
+def _from_description(component: Component) -> Evidence | None:
+    text = component.description
+    if not _ADJUSTABLE.search(text):
+        return None
+    for match in _RANGE.finditer(text):
+        if _OF_INPUT.search(match["tail"]) or _NAMED_INPUT.search(text[: match.start()]):
+            continue
+        volts = _volts(match)
         if volts is not None:
             return _evidence(
                 volts,
-                f"description of {component.ref}: '{' '.join(match_found[0].split())}'",
+                f"description of {component.ref}: '{' '.join(match[0].split())}'",
                 "lowest output of the description taken as the reference",
             )
     return None

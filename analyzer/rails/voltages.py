@@ -10,6 +10,7 @@ from analyzer.evidence import Evidence, Grade
 from analyzer.quantity import ZERO, Span
 from analyzer.rails.feedback import Drive, divider_evidence, solve_feedback
 from analyzer.rails.ground import is_ground_pin
+from analyzer.rails.names import named_volts
 from analyzer.rails.network import End, Leg, Network, network_at
 from analyzer.rails.power import Power
 from analyzer.rails.reference_text import reference_from_text
@@ -191,12 +192,26 @@ def _by_network(
     )
     if solved.volts is None:
         return None, solved.trouble, ()
+    against = _against_name(power, trace, solved.volts) if reference.grade is Grade.PRESUMED else ""
+    if against:
+        return None, (f"with {reference.span.nominal:g} V from {reference.source} the divider gives {against}",), ()
     evidence = divider_evidence(
         solved, reference, current, f"{trace.part.ref} feedback network", settings.resistor_tolerance
     )
     if trace.is_inverted:
         evidence = replace(evidence, span=-evidence.span, note=_join(evidence.note, "wired as inverter"))
     return evidence, (), solved.reasons
+
+
+def _against_name(power: Power, trace: Trace, volts: Span) -> str:
+    """What speaks against a voltage that rests on a presumed reference: a rail name that is far from it."""
+    for net in power.names(power.mesh.groups.of(trace.output or "")):
+        named = named_volts(net)
+        if named is not None and not min(0.75 * named.volts, 1.3 * named.volts) <= volts.nominal <= max(
+            0.75 * named.volts, 1.3 * named.volts
+        ):
+            return f"{volts.nominal:.3g} V, but the rail's name says {named.volts:g} V"
+    return ""
 
 
 def _driver_name(power: Power, leg: Leg) -> str:
