@@ -97,7 +97,8 @@ def _computed(board: Board, network: Resistances) -> tuple[list[Draw], list[Gap]
         for rail in board.rails_at(component)
     ]
     shunts = {w.output_rail for w in board.rails.wirings if w.channel.topology is Topology.SHUNT}
-    # what comes through the resistor of a shunt regulator feeds its rail, it does not relieve it
+    shunts |= {rail.name for rail in board.rails.rails if not rail.feeds}
+    # what comes through the resistor before a shunt regulator or reference feeds its rail, it does not relieve it
     resistors = [draw for draw in resistors if draw.rail not in shunts or draw.amps.span.nominal >= 0]
     return [*leds, *resistors], [*led_gaps, *resistor_gaps, *unclear]
 

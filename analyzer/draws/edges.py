@@ -13,10 +13,11 @@ from analyzer.draws.tree import Edge
 from analyzer.evidence import Evidence, Grade
 from analyzer.load import Gap
 from analyzer.quantity import Span
-from analyzer.rail import Wiring
+from analyzer.rail import Rail, Wiring
 from analyzer.rule import Role, Topology
 from analyzer.wording import show_span
 
+_FILTER_LOSS = 0.05
 InputCurrent = Callable[[Wiring, Span], Evidence | None]
 """(wiring, load of its output [A]) → current from its input rail [A], None if it cannot be known."""
 
@@ -69,11 +70,19 @@ def passage_edges(board: Board, network: Resistances) -> tuple[list[Edge], froze
         if not (is_rail(resistor.a) and is_rail(resistor.b)):
             continue
         a, b = (board.rails.by_name[rail_of(node)] for node in (resistor.a, resistor.b))
-        if a.is_ground or b.is_ground or bool(a.feeds) == bool(b.feeds):
+        if a.is_ground or b.is_ground or bool(a.feeds) == bool(b.feeds) or _drops(a, b):
             continue
         above, below = (a.name, b.name) if a.feeds else (b.name, a.name)
         edges.append(Edge(resistor.component, "", above, below, partial(_passed, resistor.component, below)))
     return edges, frozenset(edge.component.key for edge in edges)
+
+
+def _drops(a: Rail, b: Rail) -> bool:
+    """Whether two rails' voltages differ by more than a filter resistor loses: then Ohm's law says what flows."""
+    if a.volts is None or b.volts is None:
+        return False
+    one, other = a.volts.span.nominal, b.volts.span.nominal
+    return abs(one - other) > _FILTER_LOSS * max(abs(one), abs(other))
 
 
 def _passed(component: Component, below: str, load: Span) -> Evidence:

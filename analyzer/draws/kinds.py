@@ -11,6 +11,7 @@ PASSIVE = frozenset(
     {
         Kind.RESISTOR,
         Kind.THERMISTOR,
+        Kind.TRIMMER,
         Kind.CAPACITOR,
         Kind.INDUCTOR,
         Kind.BEAD,
@@ -27,7 +28,7 @@ PASSIVE = frozenset(
     }
 )
 """Parts that are no consumers themselves: they carry what flows behind them, or nothing, or are computed."""
-IN_SERIES = PASSIVE - {Kind.CAPACITOR, Kind.TEST_POINT, Kind.BATTERY, Kind.CLAMP, Kind.LED, Kind.CHOKE}
+IN_SERIES = PASSIVE - {Kind.TRIMMER, Kind.CAPACITOR, Kind.TEST_POINT, Kind.BATTERY, Kind.CLAMP, Kind.LED, Kind.CHOKE}
 """Two-terminal parts that may lie between a rail and a supply pin."""
 JOINING = frozenset({Kind.INDUCTOR, Kind.BEAD, Kind.CHOKE, Kind.FUSE, Kind.NET_TIE, Kind.JUMPER})
 """Parts that drive nothing of their own."""

@@ -15,6 +15,7 @@ from analyzer.rails.kinds import Kind
 from analyzer.rails.links import resistor_pairs
 from analyzer.settings import Settings
 
+_TRIMMER = 0.2
 _THERMISTOR = Span(1 / 30, 1.0, 30.0)
 """Resistance of a thermistor over its temperatures, relative to its value at 25 °C (common practice)."""
 
@@ -93,9 +94,9 @@ def find_resistances(board: Board, settings: Settings) -> Resistances:
     unknown: list[Component] = []
     for component in board.fitted:
         kind = board.kind(component)
-        if kind not in (Kind.RESISTOR, Kind.THERMISTOR) or component.key in board.regulators:
+        if kind not in (Kind.RESISTOR, Kind.THERMISTOR, Kind.TRIMMER) or component.key in board.regulators:
             continue
-        pairs = resistor_pairs(component)
+        pairs = _ends_of_trimmer(component) if kind is Kind.TRIMMER else resistor_pairs(component)
         value = component_value(component.value)
         usable = value is not None and value.dimension in (None, Dimension.RESISTANCE) and not value.is_unfitted
         ends = [(node[one], node[other]) for one, other in pairs if node[one] != node[other]]
@@ -113,6 +114,12 @@ def find_resistances(board: Board, settings: Settings) -> Resistances:
     return Resistances(tuple(found), tuple(unknown), node, {at: tuple(nets) for at, nets in members.items()})
 
 
+def _ends_of_trimmer(component: Component) -> list[tuple[str, str]]:
+    """Both ends of a potentiometer's track; what its wiper feeds is not known to take anything."""
+    ends = [pin.net for pin in component.pins if pin.number in ("1", "3")]
+    return [(ends[0], ends[1])] if len(component.pins) == 3 and len(ends) == 2 else []
+
+
 def _node(board: Board, net: str) -> str:
     rail = board.rail(net)
     return rail_node(rail.name) if rail else board.joined.groups.of(net)
@@ -125,6 +132,9 @@ def _resistance(component: Component, kind: Kind, ohms: float, tolerance: float 
     if kind is Kind.THERMISTOR:
         note = "thermistor over its temperatures, common practice"
         return Evidence(name, _THERMISTOR.scaled(ohms), "Ω", source, Grade.PRESUMED, note=note)
+    if kind is Kind.TRIMMER and tolerance is None:
+        note = "tolerance of trimmers ±20 %, common practice"
+        return Evidence(name, Span.around(ohms, _TRIMMER), "Ω", source, Grade.PRESUMED, note=note)
     if tolerance is None:
         span, note = Span.around(ohms, default.span.high), "tolerance not stated in the value"
         return Evidence(name, span, "Ω", source, Grade.STATED, parents=(default,), note=note)

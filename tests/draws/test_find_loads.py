@@ -617,6 +617,16 @@ def test_order_of_parts_does_not_matter():
     assert loads(board, known) == loads(turned, known)
 
 
+def test_dropping_resistor_before_a_reference_that_no_rule_knows():
+    u2 = part("U2", [("1", "K", "passive", "VREF"), ("2", "A", "passive", "GND")])
+    known = rails({"+12V": 12, "VREF": 10})
+    unfed = tuple(Rail("VREF", ("VREF",), r.volts) if r.name == "VREF" else r for r in known.rails)
+    board = circuit(u2, part("R1", ["+12V", "VREF"], "1k/1%"), chip("U3", "VREF", fields={"I_load": "1 mA"}))
+    found = loads(board, Rails(unfed, (), of_net=known.of_net))
+    assert found.by_rail["+12V"].total.nominal == pytest.approx(0.002)
+    assert found.by_rail["VREF"].total == Span.exact(0.001)
+
+
 def test_shunt_regulator_s_resistor_is_counted_once():
     u2 = part("U2", [("1", "VOUT", "passive", "VREF"), ("2", "GND", "passive", "GND")])
     shunt = wire(u2, "+12V", "VREF", Topology.SHUNT)
@@ -670,7 +680,17 @@ class TestArraysAndThermistors:
     def test_resistor_array_pairs(self):
         board, known = one_regulator(
             chip("U2", "+3V3", fields={"I_load": "1 mA"}),
-            part("RN1", ["+3V3", "+3V3", "GND", "GND"], "1k 5%", "Device:R_Pack02"),
+            part(
+                "RN1",
+                [
+                    (str(n), name, "passive", net)
+                    for n, (name, net) in enumerate(
+                        [("R1.1", "+3V3"), ("R2.1", "+3V3"), ("R2.2", "GND"), ("R1.2", "GND")], 1
+                    )
+                ],
+                "1k 5%",
+                "Device:R_Pack02",
+            ),
         )
         refs = [draw.ref for draw in loads(board, known).by_rail["+3V3"].draws]
         assert refs == ["RN1", "RN1", "U2"]
@@ -684,6 +704,16 @@ class TestArraysAndThermistors:
         total = loads(board, known).by_rail["+3V3"].total
         assert total.nominal == pytest.approx(3.3 / 10e3)
         assert total.high == pytest.approx(3.3 / 10e3 * 30)
+
+    def test_potentiometer_across_a_rail(self):
+        u3 = part("U3", [("1", "IN", "input", "WIPER"), ("2", "GND", "power_in", "GND")])
+        board, known = one_regulator(
+            chip("U2", "+3V3", fields={"I_load": "0 mA"}),
+            part("RV1", ["+3V3", "WIPER", "GND"], "10k", "Device:R_Potentiometer"),
+            u3,
+        )
+        total = loads(board, known).by_rail["+3V3"].total
+        assert total.corners == pytest.approx((3.3 / 12e3, 3.3 / 10e3, 3.3 / 8e3))
 
     def test_array_whose_pins_do_not_pair_is_a_gap(self):
         board, known = one_regulator(
