@@ -69,7 +69,7 @@ def circuit(*components: Component, notes: Iterable[Note] = ()) -> Circuit:
     )
 
 
-def regulator(component: Component, topology: Topology = Topology.LINEAR, **figures: float) -> Part:
+def regulator(component: Component, topology: Topology = Topology.LINEAR, **figures: float | Span) -> Part:
     """The component as a recognised one-channel regulator; its pins are told apart by their names."""
     roles = {"VIN": Role.INPUT, "VOUT": Role.OUTPUT, "GND": Role.GROUND, "FB": Role.FEEDBACK}
     pins: dict[Role, tuple[Pin, ...]] = {}
