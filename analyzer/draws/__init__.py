@@ -92,7 +92,7 @@ def _computed(board: Board, network: Resistances) -> tuple[list[Draw], list[Gap]
     _, filtering = passage_edges(board, network)
     resistors, resistor_gaps = resistor_draws(board, network, in_strings | filtering)
     unclear = [
-        gap(component, rail, f"resistance '{component.value}' is not understood")
+        gap(component, rail, f"resistance '{component.value}' or its pins are not understood")
         for component in network.not_understood
         for rail in board.rails_at(component)
     ]
@@ -116,7 +116,7 @@ def _silent_rails(
 ) -> list[Gap]:
     """Gaps of rails that would otherwise pass for unloaded: what may draw there, else the feed itself."""
     used = {draw.rail for draw in draws if draw.kind != "computed"} | {one.rail for one in gaps}
-    used |= {edge.above for edge in edges}
+    used |= {edge.above for edge in edges} | _own_supplies(board)
     sums: dict[str, float] = {}
     for draw in draws:
         sums[draw.rail] = sums.get(draw.rail, 0.0) + draw.amps.span.nominal
@@ -132,6 +132,16 @@ def _silent_rails(
             fed_by = [component for components in feeds for component in components][:1]
             found += [gap(one, rail.name, "nothing that draws from this rail was found") for one in fed_by]
     return found
+
+
+def _own_supplies(board: Board) -> set[str]:
+    """Rails that feed a regulator's own circuit: what that takes is in its quiescent current."""
+    return {
+        rail.name
+        for part in board.parts
+        for pin in part.component.pins
+        if part.component.fitted and pin.kind == "power_in" and (rail := board.live_rail(pin.net))
+    }
 
 
 def _unfed(board: Board) -> list[Finding]:

@@ -2,10 +2,11 @@
 
 Sure consumers, one for each (part, rail): a pin of type "power input" that is neither ground nor a regulator's input;
 a supply-named pin of another type on a chip that has no such pin; relays, motors, sounders and the like; a connector
-that carries nothing but power, or that supplies by its very kind. They are gaps until a current is known.
+that carries nothing but power, that has several pins on a rail (single ones are there for reference, several for
+current), or that supplies by its very kind. They are gaps until a current is known.
 
-Possible ones: connectors with signals beside a rail, transistors, chips whose rail pins have other names. Their own
-list: each is named, none holds up a verdict, unless a rail has nothing else that could draw from it.
+Possible ones: connectors with one pin on a rail beside signals, transistors, chips whose rail pins have other names.
+Their own list: each is named, none holds up a verdict, unless a rail has nothing else that could draw from it.
 """
 
 from __future__ import annotations
@@ -13,11 +14,12 @@ from __future__ import annotations
 from collections.abc import Iterable
 from dataclasses import dataclass, replace
 
-from analyzer.circuit import Component, Pin
+from analyzer.circuit import Component, Pin, plain_name
 from analyzer.draws.board import Board
 from analyzer.draws.kinds import (
     PASSIVE,
     SURE_LOADS,
+    TWO_PINS,
     carries_nothing,
     is_connector,
     is_led,
@@ -26,7 +28,7 @@ from analyzer.draws.kinds import (
     named_supply,
     takes_supply,
 )
-from analyzer.rails.kinds import letters
+from analyzer.rails.kinds import Kind, letters
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,6 +76,8 @@ def _of(board: Board, component: Component) -> list[Consumer]:
     kind = board.kind(component)
     if is_connector(component, kind):
         return _connector(board, component)
+    if kind in TWO_PINS and len(component.pins) <= 2:
+        return []  # even where a symbol gives a fuse or bead power pins
     powered = [pin for pin in component.pins if pin.kind == "power_in"]
     if found := _by_rail(board, component, (pin for pin in powered if takes_supply(pin))):
         # references and the like are on a rail of their own at times: then they may be all that draws there
@@ -102,19 +106,27 @@ def _on_rails(board: Board, component: Component, *, is_sure: bool) -> list[Cons
     at: dict[str, list[Pin]] = {}
     for pin in component.pins:
         rail = board.live_rail(pin.net)
-        if rail and pin.kind not in ("no_connect", "power_out"):
+        if rail and pin.kind not in ("no_connect", "power_out") and not _is_gate(board, component, pin):
             at.setdefault(rail.name, []).append(pin)
     if len(at) == 1 and is_sure and len({pin.net for pin in component.pins}) == 1:
         return []  # both ends on one net: no current
     return [Consumer(component, rail, tuple(pins), is_sure=is_sure) for rail, pins in at.items()]
 
 
+def _is_gate(board: Board, component: Component, pin: Pin) -> bool:
+    return board.kind(component) is Kind.TRANSISTOR and plain_name(pin.name).upper() in ("G", "GATE", "B", "BASE")
+
+
 def _connector(board: Board, component: Component) -> list[Consumer]:
     wired = [pin for pin in component.pins if pin.kind != "no_connect" and _is_wired(board, pin)]
     only_power = all(board.rail(pin.net) for pin in wired) and len({board.rails.of_net[p.net] for p in wired}) > 1
-    found = _on_rails(board, component, is_sure=only_power or is_outlet(component))
+    is_sure = only_power or is_outlet(component)
     # on a rail that nothing on the board makes, a connector is the source rather than a load
-    return [consumer for consumer in found if consumer.rail in board.made_here]
+    return [
+        replace(consumer, is_sure=is_sure or len(consumer.pins) > 1)
+        for consumer in _on_rails(board, component, is_sure=False)
+        if consumer.rail in board.made_here
+    ]
 
 
 def _is_wired(board: Board, pin: Pin) -> bool:

@@ -32,6 +32,8 @@ IN_SERIES = PASSIVE - {Kind.TRIMMER, Kind.CAPACITOR, Kind.TEST_POINT, Kind.BATTE
 """Two-terminal parts that may lie between a rail and a supply pin."""
 JOINING = frozenset({Kind.INDUCTOR, Kind.BEAD, Kind.CHOKE, Kind.FUSE, Kind.NET_TIE, Kind.JUMPER})
 """Parts that drive nothing of their own."""
+TWO_PINS = JOINING | {Kind.RESISTOR, Kind.CAPACITOR, Kind.THERMISTOR}
+"""Parts that with two pins are never consumers, whatever the type of their pins."""
 _NOTHING = frozenset("H MH FID LOGO SYM TM MP ANT AE".split())
 _CRYSTALS = frozenset({"Y", "XTAL", "X"})
 SURE_LOADS = frozenset({"K", "RL", "RLY", "RE", "M", "MOT", "FAN", "BZ", "LS", "SP", "SPK", "HT", "LA"})

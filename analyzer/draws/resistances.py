@@ -98,7 +98,9 @@ def find_resistances(board: Board, settings: Settings) -> Resistances:
             continue
         pairs = _ends_of_trimmer(component) if kind is Kind.TRIMMER else resistor_pairs(component)
         value = component_value(component.value)
-        usable = value is not None and value.dimension in (None, Dimension.RESISTANCE) and not value.is_unfitted
+        if value is not None and value.is_unfitted:
+            continue
+        usable = value is not None and value.dimension in (None, Dimension.RESISTANCE)
         ends = [(node[one], node[other]) for one, other in pairs if node[one] != node[other]]
         if value is None or not usable or value.magnitude is None or (not pairs and len(component.pins) > 1):
             unknown += [component] if ends or not pairs else []

@@ -215,6 +215,19 @@ class TestUnknownNeverBecomesZero:
         assert [gap.ref for gap in found.by_rail["+3V3"].gaps] == ["J1"]
         assert found.by_rail["+3V3"].known.nominal == pytest.approx(3.3 / 20e3)
 
+    def test_a_rail_for_a_regulator_s_own_circuit_is_no_gap(self):
+        u1 = part(
+            "U1",
+            [("1", "VIN", "power_in", "+5V"), ("2", "VOUT", "power_out", "+3V3"), ("3", "VDD", "power_in", "VCC1")],
+        )
+        wiring = wire(u1, "+5V", "+3V3")
+        known = rails({"+5V": 5, "+3V3": 3.3, "VCC1": 5})
+        feeds = {"VCC1": (Feed("R1", "passage", "", "+5V"),), "+3V3": (Feed("U1", "regulator", "", "+5V"),)}
+        fed = tuple(Rail(r.name, r.nets, r.volts, feeds.get(r.name, r.feeds), (), r.is_ground) for r in known.rails)
+        board = circuit(u1, part("R1", ["+5V", "VCC1"], "10"), chip("U2", "+3V3", fields={"I_load": "1 mA"}))
+        found = loads(board, Rails(fed, (wiring,), of_net=known.of_net))
+        assert found.by_rail["+5V"].total == Span.exact(0.001)
+
     def test_zero_may_be_stated(self):
         board, known = one_regulator()
         found = loads(board, known, Settings(draws=(stated("", 0.0, "+3V3"),)))
@@ -223,7 +236,7 @@ class TestUnknownNeverBecomesZero:
     def test_a_resistor_whose_value_is_not_understood(self):
         board, known = one_regulator(chip("U2", "+3V3", fields={"I_load": "1 mA"}), part("R1", ["+3V3", "GND"], "TBD"))
         assert [(gap.ref, gap.why) for gap in loads(board, known).by_rail["+3V3"].gaps] == [
-            ("R1", "resistance 'TBD' is not understood")
+            ("R1", "resistance 'TBD' or its pins are not understood")
         ]
 
     def test_a_resistor_on_a_rail_of_unknown_voltage(self):
@@ -364,8 +377,23 @@ class TestWhoIsAConsumer:
         assert found.findings[0].message == "J1 on +3V3: counted as taking none"
         assert found.by_rail["+3V3"].total == Span.exact(0.001)
 
+    def test_transistor_whose_gate_alone_is_on_the_rail_takes_nothing(self):
+        pins = [("1", "G", "input", "+3V3"), ("2", "S", "passive", "A"), ("3", "D", "passive", "B")]
+        assert self.kind(part("Q1", pins), chip("U2", "+3V3")) == (["U2"], [])
+        pins = [("1", "G", "input", "A"), ("2", "S", "passive", "+3V3"), ("3", "D", "passive", "B")]
+        assert self.kind(part("Q1", pins), chip("U2", "+3V3")) == (["U2"], ["Q1"])
+
     def test_connector_with_nothing_but_power_is_sure(self):
         assert self.kind(part("J1", ["+3V3", "GND"], lib="Connector:Conn_01x02"), chip("U2", "+3V3"))[0] == ["J1", "U2"]
+
+    def test_connector_with_several_pins_on_a_rail_is_sure(self):
+        pins = ["+3V3", "+3V3", "SIG", "GND"]
+        sig = part("U3", [("1", "IO", "bidirectional", "SIG"), ("2", "VDD", "power_in", "+3V3")], lib="x:y")
+        assert self.kind(part("J1", pins, lib="Connector:Conn_02x02"), sig)[0] == ["J1", "U3"]
+
+    def test_fuse_with_power_pins_is_no_consumer(self):
+        f1 = part("F1", [("1", "", "power_in", "+3V3"), ("2", "", "power_out", "OUT")], "1A", "x:FUSE")
+        assert self.kind(f1, chip("U2", "+3V3")) == (["U2"], [])
 
     def test_usb_a_socket_supplies_what_is_plugged_in(self):
         j1 = part("J1", ["+3V3", "D+", "D-", "GND"], lib="Connector:USB_A")
@@ -605,6 +633,26 @@ class TestNotes:
         assert loads(noted, known).by_rail["+3V3"].known == Span.exact(0.0)
 
 
+def test_an_unrelated_part_changes_nothing():
+    board, known = one_regulator(chip("U2", "+3V3", fields={"I_load": "10 mA"}), part("R1", ["+3V3", "SIG"], "1k"))
+    more = circuit(*board.components, part("R9", ["A", "B"], "1k"), part("U9", [("1", "X", "input", "A")], lib="x:y"))
+    assert loads(board, known) == loads(more, known)
+
+
+def test_names_of_nets_do_not_matter():
+    def made(rail):
+        u1 = vreg("U1", "+5V", rail)
+        more = [
+            chip("U2", rail, fields={"I_load": "10 mA"}),
+            part("R1", [rail, "T"], "1k"),
+            part("R2", ["T", "GND"], "1k"),
+        ]
+        found = loads(circuit(u1, *more), rails({"+5V": 5, rail: 3.3}, [wire(u1, "+5V", rail)]))
+        return found.by_rail["+5V"].total, found.by_rail[rail].total
+
+    assert made("+3V3") == made("/psu/AUX") == made("Net-(U1-VOUT)")
+
+
 def test_order_of_parts_does_not_matter():
     board, known = one_regulator(
         chip("U2", "+3V3", fields={"I_load": "10 mA"}),
@@ -677,6 +725,14 @@ class TestDiscretePassages:
 
 
 class TestArraysAndThermistors:
+    def test_resistor_whose_value_says_not_fitted(self):
+        board, known = one_regulator(
+            chip("U2", "+3V3", fields={"I_load": "1 mA"}),
+            part("R1", ["+3V3", "GND"], "DNP"),
+            part("R2", ["+3V3", "GND"], "NA(1k)"),
+        )
+        assert loads(board, known).by_rail["+3V3"].total == Span.exact(0.001)
+
     def test_resistor_array_pairs(self):
         board, known = one_regulator(
             chip("U2", "+3V3", fields={"I_load": "1 mA"}),
