@@ -15,7 +15,7 @@ from analyzer.evidence import Evidence, Grade
 from analyzer.part import Channel
 from analyzer.quantity import Dimension, Span
 from analyzer.recognise import words
-from analyzer.recognise.by_rule import DEFAULT_TOLERANCE
+from analyzer.recognise.by_rule import DEFAULT_TOLERANCE, letters_of
 from analyzer.recognise.roles import by_role, channel_number
 from analyzer.rule import PASSAGES, Role, Topology
 
@@ -23,9 +23,15 @@ MOST_NAMES = 12
 """A linear regulator has at most so many different pin names; more make a mixed-signal part."""
 
 LETTERS = frozenset({"U", "IC", "VR", "PS", "REG", "A", "N", "M", "MOD", "PWR", "T", "TR", "Q", "D", "CR"})
-_SHUNT_LETTERS = frozenset({"U", "IC", "VR", "REF", "D", "CR", "Z"})
+_SHUNT_PINS = {
+    Role.OUTPUT: ("K", "C", "CATHODE", "CATH"),
+    Role.GROUND: ("A", "ANODE"),
+    Role.FEEDBACK: ("REF", "R", "ADJ", "FB"),
+}
 _LINEAR_INPUTS = frozenset("IN VI VIN INPUT VINA VINP +VIN VIN+ I V+ VCC VSUP PVIN".split())
 _PLAIN_NAMES = frozenset("VIN VI VIN+ +VIN".split())
+
+_MODULE = re.compile(r"(?<![A-Z])(MODULE|CONV|CONVERTER|DCDC|DC-DC)(?![A-Z])")
 
 _DECIMAL = re.compile(r"(?<![\d.])(\d{1,2}\.\d{1,3})(?![\d.])")
 _LETTER = re.compile(r"(?<![\dA-Z])(\d{1,2})V(\d{1,2})(?!\d)")
@@ -33,18 +39,24 @@ _LETTER = re.compile(r"(?<![\dA-Z])(\d{1,2})V(\d{1,2})(?!\d)")
 
 def channels_of(component: Component, circuit: Circuit | None) -> tuple[tuple[Channel, ...], str]:
     """Channels of a part that looks like a regulator or passage, and why; none if it does not."""
-    letter = re.match(r"[A-Za-z]*", component.ref)
-    if letter is None or letter[0].upper() not in LETTERS:
+    letters = letters_of(component)
+    if letters not in LETTERS:
         return (), ""
     text = f"{component.description} {component.keywords}"
     roles = by_role(component.pins)
     passage = words.passage_of(component.description) or words.passage_of(component.keywords)
     if passage is not None and Role.INPUT in roles and Role.OUTPUT in roles:
+        if passage is Topology.LOAD_SWITCH and len({channel_number(pin) for pin in roles[Role.INPUT]} - {""}) > 1:
+            # several numbered inputs and one switch: it selects among them
+            passage = Topology.POWER_MUX
         return (Channel("", passage, 1, roles),), f"its description says {passage.value}"
     if words.CHARGER.search(text) and Role.INPUT in roles and (battery := _battery(component.pins)):
         pins = {**roles, Role.OUTPUT: battery}
         return (Channel("", Topology.CHARGER, 1, pins),), "its description says charger"
-    if letter[0].upper() in ("Q", "D", "CR"):
+    if words.SHUNT.search(text) and (shunt := _shunt(component.pins)):
+        volts = _named_volts(component, 1)
+        return (Channel("", Topology.SHUNT, 1, shunt, volts),), "its description says shunt, with anode and cathode"
+    if letters in ("Q", "D", "CR"):
         return (), ""
     if words.NOT_A_REGULATOR.search(component.description):
         return (), ""
@@ -53,6 +65,14 @@ def channels_of(component: Component, circuit: Circuit | None) -> tuple[tuple[Ch
 
 def _battery(pins: tuple[Pin, ...]) -> tuple[Pin, ...]:
     return tuple(pin for pin in pins if plain_name(pin.name).upper() in ("VBAT", "BAT", "BATT", "BAT+", "VBATT"))
+
+
+def _shunt(pins: tuple[Pin, ...]) -> dict[Role, tuple[Pin, ...]]:
+    """Roles of a shunt element: its cathode is the output, its anode the ground; {} if it has not both."""
+    found: dict[Role, tuple[Pin, ...]] = {}
+    for role, names in _SHUNT_PINS.items():
+        found[role] = tuple(pin for pin in pins if plain_name(pin.name).upper() in names)
+    return {role: members for role, members in found.items() if members} if found[Role.OUTPUT] else {}
 
 
 def _regulator(
@@ -75,6 +95,8 @@ def _regulator(
         return _split(component, kind or Topology.BUCK, pins, text), "pins: switching output, feedback and input"
     if _looks_linear(component, roles) and not roles.get(Role.SWITCH):
         topology = kind if kind in (Topology.CHARGE_PUMP, Topology.MODULE) else Topology.LINEAR
+        if _MODULE.search(component.footprint.upper()):
+            topology = Topology.MODULE
         if kind in (Topology.BUCK, Topology.BOOST, Topology.BUCK_BOOST, Topology.INVERTING):
             topology = Topology.MODULE
         if topology is Topology.LINEAR and not roles.get(Role.GROUND):
@@ -93,7 +115,9 @@ def _looks_linear(component: Component, roles: Mapping[Role, tuple[Pin, ...]]) -
     outputs = roles.get(Role.OUTPUT, ())
     if not inputs or not outputs:
         return False
-    typed = any(pin.kind == "power_in" for pin in inputs) and any(pin.kind == "power_out" for pin in outputs)
+    powers = any(pin.kind == "power_out" for pin in outputs)
+    # an adjust pin beside a typed output says enough, whatever the type of the input
+    typed = powers and (any(pin.kind == "power_in" for pin in inputs) or bool(roles.get(Role.FEEDBACK)))
     # home-made symbols are badly typed; names that say "voltage in" and "voltage out" speak for themselves
     named = any(plain_name(pin.name).upper() in _PLAIN_NAMES for pin in inputs) and any(
         plain_name(pin.name).upper() in ("VOUT", "VO", "VOUT+", "+VOUT") and pin.kind != "input" for pin in outputs

@@ -103,11 +103,15 @@ def _gated(component: Component, hits: list[RuleHit]) -> list[RuleHit]:
     return [one for one in hits if fits(component, one.rule)]
 
 
+def letters_of(component: Component) -> str:
+    """The letters that a reference begins with, upper case."""
+    found = re.match(r"[A-Za-z]*", component.ref)
+    return found[0].upper() if found else ""
+
+
 def fits(component: Component, rule: Rule) -> bool:
     """Whether reference letter and pins fit the rule, so that a transistor named like a regulator is none."""
-    letters = re.match(r"[A-Za-z]*", component.ref)
-    letter = letters[0].upper() if letters else ""
-    if letter not in rule.letters:
+    if letters_of(component) not in rule.letters:
         return False
     return all(_has_roles(component, channel) for channel in rule.channels)
 

@@ -11,7 +11,7 @@ from analyzer.findings import recognition as kinds
 from analyzer.findings.base import Finding
 from analyzer.part import Channel, Part
 from analyzer.recognise import by_pins, by_rule, words
-from analyzer.recognise.by_rule import Choice, Index, RuleHit
+from analyzer.recognise.by_rule import Choice, Index, RuleHit, letters_of
 from analyzer.recognise.identity import Identity
 from analyzer.recognise.package import read_package
 from analyzer.recognise.pattern import Hit, core, match
@@ -24,11 +24,14 @@ NOTHING_STATED = PartStatement()
 def recognise(circuit: Circuit, rulebook: Rulebook, settings: Settings) -> tuple[tuple[Part, ...], tuple[Finding, ...]]:
     """Every regulator and passage of a circuit, fitted or not, in the circuit's order, and what there is to report."""
     index = Index(rulebook)
+    letters = by_pins.LETTERS.union(*(rule.letters for rule in rulebook.rules))
     parts: list[Part] = []
     findings: list[Finding] = []
     for component in circuit.components:
         stated = settings.parts.get(component.ref, NOTHING_STATED)
         if stated.is_regulator is False or len(component.pins) < 2:
+            continue
+        if stated is NOTHING_STATED and letters_of(component) not in letters:
             continue
         part, found = _recognise(component, circuit, index, stated)
         findings += found
