@@ -47,7 +47,7 @@ class Loss:
         iin: Current from the input rail [A].
         elsewhere: (who, watts) of losses of this channel outside the part.
         terms: (name, watts) that add up to `watts`.
-        formula: The formula with its numbers put in.
+        formula: Gives the formula with its numbers put in; a function, for text costs more than the numbers.
         regulating: False where the input is too low for the output (dropout, or a buck below its output).
     """
 
@@ -55,7 +55,7 @@ class Loss:
     iin: float
     elsewhere: tuple[tuple[str, float], ...] = ()
     terms: tuple[tuple[str, float], ...] = ()
-    formula: str = ""
+    formula: Callable[[], str] = str
     regulating: bool = True
 
 

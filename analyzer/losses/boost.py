@@ -105,5 +105,8 @@ def _at_current(wiring: Wiring, figures: Figures, point: Point, end: End, iin: f
         elsewhere.append(("inductor", terms.conduction(iin, figures.high("inductor_resistance", end))))
     watts = sum(value for _, value in inside)
     power = point.vout * point.iout + watts + sum(value for _, value in elsewhere)
-    formula = " + ".join(f"{name} {show(value, 'W')}" for name, value in inside)
-    return Loss(watts, power / point.vin, tuple(elsewhere), tuple(inside), f"{formula} at D {duty:.3f}")
+
+    def formula() -> str:
+        return " + ".join(f"{name} {show(value, 'W')}" for name, value in inside) + f" at D {duty:.3f}"
+
+    return Loss(watts, power / point.vin, tuple(elsewhere), tuple(inside), formula)

@@ -88,7 +88,7 @@ def _below(point: Point, found: float) -> Loss:
     power = point.vout * point.iout
     total = efficiency.total_loss(power, found)
     iin = power / found / point.vin if point.vin > 0 else 0.0
-    return Loss(total, iin, formula=f"{show(power, 'W')} · (1/{found:.3f} − 1)", regulating=False)
+    return Loss(total, iin, formula=lambda: f"{show(power, 'W')} · (1/{found:.3f} − 1)", regulating=False)
 
 
 def _load_knots(wiring: Wiring) -> tuple[float, ...]:
@@ -161,7 +161,7 @@ def _terms_at(wiring: Wiring, figures: Figures, point: Point, end: End, inverts:
         power / supply if supply > 0 else 0.0,
         tuple(elsewhere),
         tuple(inside),
-        " + ".join(f"{name} {show(value, 'W')}" for name, value in inside) + f" at D {duty:.3f}",
+        lambda: " + ".join(f"{name} {show(value, 'W')}" for name, value in inside) + f" at D {duty:.3f}",
         regulating=supply > 0 and (inverts or vin > point.vout),
     )
 

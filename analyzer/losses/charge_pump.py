@@ -42,8 +42,10 @@ def build(wiring: Wiring) -> LossModel:
             pump_heat(point.vin, vout, point.iout, gain, own),
             gain * point.iout + own,
             terms=(("transfer", (gain * point.vin - vout) * point.iout), ("own current", point.vin * own)),
-            formula=f"({gain:g} · {volts(point.vin)} − {volts(vout)}) · {amps(point.iout)}"
-            f" + {volts(point.vin)} · {amps(own)}",
+            formula=lambda: (
+                f"({gain:g} · {volts(point.vin)} − {volts(vout)}) · {amps(point.iout)}"
+                f" + {volts(point.vin)} · {amps(own)}"
+            ),
             regulating=gain * point.vin >= point.vout,
         )
 

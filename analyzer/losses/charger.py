@@ -36,7 +36,9 @@ def build(wiring: Wiring) -> LossModel:
             charger_heat(point.vin, battery, point.iout, own),
             point.iout + own,
             terms=(("charging", (point.vin - battery) * point.iout), ("quiescent", point.vin * own)),
-            formula=f"({volts(point.vin)} − {volts(battery)}) · {amps(point.iout)} + {volts(point.vin)} · {amps(own)}",
+            formula=lambda: (
+                f"({volts(point.vin)} − {volts(battery)}) · {amps(point.iout)} + {volts(point.vin)} · {amps(own)}"
+            ),
         )
 
     used = (current, *figures.used("battery_low", "quiescent"))

@@ -68,7 +68,7 @@ def build_controller(wiring: Wiring) -> LossModel:
             (power + max(total, own)) / point.vin,
             ((", ".join(names) + " and the other parts outside", rest),),
             (("control and gate drive", own),),
-            f"{show(point.vin, 'V')} · {show(own / point.vin, 'A')} (another {show(rest, 'W')} outside)",
+            lambda: f"{show(point.vin, 'V')} · {show(own / point.vin, 'A')} (another {show(rest, 'W')} outside)",
         )
 
     used = (*efficiency.evidence(wiring.channel), *figures.used("quiescent", "gate_charge", "switching_frequency"))

@@ -154,11 +154,15 @@ def loss_from_efficiency(point: Point, efficiency: float, supply: float, outside
     power = point.vout * point.iout
     total = total_loss(power, efficiency)
     inside = max(0.0, total - outside_parts.watts)
-    taken = "".join(f" − {show(watts, 'W')} in {who}" for who, watts in outside_parts.items)
+
+    def formula() -> str:
+        taken = "".join(f" − {show(watts, 'W')} in {who}" for who, watts in outside_parts.items)
+        return f"{show(power, 'W')} · (1/{efficiency:.3f} − 1){taken}"
+
     return Loss(
         inside,
         power / efficiency / supply,
         outside_parts.items,
         (("converter loss", total), *((f"less {who}", -watts) for who, watts in outside_parts.items)),
-        f"{show(power, 'W')} · (1/{efficiency:.3f} − 1){taken}",
+        formula,
     )

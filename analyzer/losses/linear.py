@@ -58,7 +58,9 @@ def build(wiring: Wiring) -> LossModel:
             pass_heat(point.vin, vout, point.iout, ground),
             point.iout + ground,
             terms=(("pass element", through), ("ground current", own)),
-            formula=f"({volts(point.vin)} − {volts(vout)}) · {amps(point.iout)} + {volts(point.vin)} · {amps(ground)}",
+            formula=lambda: (
+                f"({volts(point.vin)} − {volts(vout)}) · {amps(point.iout)} + {volts(point.vin)} · {amps(ground)}"
+            ),
             regulating=regulating,
         )
 
@@ -84,7 +86,9 @@ def build_floating(wiring: Wiring) -> LossModel:
             watts,
             point.iout + adjust,
             terms=(("pass element", (point.vin - vout) * point.iout), ("adjust current", point.vin * adjust)),
-            formula=f"({volts(point.vin)} − {volts(vout)}) · {amps(point.iout)} + {volts(point.vin)} · {amps(adjust)}",
+            formula=lambda: (
+                f"({volts(point.vin)} − {volts(vout)}) · {amps(point.iout)} + {volts(point.vin)} · {amps(adjust)}"
+            ),
             regulating=regulating,
         )
 
@@ -128,8 +132,10 @@ def build_two_supply(wiring: Wiring) -> LossModel:
             two_supply_heat(point.vin, vcontrol, vout, point.iout, icontrol),
             point.iout,
             terms=(("pass element", (point.vin - vout) * point.iout), ("control", (vcontrol - vout) * icontrol)),
-            formula=f"({volts(point.vin)} − {volts(vout)}) · {amps(point.iout)}"
-            f" + ({volts(vcontrol)} − {volts(vout)}) · {amps(icontrol)}",
+            formula=lambda: (
+                f"({volts(point.vin)} − {volts(vout)}) · {amps(point.iout)}"
+                f" + ({volts(vcontrol)} − {volts(vout)}) · {amps(icontrol)}"
+            ),
             regulating=regulating,
         )
 

@@ -37,7 +37,9 @@ def build_switch(wiring: Wiring) -> LossModel:
             passed + point.vin * own,
             point.iout + own,
             terms=(("on-resistance", passed), ("quiescent", point.vin * own)),
-            formula=f"({amps(point.iout)})² · {show(resistance, 'Ω')}{shared} + {volts(point.vin)} · {amps(own)}",
+            formula=lambda: (
+                f"({amps(point.iout)})² · {show(resistance, 'Ω')}{shared} + {volts(point.vin)} · {amps(own)}"
+            ),
         )
 
     used = figures.used("on_resistance", "resistance_tempco", "pass_channels", "quiescent")
@@ -59,7 +61,7 @@ def build_diode(wiring: Wiring) -> LossModel:
             drop * point.iout,
             point.iout,
             terms=(("forward drop", drop * point.iout),),
-            formula=f"{volts(drop)} · {amps(point.iout)}",
+            formula=lambda: f"{volts(drop)} · {amps(point.iout)}",
         )
 
     used = figures.used("forward_drop", "forward_drop_tempco")

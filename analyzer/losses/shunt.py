@@ -48,8 +48,10 @@ def build(wiring: Wiring) -> LossModel:
             max(supplied, 0.0),
             ((ref, resistor_heat(point.vin, point.vout, ohms)),),
             (("shunt current", watts),),
-            f"{volts(point.vout)} · (({volts(point.vin)} − {volts(point.vout)}) / {show(ohms, 'Ω')}"
-            f" − {amps(point.iout)})",
+            lambda: (
+                f"{volts(point.vout)} · (({volts(point.vin)} − {volts(point.vout)}) / {show(ohms, 'Ω')}"
+                f" − {amps(point.iout)})"
+            ),
             regulating=supplied >= point.iout + least,
         )
 
