@@ -7,6 +7,7 @@ from functools import partial
 
 from analyzer.circuit import Component
 from analyzer.draws.board import Board
+from analyzer.draws.kinds import takes_supply
 from analyzer.draws.resistances import Resistances, is_rail, rail_node, rail_of
 from analyzer.draws.resistors import gap
 from analyzer.draws.tree import Edge
@@ -127,11 +128,11 @@ def _share(board: Board, wiring: Wiring, below: str | None) -> float:
 def _lost(board: Board, wiring: Wiring) -> list[Gap]:
     """A part whose input rail was not found may hang on any rail that its input pins can be traced to."""
     component: Component = wiring.part.component
-    rails = [
-        rail
-        for pin in wiring.channel.pins.get(Role.INPUT, ())
-        if wiring.input_rail is None
-        for rail, _ in board.supplying(pin)
-    ]
+    if wiring.input_rail is not None:
+        return []
+    # a part whose input pins are not known has supply pins at least
+    pins = wiring.channel.pins.get(Role.INPUT) or [pin for pin in component.pins if takes_supply(pin)]
+    outputs = set(wiring.channel.pins.get(Role.OUTPUT, ()))
+    rails = [rail for pin in pins if pin not in outputs for rail, _ in board.supplying(pin)]
     why = f"load of {component.ref} not known: its input rail was not found"
     return [gap(component, rail, why) for rail in dict.fromkeys(rails)]
