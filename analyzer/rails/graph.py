@@ -52,7 +52,7 @@ def find_rails(circuit: Circuit, parts: tuple[Part, ...], rulebook: Rulebook, se
 
 
 def _edge_key(edge: Edge) -> tuple[object, ...]:
-    return (natural_key(edge.ref), edge.channel, edge.sink, edge.source or "")
+    return (natural_key(edge.ref), edge.channel, natural_key(edge.sink), natural_key(edge.source or ""))
 
 
 def _rail_groups(power: Power, edges: Iterable[Edge]) -> frozenset[str]:

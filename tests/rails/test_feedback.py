@@ -5,9 +5,9 @@ from __future__ import annotations
 import itertools
 
 import pytest
-from bench import circuit, part, recognised, rulebook
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from rails_bench import circuit, part, recognised, rulebook
 
 from analyzer.quantity import Span
 from analyzer.rails import find_rails

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import pytest
-from bench import circuit, part, recognised, rulebook
+from rails_bench import circuit, part, recognised, rulebook
 
 from analyzer.rail import Rails
 from analyzer.rails import find_rails

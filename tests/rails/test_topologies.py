@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import pytest
-from bench import circuit, figure, part, recognised, rulebook
+from rails_bench import circuit, figure, part, recognised, rulebook
 
 from analyzer.circuit import Component
 from analyzer.part import Part
