@@ -92,9 +92,11 @@ class Tree:
             bead = self.ref("FB")
             self.parts.append(Placed("FB", bead, "600R@100MHz", {"1": out, "2": rail}))
             self.spice.append(f"r{bead} {out} {rail} 1e-6")
-        # an ideal amplifier of gain 1e7 is the regulator; the pin current is a source
-        plus = f"e{ref} {out} 0 vol='1e7*({volts}-" + (f"(v({sense})-v({tap})))'" if upper else f"v({tap}))'")
-        self.spice.append(plus)
+        # an ideal amplifier of gain 1e6 is the regulator; a source that carries nothing is its reference
+        if upper:
+            self.spice += [f"vr{ref} X{number} {tap} {volts}", f"e{ref} {out} 0 X{number} {sense} 1e6"]
+        else:
+            self.spice += [f"vr{ref} X{number} 0 {volts}", f"e{ref} {out} 0 X{number} {tap} 1e6"]
         self.spice.append(f"i{ref} {'0 ' + tap if upper else tap + ' 0'} {amps}")
         self.spice.append(f"rl{ref} {rail} 0 {self.value(1e4)}")
         self.rails.append(rail)
@@ -103,7 +105,7 @@ class Tree:
     def operating_point(self, folder: Path) -> dict[str, float]:
         """Node voltages by ngspice."""
         nodes = " ".join(f"v({rail})" for rail in self.outputs)
-        lines = [line.replace(" GND ", " 0 ").replace("v(GND)", "0") for line in self.spice]
+        lines = [line.replace(" GND ", " 0 ") for line in self.spice]
         file = folder / "tree.cir"
         file.write_text(
             "\n".join(["tree", *lines, ".options reltol=1e-7", ".control", "op", f"print {nodes}", ".endc", ".end"]),
