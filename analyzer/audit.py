@@ -75,15 +75,17 @@ def close(circuit: Circuit, rulebook: Rulebook, settings: Settings, chance_seed:
     """The pure part of the job: from the circuit as read to the closed ledger."""
     from analyzer.draws import find_loads
     from analyzer.heat import close_entries
+    from analyzer.heat.ratings import site_findings
     from analyzer.rails import find_rails
     from analyzer.recognise import recognise
 
     parts, recognition = recognise(circuit, rulebook, settings)
     rails = find_rails(circuit, parts, rulebook, settings)
     loads = find_loads(circuit, parts, rails, settings, rulebook)
-    entries = close_entries(circuit, parts, rails, loads, rulebook, settings, chance_seed=chance_seed)
+    known = (*recognition, *rails.findings, *loads.findings)
+    entries = close_entries(circuit, parts, rails, loads, rulebook, settings, known=known, chance_seed=chance_seed)
     of_entries = (finding for entry in entries for finding in entry.findings)
-    found = (*circuit.findings, *recognition, *rails.findings, *loads.findings, *of_entries)
+    found = (*circuit.findings, *known, *site_findings(settings), *of_entries)
     findings = dict.fromkeys(found)
     ledger = Ledger(
         board=circuit.board,

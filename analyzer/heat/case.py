@@ -1,0 +1,204 @@
+"""One part's case: what is known of its operating points and surroundings, and the corners worked through.
+
+Every combination of ends that can be worst is evaluated, the points inside that a topology names as well, and the
+junction is iterated where the losses depend on it. Channels of one package are taken each at its own worst corner.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, replace
+
+from analyzer.heat.path import ThermalPath
+from analyzer.ledger import ChannelPoint, Corner
+from analyzer.losses.base import End, Loss, LossModel, Point
+from analyzer.losses.hot import HOPELESS_CELSIUS
+from analyzer.quantity import Span
+from analyzer.rail import Wiring
+
+_Choose = Callable[[float], tuple["Chosen", ...]]
+"""What a corner takes at a junction temperature [°C]."""
+
+_PASSES = 200
+_AGREEMENT = 1e-9
+
+
+@dataclass(frozen=True, slots=True)
+class ChannelCase:
+    """One channel: its loss model, and the spans of input, output (magnitudes) and load."""
+
+    wiring: Wiring
+    model: LossModel
+    vin: Span
+    vout: Span
+    load: Span
+
+    @property
+    def name(self) -> str:
+        """Name of the channel."""
+        return self.wiring.channel.name
+
+
+@dataclass(frozen=True, slots=True)
+class Case:
+    """One part with its surroundings.
+
+    Attributes:
+        channels: Channels that supply something.
+        path: Thermal path; None if there is none, then only losses can be worked out.
+        ambient: Air around the part: ambient, enclosure rise and neighbours [°C].
+        thin_air: Altitude multiplier, nominal and severe.
+        limit: Junction limit [°C], None if unknown.
+        tight_above: [°C], None if unknown.
+    """
+
+    channels: tuple[ChannelCase, ...]
+    path: ThermalPath | None
+    ambient: Span
+    thin_air: tuple[float, float]
+    limit: float | None = None
+    tight_above: float | None = None
+
+    def with_load(self, amps: float) -> Case:
+        """The case with exactly this load on its first channel."""
+        first, *rest = self.channels
+        return replace(self, channels=(replace(first, load=Span.exact(amps)), *rest))
+
+    def with_ambient(self, ambient: Span) -> Case:
+        """The case in other air."""
+        return replace(self, ambient=ambient)
+
+
+@dataclass(frozen=True, slots=True)
+class Chosen:
+    """The point of a channel that a corner takes, its losses, and which ends it took."""
+
+    case: ChannelCase
+    point: Point
+    loss: Loss
+    ends: str
+
+
+@dataclass(frozen=True, slots=True)
+class Worked:
+    """A corner worked through; `runs_away` if the junction has no rest."""
+
+    chosen: tuple[Chosen, ...]
+    watts: float
+    ambient: float
+    theta: float | None
+    junction: float | None
+    runs_away: bool = False
+
+    @property
+    def regulates(self) -> bool:
+        """Whether every channel keeps its output at this corner."""
+        return all(one.loss.regulating for one in self.chosen)
+
+
+def worst(case: Case) -> Worked:
+    """The hottest corner.
+
+    Raises:
+        ValueError: If a figure's table does not cover a point.
+    """
+    return _settled(case, lambda junction: tuple(_hottest(one, junction) for one in case.channels), severe=True)
+
+
+def nominal(case: Case) -> Worked:
+    """The nominal corner."""
+
+    def choose(junction: float) -> tuple[Chosen, ...]:
+        found = []
+        for one in case.channels:
+            point = Point(one.vin.nominal, one.vout.nominal, one.load.nominal, junction)
+            found.append(Chosen(one, point, one.model.at(point, End.NOMINAL), "nominal"))
+        return tuple(found)
+
+    return _settled(case, choose, severe=False)
+
+
+def _settled(case: Case, choose: _Choose, *, severe: bool) -> Worked:
+    """Iterate the junction to its rest, from the ambient up."""
+    ambient = case.ambient.high if severe else case.ambient.nominal
+    thin_air = case.thin_air[1] if severe else case.thin_air[0]
+    if case.path is None:
+        chosen = choose(ambient)
+        return Worked(chosen, sum(one.loss.watts for one in chosen), ambient, None, None)
+    if case.path.measured is not None:
+        # the measured spot takes the place of the air
+        span = case.path.measured.span
+        ambient = span.high if severe else span.nominal
+    junction = ambient
+    heats = any(one.model.heats for one in case.channels)
+    for _ in range(_PASSES):
+        chosen = choose(junction)
+        watts = sum(one.loss.watts for one in chosen)
+        theta = case.path.theta(thin_air, watts, severe=severe)
+        found = ambient + theta * watts
+        if not heats or abs(found - junction) <= _AGREEMENT * max(1.0, abs(found)):
+            return Worked(chosen, watts, ambient, theta, found)
+        if found > HOPELESS_CELSIUS:
+            break
+        junction = found
+    return Worked(chosen, watts, ambient, theta, found, runs_away=True)
+
+
+def _hottest(one: ChannelCase, junction: float) -> Chosen:
+    best: tuple[Point, Loss] | None = None
+    for point in _candidates(one, junction):
+        loss = one.model.at(point, End.SEVERE)
+        if best is None or loss.watts > best[1].watts:
+            best = point, loss
+    if best is None:
+        raise ValueError("no operating point")
+    return Chosen(one, *best, _ends(one, best[0]))
+
+
+def _candidates(one: ChannelCase, junction: float) -> Iterator[Point]:
+    vin, vout, load = one.vin, one.vout, one.load
+    vins = {vin.low, vin.high}
+    vouts = {vout.low, vout.high}
+    loads = {load.low, load.high, *(x for x in one.model.loads if load.low < x < load.high)}
+    if not vin.is_exact:
+        vins |= set(one.model.interior(vin.low, vin.high, vout.nominal, load.high))
+        vins |= {edge for edge in vouts if vin.low < edge < vin.high}
+    for a in sorted(vins):
+        for b in sorted(vouts):
+            for c in sorted(loads):
+                yield Point(a, b, c, junction)
+
+
+def _ends(one: ChannelCase, point: Point) -> str:
+    words = []
+    for name, span, value in (
+        ("input", one.vin, point.vin),
+        ("output", one.vout, point.vout),
+        ("load", one.load, point.iout),
+    ):
+        if not span.is_exact:
+            end = "high" if value == span.high else "low" if value == span.low else "inside"
+            words.append(f"{name} {end}")
+    return ", ".join(words)
+
+
+def corner(worked: Worked, name: str, case: Case) -> Corner:
+    """A worked corner as the ledger has it."""
+    points = tuple(
+        ChannelPoint(
+            one.case.name,
+            one.point.vin,
+            one.point.vout,
+            one.point.iout,
+            one.loss.iin,
+            one.loss.watts,
+            one.loss.elsewhere,
+            one.loss.formula(),
+        )
+        for one in worked.chosen
+    )
+    if name != "nominal":
+        ends = [one.ends for one in worked.chosen if one.ends]
+        air = [] if case.ambient.is_exact else ["ambient high"]
+        name = ", ".join(dict.fromkeys([*ends, *air])) or "no span: one corner"
+    return Corner(name, points, worked.watts, worked.ambient, worked.theta, worked.junction)

@@ -1,0 +1,57 @@
+"""Junction limits: the data sheet's and the margin policy's, kept apart. Thermal shutdown is never one."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from analyzer.evidence import Evidence
+from analyzer.findings import heat as kinds
+from analyzer.findings.base import Finding
+from analyzer.part import Part
+from analyzer.settings import PartStatement, Policy
+from analyzer.wording import show
+
+
+@dataclass(frozen=True, slots=True)
+class Limits:
+    """Limits of one part's junction [°C].
+
+    Attributes:
+        data_sheet: What the data sheet allows, or what was stated in its place.
+        policy: What the margin policy allows.
+        tight_above: Above this the verdict is tight.
+        evidence: The limit as found.
+        findings: What to note about it.
+    """
+
+    data_sheet: float
+    policy: float
+    tight_above: float
+    evidence: Evidence
+    findings: tuple[Finding, ...] = ()
+
+    @property
+    def limit(self) -> float:
+        """The lower of both."""
+        return min(self.data_sheet, self.policy)
+
+
+def limits_of(part: Part, stated: PartStatement, policy: Policy) -> Limits | str:
+    """The limits of a part, or what is missing, in words."""
+    findings: tuple[Finding, ...] = ()
+    figures = part.channels[0].figures
+    found = stated.junction_max or figures.get("junction_max")
+    if found is None:
+        found = figures.get("junction_absolute_max")
+        if found is None:
+            return "junction limit"
+        message = f"only the absolute maximum of {show(found.span.low, '°C')} is known"
+        findings = (kinds.ABSOLUTE_LIMIT.found(part.ref, message, found.source, key=part.key),)
+    rating = found.span.low
+    allowed = rating - policy.junction_over
+    if policy.junction_factor is not None:
+        allowed = min(allowed, rating * policy.junction_factor)
+    if policy.junction_cap is not None:
+        allowed = min(allowed, policy.junction_cap)
+    tight = min(rating - policy.junction_tight, allowed)
+    return Limits(rating, allowed, tight, found, findings)

@@ -1,0 +1,147 @@
+"""Checks of one worked case against ratings, dropout and limits: the findings that its verdict is made of."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from analyzer.evidence import Evidence, Grade
+from analyzer.findings import heat as kinds
+from analyzer.findings.base import Finding
+from analyzer.heat.altitude import UNCHECKED_ABOVE
+from analyzer.heat.case import ChannelCase, Worked
+from analyzer.heat.draft import Draft
+from analyzer.losses.linear import short_circuit_heat
+from analyzer.rule import LINEARS, Topology
+from analyzer.settings import Policy, Settings
+from analyzer.wording import show
+
+
+def junction_findings(draft: Draft, worst: Worked, policy: Policy) -> Iterator[Finding]:
+    """The junction against both limits."""
+    part, limits = draft.part, draft.limits
+    if worst.runs_away:
+        message = "no temperature is found at which the part comes to rest"
+        yield kinds.RUNAWAY.found(part.ref, message, key=part.key)
+        return
+    if limits is None or worst.junction is None:
+        return
+    shown = f"junction {show(worst.junction, '°C')} at the worst corner"
+    if worst.junction > limits.data_sheet:
+        message = f"{shown}, the data sheet allows {show(limits.data_sheet, '°C')}"
+        yield kinds.JUNCTION_OVER_RATING.found(part.ref, message, limits.evidence.source, key=part.key)
+    elif worst.junction > limits.policy:
+        message = f"{shown}, policy {policy.name} allows {show(limits.policy, '°C')}"
+        yield kinds.JUNCTION_OVER_POLICY.found(part.ref, message, policy.source, key=part.key)
+    elif worst.junction > limits.tight_above:
+        message = f"{shown}, less than the required margin below {show(limits.data_sheet, '°C')}"
+        yield kinds.JUNCTION_TIGHT.found(part.ref, message, policy.source, key=part.key)
+
+
+def electrical_findings(draft: Draft, policy: Policy) -> Iterator[Finding]:
+    """Input voltage, output current, dropout, power and short circuit of every channel."""
+    for one in draft.case.channels:
+        yield from _input(draft, one, policy)
+        yield from _current(draft, one, policy)
+        yield from _dropout(draft, one)
+        yield from _short(draft, one)
+
+
+def _input(draft: Draft, one: ChannelCase, policy: Policy) -> Iterator[Finding]:
+    part, figures = draft.part, one.wiring.channel.figures
+    vin = one.vin.high
+    for key, word, value in (
+        ("input_max", "input voltage", vin),
+        ("input_absolute_max", "input voltage", vin),
+        ("differential_max", "input-output difference", vin - one.vout.low),
+    ):
+        rating = figures.get(key)
+        if rating is None:
+            continue
+        rated = abs(rating.span.low)
+        shown = f"{word} up to {show(value, 'V')}, rated {show(rated, 'V')}"
+        if value > rated:
+            yield kinds.INPUT_OVER_RATING.found(part.ref, shown, rating.source, key=part.key)
+            return
+        if key == "input_absolute_max" and value > rated * policy.input_fraction:
+            message = f"{shown}; policy {policy.name} allows {policy.input_fraction:.0%} of it"
+            yield kinds.INPUT_OVER_POLICY.found(part.ref, message, policy.source, key=part.key)
+
+
+def _current(draft: Draft, one: ChannelCase, policy: Policy) -> Iterator[Finding]:
+    part, rating = draft.part, one.wiring.channel.figures.get("output_current_max")
+    load = one.load.high
+    if rating is not None:
+        rated = rating.span.low
+        shown = f"load up to {show(load, 'A')}, rated {show(rated, 'A')}"
+        if load > rated:
+            yield kinds.CURRENT_OVER_RATING.found(part.ref, shown, rating.source, key=part.key)
+        elif load > rated * policy.current_fraction:
+            message = f"{shown}; policy {policy.name} allows {policy.current_fraction:.0%} of it"
+            yield kinds.CURRENT_OVER_POLICY.found(part.ref, message, policy.source, key=part.key)
+    least = one.wiring.channel.figures.get("minimum_load")
+    if least is not None and draft.is_complete and one.load.low < least.span.high:
+        message = f"load down to {show(one.load.low, 'A')}, the part needs {show(least.span.high, 'A')} to regulate"
+        yield kinds.MINIMUM_LOAD.found(part.ref, message, least.source, key=part.key)
+
+
+def _dropout(draft: Draft, one: ChannelCase) -> Iterator[Finding]:
+    part, channel = draft.part, one.wiring.channel
+    if channel.topology not in LINEARS and channel.topology is not Topology.BUCK:
+        return
+    left = one.vin.low - one.vout.high
+    needed = _needed(one)
+    if left >= needed:
+        return
+    doubtful = any(
+        evidence is not None and evidence.weakest is Grade.PRESUMED for evidence in (one.wiring.vin, one.wiring.vout)
+    )
+    kind = kinds.DROPOUT_DOUBTFUL if doubtful else kinds.DROPOUT_LOST
+    message = (
+        f"input {show(one.vin.low, 'V')} less output {show(one.vout.high, 'V')} leaves {show(left, 'V')}, "
+        f"the part needs {show(needed, 'V')}"
+    )
+    yield kind.found(part.ref, message, key=part.key)
+
+
+def _needed(one: ChannelCase) -> float:
+    """Dropout [V] at the greatest load; 0 where the part gives none (then Vin ≥ Vout is all that can be asked)."""
+    channel = one.wiring.channel
+    curve = channel.curves.get("dropout")
+    if curve is not None:
+        return curve.at(min(max(one.load.high, curve.lowest), curve.highest)).high
+    figure: Evidence | None = channel.figures.get("dropout")
+    return figure.span.high if figure else 0.0
+
+
+def _short(draft: Draft, one: ChannelCase) -> Iterator[Finding]:
+    part, channel = draft.part, one.wiring.channel
+    limit = channel.figures.get("current_limit")
+    if limit is None or channel.topology not in LINEARS:
+        return
+    watts = short_circuit_heat(one.vin.high, limit.span.high)
+    message = f"into a short {show(limit.span.high, 'A')} at {show(one.vin.high, 'V')} would make {show(watts, 'W')}"
+    yield kinds.SHORT_CIRCUIT.found(part.ref, message, limit.source, key=part.key)
+
+
+def power_findings(draft: Draft, worst: Worked) -> Iterator[Finding]:
+    """The package's power limit, and what of the loss is in other parts."""
+    part = draft.part
+    rating = part.channels[0].figures.get("power_max")
+    if rating is not None and worst.watts > rating.span.low:
+        message = f"heat {show(worst.watts, 'W')}, the package is limited to {show(rating.span.low, 'W')}"
+        yield kinds.POWER_OVER_RATING.found(part.ref, message, rating.source, key=part.key)
+    outside = [(who, watts) for one in worst.chosen for who, watts in one.loss.elsewhere if watts > 0]
+    if outside:
+        listed = ", ".join(f"{show(watts, 'W')} in {who}" for who, watts in outside)
+        yield kinds.HEAT_OUTSIDE.found(part.ref, f"further heat outside the part: {listed}", key=part.key)
+
+
+def site_findings(settings: Settings) -> Iterator[Finding]:
+    """What there is to say of site and policy, once for the board."""
+    altitude = settings.site.altitude
+    if altitude.span.high > UNCHECKED_ABOVE:
+        message = f"altitude up to {altitude.span.high:g} m"
+        yield kinds.ALTITUDE_UNCHECKED.found("site", message, altitude.source)
+    policy = settings.policy
+    if not policy.verified:
+        yield kinds.POLICY_UNVERIFIED.found(f"policy {policy.name}", "figures not checked", policy.source)

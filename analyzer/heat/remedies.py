@@ -1,0 +1,231 @@
+"""What would help, each with its numbers. None is a promise: every figure holds with all else as it is."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from dataclasses import replace
+
+from analyzer.heat.case import Case, ChannelCase, Worked, worst
+from analyzer.heat.draft import Draft
+from analyzer.heat.path.sink import needed_sink
+from analyzer.ledger import Remedy
+from analyzer.quantity import ZERO, Span
+from analyzer.rule import LINEARS, SWITCHERS, BoardClass, PackageRule
+from analyzer.wording import show
+
+SINK_CONTACT = 1.0
+"""θCS [K/W] of a TO-220 with compound (TI TPS758xx data sheet); 0.2 for TO-3, 1.5 to 2.5 if unknown."""
+
+SINKABLE = frozenset({"TO-220", "TO-3"})
+E24 = tuple(
+    float(step)
+    for step in "1 1.1 1.2 1.3 1.5 1.6 1.8 2 2.2 2.4 2.7 3 3.3 3.6 3.9 4.3 4.7 5.1 5.6 6.2 6.8 7.5 8.2 9.1".split()
+)
+"""IEC 60063:2015 series E24."""
+
+
+def remedies(
+    draft: Draft,
+    case: Case,
+    hottest: Worked,
+    greatest: float | None,
+    packages: Mapping[str, PackageRule],
+    board: BoardClass,
+) -> tuple[Remedy, ...]:
+    """Remedies of a worked case: what still passes, and what would make it pass where it does not."""
+    if case.limit is None or case.path is None or hottest.junction is None or not case.channels:
+        return ()
+    found = [*_what_passes(case, hottest, greatest)]
+    if case.tight_above is not None and hottest.junction > case.tight_above:
+        found += _what_helps(draft, case, hottest, packages, board)
+    return tuple(found)
+
+
+def _what_passes(case: Case, hottest: Worked, greatest: float | None) -> Iterator[Remedy]:
+    limit, junction = case.limit, hottest.junction
+    if limit is None or junction is None:
+        return
+    if greatest is not None:
+        text = f"passes up to a load of {show(greatest, 'A')}"
+        yield Remedy("greatest load", text, {"amps": greatest})
+    if case.path is not None and case.path.measured is None:
+        ambient = _greatest_ambient(case, hottest)
+        if ambient is not None:
+            yield Remedy(
+                "greatest ambient", f"passes up to {show(ambient, '°C')} around the part", {"celsius": ambient}
+            )
+        if hottest.watts > 0:
+            theta = (limit - hottest.ambient) / hottest.watts
+            words = f"passes with up to {show(theta, 'K/W')} from junction to air" if theta > 0 else "no θ would pass"
+            yield Remedy("θ needed", words, {"k_per_w": max(theta, 0.0)})
+    volts = _greatest_input(case)
+    if volts is not None:
+        yield Remedy("greatest input", f"passes up to {show(volts, 'V')} at the input", {"volts": volts})
+
+
+def _greatest_ambient(case: Case, hottest: Worked) -> float | None:
+    """Air at which the junction just meets its limit; exact where the heat does not depend on the junction."""
+    if case.limit is None or hottest.junction is None:
+        return None
+    if not any(one.model.heats for one in case.channels):
+        return hottest.ambient + case.limit - hottest.junction
+    low, high = -273.0, case.limit
+    for _ in range(60):
+        middle = (low + high) / 2
+        found = worst(case.with_ambient(Span.exact(middle)))
+        if found.runs_away or found.junction is None or found.junction > case.limit:
+            high = middle
+        else:
+            low = middle
+    return low
+
+
+def _greatest_input(case: Case) -> float | None:
+    """Input voltage at which a linear part's junction just meets its limit: its heat is linear in it."""
+    (one, *others) = case.channels
+    if others or one.wiring.channel.topology not in LINEARS or case.limit is None:
+        return None
+    if case.path is None or not case.path.is_linear:
+        return None
+    high = one.vin.high
+
+    def junction(vin: float) -> float | None:
+        return worst(replace(case, channels=(replace(one, vin=Span.exact(vin)),))).junction
+
+    here, there = junction(high), junction(high + 1.0)
+    if here is None or there is None or there <= here:
+        return None
+    found = high + (case.limit - here) / (there - here)
+    return found if found > one.vout.high else None
+
+
+def _what_helps(
+    draft: Draft, case: Case, hottest: Worked, packages: Mapping[str, PackageRule], board: BoardClass
+) -> Iterator[Remedy]:
+    (one, *others) = case.channels
+    topology = one.wiring.channel.topology
+    sink = _heat_sink(draft, case, hottest)
+    if sink is not None:
+        yield sink
+    if topology in SWITCHERS and not others:
+        yield from _efficiency(case, hottest)
+    if topology in LINEARS and not others:
+        resistor = series_resistor(case, one)
+        if resistor is not None:
+            yield resistor
+        split = _split_drop(case, one)
+        if split is not None:
+            yield split
+    larger = _larger_package(draft, case, hottest, packages, board)
+    if larger is not None:
+        yield larger
+
+
+def _heat_sink(draft: Draft, case: Case, hottest: Worked) -> Remedy | None:
+    figure = draft.part.thermal[0] if draft.part.thermal else None
+    theta = figure.theta_jc_bottom if figure else None
+    if theta is None or draft.part.package.family not in SINKABLE or case.limit is None or hottest.watts <= 0:
+        return None
+    needed = needed_sink(case.limit, hottest.ambient, hottest.watts, theta.span.high, SINK_CONTACT)
+    if needed <= 0:
+        text = f"no heat sink is enough: θJC {show(theta.span.high, 'K/W')} alone is too much"
+        return Remedy("heat sink", text, {"k_per_w": 0.0})
+    text = (
+        f"a heat sink of {show(needed, 'K/W')} or less at its own rise "
+        f"(θJC {show(theta.span.high, 'K/W')}, contact {show(SINK_CONTACT, 'K/W')})"
+    )
+    return Remedy("heat sink", text, {"k_per_w": needed})
+
+
+def _efficiency(case: Case, hottest: Worked) -> Iterator[Remedy]:
+    if case.limit is None or hottest.theta is None:
+        return
+    allowed = (case.limit - hottest.ambient) / hottest.theta
+    chosen = hottest.chosen[0]
+    power = chosen.point.vout * chosen.point.iout
+    if allowed > 0 and power > 0:
+        outside = sum(watts for _, watts in chosen.loss.elsewhere)
+        least = power / (power + allowed + outside)
+        text = f"an efficiency of at least {least:.1%} would pass at this θ"
+        yield Remedy("least efficiency", text, {"efficiency": least})
+
+
+def series_resistor(case: Case, one: ChannelCase) -> Remedy | None:
+    """A resistor before a linear part that shares the heat without breaking dropout at the lowest input.
+
+    R = (Vin,min − Vout,max − Vdo) / Imax, rounded down to E24; its own heat is Imax² · R.
+    """
+    load = one.load.high
+    dropout = one.wiring.channel.figures.get("dropout")
+    room = one.vin.low - one.vout.high - (dropout.span.high if dropout else 0.0)
+    if load <= 0 or room <= 0 or dropout is None:
+        return None
+    ohms = _round_down(room / load)
+    if ohms is None:
+        return None
+    dropped = load * ohms
+    eased = replace(one, vin=Span(one.vin.low - dropped, one.vin.nominal - dropped, one.vin.high - dropped))
+    junction = worst(replace(case, channels=(eased,))).junction
+    if junction is None:
+        return None
+    watts = load * load * ohms
+    text = (
+        f"{show(ohms, 'Ω')} before the input takes {show(watts, 'W')} at {show(load, 'A')}, keeps "
+        f"{show(one.vin.low - dropped - one.vout.high, 'V')} at the lowest input and brings the junction to "
+        f"{show(junction, '°C')}"
+    )
+    light = one.load.low * one.load.low * ohms
+    numbers = {"ohms": ohms, "watts": watts, "watts_light": light, "celsius": junction}
+    return Remedy("series resistor", text, numbers)
+
+
+def _round_down(ohms: float) -> float | None:
+    if not 1e-3 <= ohms <= 1e6:
+        return None
+    decade = 10.0
+    while decade > ohms:
+        decade /= 10.0
+    while decade * 10 <= ohms:
+        decade *= 10.0
+    return max((step * decade for step in E24 if step * decade <= ohms * (1 + 1e-12)), default=None)
+
+
+def _split_drop(case: Case, one: ChannelCase) -> Remedy | None:
+    """Two linear stages in row, each like this one: best where both are equally hot, halfway between the voltages."""
+    dropout = one.wiring.channel.figures.get("dropout")
+    middle = (one.vin.high + one.vout.low) / 2
+    if dropout is None or one.vin.low - middle < dropout.span.high or middle - one.vout.high < dropout.span.high:
+        return None
+    first = worst(replace(case, channels=(replace(one, vout=Span.exact(middle)),))).junction
+    second = worst(replace(case, channels=(replace(one, vin=Span.exact(middle)),))).junction
+    if first is None or second is None:
+        return None
+    text = (
+        f"an intermediate rail of {show(middle, 'V')} between two such stages brings their junctions to "
+        f"{show(first, '°C')} and {show(second, '°C')}"
+    )
+    return Remedy("intermediate rail", text, {"volts": middle, "celsius_first": first, "celsius_second": second})
+
+
+def _larger_package(
+    draft: Draft, case: Case, hottest: Worked, packages: Mapping[str, PackageRule], board: BoardClass
+) -> Remedy | None:
+    """The next better package of the generic table, same die and board presumed."""
+    if case.path is None or hottest.theta is None or case.path.measured is not None:
+        return None
+    better = sorted(
+        (theta.span.high, family)
+        for family, rule in packages.items()
+        if (theta := rule.theta_ja.get(board)) is not None
+        and family != draft.part.package.family
+        and theta.span.high * case.thin_air[1] < hottest.theta
+    )
+    if not better:
+        return None
+    theta, family = better[-1]
+    path = replace(case.path, solid=ZERO, air=Span.exact(theta), sink=None)
+    junction = worst(replace(case, path=path)).junction
+    if junction is None:
+        return None
+    text = f"package {family} (generic {show(theta, 'K/W')}) would bring the junction to {show(junction, '°C')}"
+    return Remedy("next package", text, {"k_per_w": theta, "celsius": junction})
