@@ -174,3 +174,10 @@ POWER_PIN_LOOSE = FindingKind(
     "A power input pin is connected to nothing and carries no no-connect mark.",
     "Wire the pin, or mark it as not connected.",
 )
+SEVERAL_NAMES = FindingKind(
+    "net-with-several-names",
+    Weight.NOTE,
+    "A net bears several names that hold on all sheets (power symbols, global labels): what is drawn under them is "
+    "one net here. Where such a net also passes through sheet pins, KiCad's own netlist may keep parts of it apart.",
+    "Keep one name, or join the two nets through a net tie.",
+)

@@ -8,6 +8,7 @@ from analyzer.findings import reading as kinds
 from analyzer.findings.base import FindingKind
 from analyzer.reading.geometry import Point
 from analyzer.reading.joins import Netting
+from analyzer.reading.names import Rank
 from analyzer.reading.netlisting import NetNames
 from analyzer.reading.placement import PlacedPin, Placement
 from analyzer.reading.report import Report
@@ -37,6 +38,19 @@ def check_sheets(wired: list[WiredSheet], report: Report) -> None:
             for text in sorted(inside - counts.keys()):
                 message = f"hierarchical label '{text}' of sheet '{symbol.name}' has no sheet pin"
                 report.add(kinds.SHEET_PIN_LOOSE, symbol.name, message, place)
+
+
+def check_names(netting: Netting, names: NetNames, report: Report) -> None:
+    """Report nets that bear several names valid on all sheets: two rails are one there, or should not be."""
+    bearers: dict[int, set[str]] = defaultdict(set)
+    for node, candidate in netting.candidates:
+        if candidate.rank in {Rank.GLOBAL_LABEL, Rank.GLOBAL_POWER}:
+            bearers[netting.joins.root(node)].add(candidate.name)
+    for net in sorted(bearers, key=lambda each: min(bearers[each])):
+        if len(bearers[net]) > 1 and net in names.of_root:
+            shown = ", ".join(sorted(bearers[net]))
+            subject = names.of_root[net]
+            report.add(kinds.SEVERAL_NAMES, subject, f"net {subject} bears several names: {shown}")
 
 
 def check_buses(wired: list[WiredSheet], placements: list[Placement], report: Report) -> None:

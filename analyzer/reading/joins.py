@@ -42,11 +42,15 @@ class Netting:
         joins: All nodes.
         candidates: (node, name it proposes for its net).
         no_connects: Nodes that carry a no-connect mark.
+        drawn: Names that labels gave to nets as drawn, before equal names joined them.
+        on_sheet: Sheet instance number → (node, name, rank) of everything named there.
     """
 
     joins: Joins = field(default_factory=Joins)
     candidates: list[tuple[int, Candidate]] = field(default_factory=list)
     no_connects: set[int] = field(default_factory=set)
+    drawn: set[str] = field(default_factory=set)
+    on_sheet: dict[int, list[tuple[int, str, Rank]]] = field(default_factory=dict)
     _global: dict[str, int] = field(default_factory=dict)
     _local: dict[tuple[int, str], int] = field(default_factory=dict)
 
@@ -74,13 +78,14 @@ class Netting:
         """
         if rank is not Rank.SHEET_PIN:
             self.joins.join(node, self.local_node(sheet, name))
-        path = ""
+        path, depth = "", 0
         if rank in {Rank.GLOBAL_LABEL, Rank.GLOBAL_POWER}:
             far = self._global.get(name)
             if far is None:
                 far = self._global[name] = self.joins.new()
             self.joins.join(node, far)
         else:
-            path = sheet.name
+            path, depth = sheet.name, sheet.depth
         full = path + written(name)
-        self.candidates.append((node, Candidate(rank, sheet.depth, full if by is None else path + by, full)))
+        self.on_sheet.setdefault(sheet.number, []).append((node, name, rank))
+        self.candidates.append((node, Candidate(rank, depth, full if by is None else path + by, full)))

@@ -49,7 +49,7 @@ class Candidate:
 
     Attributes:
         rank: Who proposes it.
-        depth: Levels below the root of the sheet it stands on.
+        depth: Levels below the root of the sheet it stands on; 0 for names that hold on all sheets.
         by: Name of the proposer where it differs from the net's (a bus), else the net's name.
         name: Full name the net would get.
     """

@@ -7,8 +7,10 @@ from dataclasses import dataclass
 
 from analyzer.circuit import natural_key
 from analyzer.reading.joins import Netting
-from analyzer.reading.names import Candidate, UnitStyle, pin_name
+from analyzer.reading.names import Candidate, Rank, UnitStyle, pin_name
 from analyzer.reading.placement import PlacedPin, Placement
+
+DriverKey = tuple[tuple[tuple[int, int | str], ...], tuple[tuple[int, int | str], ...], tuple[int, int], str]
 
 
 @dataclass(frozen=True, slots=True)
@@ -22,8 +24,8 @@ class NetNames:
 def name_nets(placements: list[Placement], netting: Netting, style: UnitStyle) -> NetNames:
     """Name every net that has a pin.
 
-    Nets that a person gave the same full name are one name here, as they are one net on the board.
-    Automatic names that would occur twice get "_1", "_2" in the order of the pins they come from.
+    Nets whose labels give them the same full name are one name here, as they are one net on the board.
+    Names that come only from pins of parts or of sheets and would occur twice get "_1", "_2".
     """
     root = netting.joins.root
     pins: dict[int, list[PlacedPin]] = defaultdict(list)
@@ -33,28 +35,29 @@ def name_nets(placements: list[Placement], netting: Netting, style: UnitStyle) -
     best: dict[int, Candidate] = {}
     for node, candidate in netting.candidates:
         net = root(node)
-        if net in pins and (net not in best or candidate < best[net]):
+        if net not in best or candidate < best[net]:
             best[net] = candidate
-    named = {net: candidate.name for net, candidate in best.items()}
-    given = frozenset(named.values())
+    named = {net: candidate.name for net, candidate in best.items() if candidate.rank is not Rank.SHEET_PIN}
+    given = set(named.values())
+    taken = given | netting.drawn
     unconnected = {root(node) for node in netting.no_connects}
-    taken = set(given)
-    automatic = [
-        (_driver_key(placed), net, name)
-        for net, members in pins.items()
-        if net not in named
-        for name, placed in [_automatic(members, style, unconnected=net in unconnected)]
-    ]
-    for _, net, name in sorted(automatic, key=lambda entry: (entry[2], entry[0])):
+    weak: list[tuple[str, DriverKey, int]] = []
+    for net, members in pins.items():
+        if net not in named:
+            name, driver = _automatic(members, style, unconnected=net in unconnected)
+            weak.append((best[net].name if net in best else name, _driver_key(driver), net))
+    for name, _, net in sorted(weak):
         members = pins[net]
         unique = _unused(name, taken)
         taken.add(unique)
-        if len(members) == 1 and not name.startswith("unconnected-("):
+        if net in best:
+            given.add(unique)
+        elif len(members) == 1 and not name.startswith("unconnected-("):
             # KiCad numbers equal names first and only then sees that a net has a single pin
             unique = _unused(pin_name(members[0], style, unconnected=True), taken)
             taken.add(unique)
         named[net] = unique
-    return NetNames(named, given)
+    return NetNames(named, frozenset(given))
 
 
 def _automatic(members: list[PlacedPin], style: UnitStyle, *, unconnected: bool) -> tuple[str, PlacedPin]:
@@ -63,9 +66,6 @@ def _automatic(members: list[PlacedPin], style: UnitStyle, *, unconnected: bool)
         (pin_name(pin, style, unconnected=unconnected or pin.pin.kind == "no_connect"), pin) for pin in able or members
     ]
     return min(names, key=lambda pair: ("-Pad" in pair[0], pair[0], _driver_key(pair[1])))
-
-
-DriverKey = tuple[tuple[tuple[int, int | str], ...], tuple[tuple[int, int | str], ...], tuple[int, int], str]
 
 
 def _driver_key(placed: PlacedPin) -> DriverKey:

@@ -8,7 +8,7 @@ from analyzer.reading.assembly import build_components, build_nets, group_units,
 from analyzer.reading.board_file import copper_layers
 from analyzer.reading.buses import Bus, BusError, read_bus
 from analyzer.reading.buslines import join_buses
-from analyzer.reading.checks import check_buses, check_pins, check_sheets
+from analyzer.reading.checks import check_buses, check_names, check_pins, check_sheets
 from analyzer.reading.files import Files
 from analyzer.reading.geometry import Point
 from analyzer.reading.hierarchy import Hierarchy, SheetInstance
@@ -18,6 +18,7 @@ from analyzer.reading.placement import Placement, place_all
 from analyzer.reading.project import Project
 from analyzer.reading.report import Report
 from analyzer.reading.scope import Scope
+from analyzer.reading.sheet_pins import join_sheet_pins
 from analyzer.reading.wiring import WiredSheet, wire_sheet
 from analyzer.settings import Settings
 
@@ -36,12 +37,13 @@ def read_schematic(project: Project, files: Files, report: Report, settings: Set
     netting = Netting()
     wired = _wire(sheets, placements, netting, scope, _aliases(sheets, project), report)
     join_buses(wired, netting)
-    _join_sheet_pins(wired, netting)
+    join_sheet_pins(wired, netting, report)
     parts = group_units(placements, report)
     join_jumpers(parts, netting)
     names = name_nets(placements, netting, project.unit_style)
     check_sheets(wired, report)
     check_buses(wired, placements, report)
+    check_names(netting, names, report)
     check_pins(placements, wired, netting, names, report)
     components = build_components(parts, netting, names, scope.field, settings, report)
     return Circuit(
@@ -89,17 +91,6 @@ def _wire(
         return found
 
     return [wire_sheet(sheet, on_sheet[sheet.number], netting, scope.on(sheet), bus, report) for sheet in sheets]
-
-
-def _join_sheet_pins(wired: list[WiredSheet], netting: Netting) -> None:
-    by_number = {each.sheet.number: each for each in wired}
-    for each in wired:
-        for (position, text), node in each.sheet_pins.items():
-            child = each.sheet.children.get(position)
-            if child is not None:
-                inner = by_number[child.number].hierarchical.get(text)
-                if inner is not None:
-                    netting.joins.join(node, inner)
 
 
 def _notes(sheets: list[SheetInstance], scope: Scope) -> list[Note]:

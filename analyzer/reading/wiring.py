@@ -11,7 +11,7 @@ from analyzer.reading.drawing import Label
 from analyzer.reading.geometry import Point, WireIndex
 from analyzer.reading.hierarchy import SheetInstance
 from analyzer.reading.joins import Netting
-from analyzer.reading.names import Rank, meant
+from analyzer.reading.names import Rank, meant, written
 from analyzer.reading.placement import PlacedPin, Placement
 from analyzer.reading.report import Report
 
@@ -19,6 +19,11 @@ VALUE_NAMES_THE_NET = 20230221
 """From this format on a power symbol's value names its net; before, a hidden pin's name does."""
 
 RANKS = {"local": Rank.LOCAL_LABEL, "global": Rank.GLOBAL_LABEL, "hierarchical": Rank.HIERARCHICAL_LABEL}
+
+LOCAL = {Rank.LOCAL_POWER, Rank.LOCAL_LABEL, Rank.HIERARCHICAL_LABEL}
+
+Named = tuple[int, str, Rank]
+"""A node, a name it bears, and what kind of thing bears it."""
 
 Expand = Callable[[str], str]
 ReadBus = Callable[[str, SheetInstance, Point], "Bus | None"]
@@ -46,11 +51,13 @@ class WiredSheet:
         bus_pins: (position of the sheet symbol, meant text) → bus text of that pin.
         index: Finds wires under a point.
         ends: Ends of wires.
+        drawn_names: For each net as drawn (before equal names are joined) its names, strongest first.
     """
 
     sheet: SheetInstance
     index: WireIndex
     ends: set[Point]
+    drawn_names: list[list[tuple[Rank, str]]] = field(default_factory=list)
     hierarchical: dict[str, int] = field(default_factory=dict)
     sheet_pins: dict[tuple[int, str], int] = field(default_factory=dict)
     bus_labels: list[BusLabel] = field(default_factory=list)
@@ -110,6 +117,7 @@ def wire_sheet(
     wires = _Lines(netting, drawing.wires)
     buses = _Lines(netting, drawing.buses)
     wired = WiredSheet(sheet, wires.index, wires.ends)
+    named: list[Named] = []
     for placement in placements:
         for pin in placement.pins:
             if pin.pin.kind == "no_connect":
@@ -123,7 +131,7 @@ def wire_sheet(
     touchable = occupied.union(at for symbol in drawing.sheets for _, at in symbol.pins)
     for label in drawing.labels:
         text = meant(expand(label.text))
-        if not _attach(label, text, sheet, wires, buses, wired, netting, read_bus) and label.at not in touchable:
+        if not _attach(label, text, sheet, wires, buses, wired, named, netting, read_bus) and label.at not in touchable:
             report.add(
                 kinds.LABEL_LOOSE,
                 text,
@@ -137,7 +145,7 @@ def wire_sheet(
             netting.no_connects.add(node)
     for placement in placements:
         for pin in placement.pins:
-            _power(pin, sheet, netting, expand)
+            _power(pin, sheet, named, expand)
     for position, symbol in enumerate(drawing.sheets):
         for raw, at in symbol.pins:
             text = meant(expand(raw))
@@ -152,8 +160,19 @@ def wire_sheet(
             if (position, text) in wired.sheet_pins:
                 netting.joins.join(node, wired.sheet_pins[position, text])
             wired.sheet_pins[position, text] = node
-            netting.name(node, sheet, text, Rank.SHEET_PIN)
+            named.append((node, text, Rank.SHEET_PIN))
+    wired.drawn_names = _names_by_net(named, netting)
+    netting.drawn |= {sheet.name + written(names[0][1]) for names in wired.drawn_names if names[0][0] in LOCAL}
+    for node, name, rank in named:
+        netting.name(node, sheet, name, rank)
     return wired
+
+
+def _names_by_net(named: list[Named], netting: Netting) -> list[list[tuple[Rank, str]]]:
+    nets: dict[int, list[tuple[Rank, str]]] = {}
+    for node, name, rank in named:
+        nets.setdefault(netting.joins.root(node), []).append((rank, name))
+    return [sorted(names) for names in nets.values()]
 
 
 def _attach(
@@ -163,6 +182,7 @@ def _attach(
     wires: _Lines,
     buses: _Lines,
     wired: WiredSheet,
+    named: list[Named],
     netting: Netting,
     read_bus: ReadBus,
 ) -> bool:
@@ -176,13 +196,13 @@ def _attach(
     node = wires.tap(label.at)
     if node is None:
         node = wires.node(label.at)
-    netting.name(node, sheet, text, RANKS[label.kind])
+    named.append((node, text, RANKS[label.kind]))
     if label.kind == "hierarchical":
         wired.hierarchical[text] = node
     return touches
 
 
-def _power(placed: PlacedPin, sheet: SheetInstance, netting: Netting, expand: Expand) -> None:
+def _power(placed: PlacedPin, sheet: SheetInstance, named: list[Named], expand: Expand) -> None:
     pin, owner = placed.pin, placed.owner
     library = owner.library
     if pin.kind != "power_in" or library is None:
@@ -197,4 +217,4 @@ def _power(placed: PlacedPin, sheet: SheetInstance, netting: Netting, expand: Ex
     else:
         return
     if name:
-        netting.name(placed.node, sheet, meant(expand(name)), rank)
+        named.append((placed.node, meant(expand(name)), rank))

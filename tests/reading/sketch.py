@@ -77,9 +77,9 @@ def no_connect(at: At) -> str:
 def sheet(
     name: str, file: str, *pins: tuple[str, At], uuid: str | None = None, at: At = (200, 200), more: str = ""
 ) -> str:
-    drawn = " ".join(f'(pin "{text}" input (at {x} {y} 0) {FONT})' for text, (x, y) in pins)
+    drawn = " ".join(f'(pin "{text}" input (at {x} {y} 180) {FONT})' for text, (x, y) in pins)
     return (
-        f'(sheet (at {at[0]} {at[1]}) (size 20 20) {more} (uuid "{uuid or name}")'
+        f'(sheet (at {at[0]} {at[1]}) (size 20 200) {more} (uuid "{uuid or name}")'
         f' (property "Sheetname" "{name}" (at 0 0 0)) (property "Sheetfile" "{file}" (at 0 0 0)) {drawn})'
     )
 
