@@ -62,6 +62,11 @@ _BY_LETTERS = {
     "F": Kind.FUSE,
     "FU": Kind.FUSE,
     "PTC": Kind.FUSE,
+    "FS": Kind.FUSE,
+    "FUSE": Kind.FUSE,
+    "SB": Kind.JUMPER,
+    "LK": Kind.JUMPER,
+    "LNK": Kind.JUMPER,
     "NT": Kind.NET_TIE,
     "JP": Kind.JUMPER,
     "SJ": Kind.JUMPER,
@@ -219,9 +224,14 @@ def _two_pin_kind(component: Component, texts: tuple[str, ...], kind: Kind) -> K
 def ohms(component: Component) -> float | None:
     """Resistance a resistor's value text states [Ω]; None when it states none."""
     value = value_of(component)
+    if value is None and _ZERO.match(component.value.strip()):
+        return 0.0
     if value is None or value.magnitude is None or value.dimension not in (None, Dimension.RESISTANCE):
         return None
     return value.magnitude
+
+
+_ZERO = re.compile(r"(?:R_)?0+(?:[.,]0+)?\s*(?:R|E|Ω|ohms?)?0*(?=$|[\s,;/_(])", re.IGNORECASE)
 
 
 def is_schottky(component: Component) -> bool:

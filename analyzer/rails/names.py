@@ -29,9 +29,11 @@ _SIGNALS = frozenset(
     VMON IMON RST NRST RESET NRESET FAULT FLT NFAULT INT IRQ ALERT SEL CTRL CTL DET DETECT FLAG STAT STATUS OC DIS
     DISABLE GATE GT BTN BUTTON KEY LED SDA SCL TX RX TXD RXD RTS CTS CLK SCK SCLK MISO MOSI CS NCS DIN DOUT AMUX
     MUX GPIO TRIG SW LX PH PHASE BOOT BST CB COMP SS TP ADJ SET DIV PWM TRIM MODE WAKE SHDN NSHDN ON OFF VSEL LVL
-    LEVEL DATA TDI TDO TCK TMS SWDIO SWCLK INH BIT RUN REQ ACK READY RDY
+    LEVEL DATA TDI TDO TCK TMS SWDIO SWCLK INH BIT RUN REQ ACK READY RDY RTN RETURN GND
     """.split()
 )
+_DOMAINS = frozenset({"LED", "ADC", "DAC", "GPIO", "DATA", "MUX", "CLK", "INT", "PWM", "BUTTON", "KEY", "LEVEL"})
+"""Words that behind a voltage name what the rail supplies, and only before one make it a signal."""
 _INPUT_WORDS = ("IN", "INPUT")
 _NEGATIVE_WORDS = frozenset({"NEG", "MINUS", "VEE", "VNEG", "N"})
 _NEGATIVE_TAILS = frozenset({"NEG", "N", "MINUS"})
@@ -70,6 +72,12 @@ def base_name(net: str) -> str:
 
 
 _MARKUP = re.compile(r"[~_^]\{([^{}]*)\}")
+
+
+def is_signal_name(net: str) -> bool:
+    """Whether a word in a net's name says that it is a signal of a supply ("VBUS_DET"), not the supply."""
+    words = re.split(r"[^A-Za-z0-9]+", base_name(net).upper())
+    return bool((_SIGNALS - _DOMAINS).intersection(words))
 
 
 @lru_cache(maxsize=16384)
@@ -123,8 +131,8 @@ def _is_signal(before: str, after: str, found: re.Match[str]) -> bool:
     glued_head = bool(before) and before[-1].isalpha()
     if tails and not after[:1].isalpha() and tails[0] == "SW" and not _SIGNALS.intersection(heads):
         tails = tails[1:]  # "3V3_SW": the switched rail
-    if _SIGNALS.intersection(heads) or _SIGNALS.difference({"INT"}).intersection(tails):
-        return True  # behind the number INT is "internal", before it an interrupt
+    if (_SIGNALS - {"LED", "DAC", "CLK"}).intersection(heads) or (_SIGNALS - _DOMAINS).intersection(tails):
+        return True
     if any(re.fullmatch(r"(?:S|D|A|Q|IO|CH|AD|GP|P[A-K])\d{1,2}", word) for word in heads):
         return True  # "AMUX_S0_3V3": a signal at that level
     # "BU3V3IN": what the regulator of that voltage takes in
@@ -134,8 +142,8 @@ def _is_signal(before: str, after: str, found: re.Match[str]) -> bool:
 def _sign(sign: str | None, before: str, after: str) -> int:
     heads = [word for word in re.split(r"[^A-Za-z]+", before.upper()) if word]
     tails = [word for word in re.split(r"[^A-Za-z0-9]+", after.upper()) if word]
-    if sign in ("±", "+/-"):
-        return 0
+    if sign in ("±", "+/-") or (heads and heads[-1] == "M"):
+        return 0  # both signs, or "M12V": some mean minus, some mean main
     negative = bool(heads and heads[-1] in _NEGATIVE_WORDS) or bool(tails and tails[0] in _NEGATIVE_TAILS)
     if sign == "-" and not (before and before[-1].isalnum()):
         negative = True

@@ -101,6 +101,7 @@ class Network:
 _TOLERANCE_FIELD = re.compile(r"tol(?:erance)?\.?(?:\s*\(?%\)?)?", re.IGNORECASE)
 _PERCENT = re.compile(r"[±+-]*\s*(\d{1,2}(?:[.,]\d{1,3})?)\s*%?")
 _DRIVES = frozenset({"output", "bidirectional", "tri_state", "power_out", "open_collector", "open_emitter"})
+_SAYS_NOTHING = frozenset({"passive", "unspecified", "free"})
 _GATES = frozenset({"G", "GATE", "B", "BASE", "G1", "G2"})
 
 
@@ -240,8 +241,8 @@ def network_at(
                 for pair in switch.pairs:
                     for end in pair:
                         arrive(end)
-            elif group == tap and kind is Kind.CHIP and pin.kind in _DRIVES:
-                trouble.append(f"{component.ref} drives the feedback pin itself")
+            elif group == tap and kind is Kind.CHIP and pin.kind in _DRIVES | _SAYS_NOTHING:
+                trouble.append(f"{component.ref} may drive the feedback pin itself")
     resistances.sort(key=lambda item: (natural_key(item.ref), item.one, item.other))
     return Network(tap, tuple(resistances), tuple(trimmers), tuple(switches), legs, tuple(dict.fromkeys(trouble)))
 
@@ -289,8 +290,11 @@ def _leg(
         kind = mesh.joined.kinds[component.key]
         if kind is Kind.CHIP and pin.kind in _DRIVES:
             return Leg(group, End.DRIVEN, component.ref)
-        if kind is Kind.CHIP and pin.kind in ("power_in",):
+        if kind is Kind.CHIP and pin.kind == "power_in":
             return Leg(group, End.RAIL)
+        if kind is Kind.CHIP and pin.kind in _SAYS_NOTHING:
+            trouble.append(f"the network leads to {component.ref}, whose pin type does not say whether it drives")
+            return Leg(group, End.UNKNOWN, component.ref)
         if kind is Kind.CONNECTOR:
             trouble.append(f"the network leads to connector {component.ref}")
             return Leg(group, End.UNKNOWN, component.ref)

@@ -45,6 +45,7 @@ _NEGOTIATES = re.compile(
 )
 _NEGOTIATING_PIN = re.compile(r"PD\d?_\w*CC|PD\d?_?VCONN|VBUS_?(?:EN_)?SNK", re.IGNORECASE)
 _CONTRACT_PIN = re.compile(r"(?:[AB]\d_?)?CC_?[12]?", re.IGNORECASE)
+_NEGATIVE_POLE = frozenset({"-", "NEG", "N", "GND", "B-", "BAT-"})
 _BOOT = re.compile(r"BOOT\w*|C?BST\w*|VBST|CB|VB|VBOOT|BS")
 
 
@@ -106,7 +107,7 @@ class Power:
         for component, pin in self.mesh.pins(group):
             count += 1
             kind = self.mesh.joined.kinds[component.key]
-            if kind is Kind.BATTERY:
+            if kind is Kind.BATTERY and plain_name(pin.name).upper() not in _NEGATIVE_POLE:
                 return True
             capacitor |= kind is Kind.CAPACITOR
             if pin.kind in ("power_in", "power_out") and not is_ground_pin(pin.name):
@@ -151,6 +152,8 @@ class Power:
         found: dict[str, tuple[Component, str]] = {}
         for component, pin in self.mesh.pins(group):
             kind = self.mesh.joined.kinds[component.key]
+            if kind is Kind.BATTERY and plain_name(pin.name).upper() in _NEGATIVE_POLE:
+                continue
             if kind in (Kind.CONNECTOR, Kind.BATTERY) and component.fitted:
                 found.setdefault(component.key, (component, plain_name(pin.name)))
         return tuple(found.values())

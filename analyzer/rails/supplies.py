@@ -8,7 +8,7 @@ from fnmatch import fnmatchcase
 
 from analyzer.evidence import Evidence, Grade
 from analyzer.quantity import Span
-from analyzer.rails.names import base_name, named_volts
+from analyzer.rails.names import base_name, is_signal_name, named_volts
 from analyzer.rule import Rulebook, SupplyRule
 from analyzer.settings import Settings
 
@@ -51,6 +51,8 @@ def unused_supplies(settings: Settings, rulebook: Rulebook, nets: Iterable[str])
 
 def supply_by_name(name: str, rulebook: Rulebook) -> Evidence | None:
     """Voltage of the standard supply that a net or connector pin name suggests, graded presumed."""
+    if is_signal_name(name):
+        return None
     rule = _rule_for(base_name(name).upper(), rulebook.supplies)
     if rule is None:
         return None

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator
 from dataclasses import dataclass, field, replace
 
@@ -60,7 +61,7 @@ def trace(power: Power, part: Part, channel: Channel) -> Trace:
     found = Trace(
         part,
         channel,
-        inputs=_one_each(power, live) or inputs,
+        inputs=_ordered_inputs(power, part, channel, _one_each(power, live)) or inputs,
         ground=next(iter((*at_ground, *grounds)), None),
         control=next(iter(channel.nets(Role.BIAS)), None),
         tap=next(iter(channel.nets(Role.FEEDBACK)), None),
@@ -79,6 +80,27 @@ def trace(power: Power, part: Part, channel: Channel) -> Trace:
     if found.output is None and not found.is_off:
         found = replace(found, trouble=(*found.trouble, "no output found behind its pins"))
     return found
+
+
+def _ordered_inputs(power: Power, part: Part, channel: Channel, nets: tuple[str, ...]) -> tuple[str, ...]:
+    """The power input first: pins of a control supply or an internal regulator's bypass come after it."""
+    if len(nets) < 2 or channel.topology is Topology.POWER_MUX:
+        return nets
+    of = power.mesh.groups.of
+
+    def rank(net: str) -> tuple[bool, bool]:
+        names = {plain_name(pin.name).upper() for pin in part.component.pins if of(pin.net) == of(net)}
+        kinds = power.mesh.joined.kinds
+        fed = any(
+            component.key != part.key and kinds[component.key] not in (Kind.CAPACITOR, Kind.TEST_POINT)
+            for component, _ in power.mesh.pins(of(net))
+        )
+        return (not fed, not any(_POWER_INPUT.fullmatch(name) for name in names))
+
+    return tuple(sorted(nets, key=rank))
+
+
+_POWER_INPUT = re.compile(r"\+?P?_?V?_?INP?_?\d*\+?|V?BAT\w*|VI|PWR_?IN|INP")
 
 
 def _one_each(power: Power, nets: tuple[str, ...]) -> tuple[str, ...]:

@@ -121,3 +121,18 @@ def test_base_name_keeps_slashes_of_global_names() -> None:
     assert base_name("+5V/4") == "+5V/4"
     assert base_name("/psu/+5V{slash}4") == "+5V/4"
     assert base_name("/psu/VDD") == "VDD"
+
+
+@pytest.mark.parametrize(
+    ("name", "volts"),
+    [("+5V_LED", 5.0), ("LED_12V", 12.0), ("3V3_ADC", 3.3), ("VDD_1V8_CLK", 1.8), ("P12V", 12.0), ("N12V", -12.0)],
+)
+def test_words_of_what_a_rail_supplies(name: str, volts: float) -> None:
+    found = named_volts(name)
+    assert found is not None
+    assert found.volts == volts
+
+
+@pytest.mark.parametrize("name", ["24V_RTN", "M12V", "ADC_3V3", "3V3_OK", "5V_FAULT", "12V_SENSE"])
+def test_more_traps(name: str) -> None:
+    assert named_volts(name) is None
