@@ -222,10 +222,10 @@ def _larger_package(
     )
     if not better:
         return None
-    theta, family = better[-1]
-    path = replace(case.path, solid=ZERO, air=Span.exact(theta), sink=None)
+    generic, family = better[-1]
+    path = replace(case.path, solid=ZERO, air=Span.exact(generic), sink=None)
     junction = worst(replace(case, path=path)).junction
     if junction is None:
         return None
-    text = f"package {family} (generic {show(theta, 'K/W')}) would bring the junction to {show(junction, '°C')}"
-    return Remedy("next package", text, {"k_per_w": theta, "celsius": junction})
+    text = f"package {family} (generic {show(generic, 'K/W')}) would bring the junction to {show(junction, '°C')}"
+    return Remedy("next package", text, {"k_per_w": generic, "celsius": junction})
