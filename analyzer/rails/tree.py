@@ -98,6 +98,8 @@ class _Tree:
         if load.is_complete:
             return f"load {show_span(load.known, 'A')}"
         gaps = f"{len(load.gaps)} without a current" if len(load.gaps) > 1 else "1 part without a current"
+        if not load.known.high:
+            return f"load not known, {gaps}"
         return f"load at least {show(load.known.nominal, 'A')}, {gaps}"
 
     def _open(self) -> Iterable[str]:

@@ -15,7 +15,7 @@ from analyzer.rails.network import End, Leg, Network, network_at
 from analyzer.rails.power import Power
 from analyzer.rails.reference_text import reference_from_text
 from analyzer.rails.wiring import Trace
-from analyzer.rule import Role, Topology
+from analyzer.rule import LINEARS, Role, Topology
 from analyzer.settings import Settings
 
 Known = Callable[[str], Evidence | None]
@@ -187,9 +187,7 @@ def _by_network(
     sign = trace.channel.sign if not trace.is_inverted else 1
     span = reference.span if sign > 0 or reference.span.nominal < 0 else -reference.span
     current = trace.channel.figures.get("feedback_current")
-    solved = solve_feedback(
-        network, span, current.span if current else ZERO, across=trace.channel.reference_across, drives=drives
-    )
+    solved = solve_feedback(network, span, current.span if current else ZERO, across=_across(trace), drives=drives)
     if solved.volts is None:
         return None, solved.trouble, ()
     against = _against_name(power, trace, solved.volts) if reference.grade is Grade.PRESUMED else ""
@@ -201,6 +199,16 @@ def _by_network(
     if trace.is_inverted:
         evidence = replace(evidence, span=-evidence.span, note=_join(evidence.note, "wired as inverter"))
     return evidence, (), solved.reasons
+
+
+def _across(trace: Trace) -> str:
+    """Side of the divider the reference is across: without a ground pin it can only be the upper one."""
+    channel = trace.channel
+    if channel.topology is Topology.LINEAR_FLOATING or (
+        channel.topology in LINEARS and Role.GROUND not in channel.pins
+    ):
+        return "upper"
+    return channel.reference_across
 
 
 def _against_name(power: Power, trace: Trace, volts: Span) -> str:
