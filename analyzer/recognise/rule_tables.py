@@ -31,8 +31,8 @@ LETTERS = ("U", "IC", "VR", "PS", "REG", "A", "N", "M", "MOD", "T", "TR", "PWR")
 
 DECODES = (*CODE_FORMS, "table", "adjustable")
 FROM_MEMORY = "from memory, unverified"
-_SIGNS = {"positive": 1, "negative": -1}
-_THETAS = ("theta_ja", "theta_jc_top", "theta_jc_bottom", "psi_jt", "psi_jb")
+SIGNS = {"positive": 1, "negative": -1}
+THETAS = ("theta_ja", "theta_jc_top", "theta_jc_bottom", "psi_jt", "psi_jb")
 
 
 class Source:
@@ -118,7 +118,7 @@ def _channels(table: Table, source: Source) -> tuple[ChannelRule, ...]:
 
 def _channel(table: Table, source: Source, base: ChannelRule | None) -> ChannelRule:
     kind = table.choice("kind", [topology.value for topology in Topology])
-    sign = table.choice("sign", _SIGNS)
+    sign = table.choice("sign", SIGNS)
     across = table.choice("reference_across", ("lower", "upper"))
     if kind is None and base is None:
         table.fault("kind", "is missing", f"Choose one of: {', '.join(topology.value for topology in Topology)}.")
@@ -134,7 +134,7 @@ def _channel(table: Table, source: Source, base: ChannelRule | None) -> ChannelR
     return ChannelRule(
         (table.text("name") or "") if base else "",
         topology,
-        _SIGNS[sign] if sign else inherited.sign,
+        SIGNS[sign] if sign else inherited.sign,
         {**inherited.pins, **pins},
         across or inherited.reference_across,
         volts or inherited.volts,
@@ -207,7 +207,7 @@ def _thermal(table: Table, file: str, name: str, above: Source) -> ThermalFigure
     source = Source(table, file, name, above.text, above.verified)
     theta = Dimension.THERMAL_RESISTANCE
     thetas: dict[str, Evidence] = {}
-    for key in _THETAS:
+    for key in THETAS:
         span = table.quantity(key, theta, 0, 2000)
         if span is not None:
             symbol = key.replace("theta_", "θ").replace("psi_", "ψ").replace("_", " ")
