@@ -13,7 +13,7 @@ from analyzer.rails.links import Link
 from analyzer.rails.names import base_name
 from analyzer.rails.network import Network
 from analyzer.rails.power import Power
-from analyzer.rails.supplies import stated_supply, supply_by_name, volts_by_name
+from analyzer.rails.supplies import stated_supply, volts_by_name
 from analyzer.rails.voltages import channel_volts, depends_on, network_of
 from analyzer.rails.wiring import Trace
 from analyzer.rule import LINEARS, PASSAGES, Topology
@@ -114,11 +114,11 @@ class Levels:
         if by_name:
             return by_name[0][1]
         supply = next(
-            (found for net in self.power.names(group) if (found := supply_by_name(net, self.power.rulebook))), None
+            (found for net in self.power.names(group) if (found := self.power.standard_supply(net, group))), None
         )
         pin = self.power.supply_pin_name(group)
         if supply is None and pin:
-            supply = supply_by_name(pin, self.power.rulebook) or volts_by_name(pin)
+            supply = self.power.standard_supply(pin, group) or volts_by_name(pin)
         negotiator = self.power.negotiator(group)
         if supply is not None and negotiator is not None:
             self.negotiated[group] = (

@@ -8,6 +8,7 @@ from dataclasses import dataclass
 from functools import cached_property
 
 from analyzer.circuit import Component, plain_name
+from analyzer.evidence import Evidence
 from analyzer.part import Part
 from analyzer.rails.ground import is_ground_pin
 from analyzer.rails.kinds import Kind
@@ -94,6 +95,24 @@ class Power:
                 for net in channel.nets(role):
                     yield self.mesh.groups.of(net)
 
+    @cached_property
+    def _has_usb_port(self) -> bool:
+        return any(self._is_usb_port(component) for component in self.mesh.circuit.components)
+
+    def _is_usb_port(self, component: Component) -> bool:
+        texts = (component.lib_id, component.value, component.footprint, component.description, component.ref)
+        is_connector = self.mesh.joined.kinds[component.key] is Kind.CONNECTOR
+        return is_connector and any("USB" in text.upper() for text in texts)
+
+    def is_usb(self, group: str) -> bool:
+        """Whether a net called VBUS can be USB's: it is on a USB port, or on no connector of a board that has one."""
+        ports = [component for component, _ in self.sources(group)]
+        return any(map(self._is_usb_port, ports)) or (not ports and self._has_usb_port)
+
+    def standard_supply(self, name: str, group: str) -> Evidence | None:
+        """Voltage of the standard supply that the name of a net or pin of this group suggests."""
+        return supply_by_name(name, self.rulebook, self.is_usb(group))
+
     def names(self, group: str) -> tuple[str, ...]:
         """Names of the nets of a group that a person gave."""
         return tuple(net for net in self.mesh.members.get(group, ()) if self.mesh.circuit.net_by_name[net].is_named)
@@ -115,7 +134,7 @@ class Power:
         several = count > 1
         if supplied and several and (capacitor or self.names(group)):
             return True
-        return capacitor and any(named_volts(net) or supply_by_name(net, self.rulebook) for net in self.names(group))
+        return capacitor and any(named_volts(net) or self.standard_supply(net, group) for net in self.names(group))
 
     @cached_property
     def _entries(self) -> dict[str, bool]:
@@ -204,7 +223,7 @@ class Power:
         nets = self.mesh.members.get(group, (group,))
         if any(matches_net(key, nets) for key in self.stated):
             return True
-        named = any(named_volts(net) or supply_by_name(net, self.rulebook) for net in self.names(group))
+        named = any(named_volts(net) or self.standard_supply(net, group) for net in self.names(group))
         battery = any(self.mesh.joined.kinds[c.key] is Kind.BATTERY for c, _ in self.sources(group))
         return self.is_entry(group) and (named or battery or self.supply_pin_name(group) is not None)
 

@@ -49,12 +49,18 @@ def unused_supplies(settings: Settings, rulebook: Rulebook, nets: Iterable[str])
     return tuple(found)
 
 
-def supply_by_name(name: str, rulebook: Rulebook) -> Evidence | None:
-    """Voltage of the standard supply that a net or connector pin name suggests, graded presumed."""
+def supply_by_name(name: str, rulebook: Rulebook, is_usb: bool) -> Evidence | None:
+    """Voltage of the standard supply that a net or connector pin name suggests, graded presumed.
+
+    Args:
+        name: Name of the net or pin.
+        rulebook: The standard supplies.
+        is_usb: Whether the net can be a USB port's: motor drives call their bus VBUS, too.
+    """
     if is_signal_name(name):
         return None
     rule = _rule_for(base_name(name).upper(), rulebook.supplies)
-    if rule is None:
+    if rule is None or (rule.name.startswith("usb") and not is_usb):
         return None
     return replace(
         rule.volts, grade=Grade.PRESUMED, note=_note(f"suggested by the name {base_name(name)}", rule.volts.note)

@@ -357,3 +357,27 @@ def test_names_that_are_not_ground(name: str) -> None:
     from analyzer.rails.ground import is_ground_name
 
     assert not is_ground_name(name)
+
+
+def test_vbus_on_a_board_without_usb_is_not_5_v() -> None:
+    # motor drives call their bus VBUS; nothing here speaks of USB
+    rails = find(part("J1", "Terminal", {"1 P": "VBUS", "2 N": "GND"}), *load("VBUS"))
+    assert rails.by_name["VBUS"].volts is None
+
+
+def test_signals_of_a_supply_are_no_supply() -> None:
+    rails = find(
+        part("J1", "USB", {"1 VBUS": "VBUS", "2 N": "GND"}),
+        *load("VBUS"),
+        part("R1", "100k", "VBUS VBUS_DET"),
+        part("C9", "1n", "VBUS_DET GND"),
+    )
+    assert "VBUS_DET" not in rails.of_net
+
+
+def test_vbus_on_a_terminal_beside_a_usb_port_is_not_5_v() -> None:
+    port = part("J2", "USB_B", {"1 D+": "DP", "2 GND": "GND"})
+    terminal = part("J1", "Terminal", {"1 P": "VBUS", "2 N": "GND"})
+    assert find(port, terminal, *load("VBUS")).by_name["VBUS"].volts is None
+    # behind an unknown switch, on no connector of its own, the port's name is believed
+    assert volts(find(port, *load("VBUS")), "VBUS").span.nominal == 5.0

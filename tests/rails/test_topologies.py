@@ -417,3 +417,52 @@ def test_reference_tolerance_of_a_rule_is_a_corner() -> None:
     volts = only(rails).vout
     assert volts is not None
     assert [round(corner, 3) for corner in volts.span.corners] == [3.245, 3.328, 3.413]
+
+
+def test_adjustable_part_without_ground_pin_needs_no_rule_for_its_convention() -> None:
+    # 1.25 V between OUT and ADJ, 120 Ω above 56 Ω: 1.25·(1 + 56/120); the other way round it would be 3.93 V
+    chip = part("U1", "XADJ", {"1 ADJ input": "ADJ", "2 VO power_out": "VO", "3 VI power_in": "+5V"})
+    rails = find(
+        recognised(chip, Topology.LINEAR, reference=1.25),
+        J5,
+        part("R1", "120R 1%", "VO ADJ"),
+        part("R2", "56R 1%", "ADJ GND"),
+        COUT,
+    )
+    assert nominal(only(rails)) == pytest.approx(1.8333, abs=1e-4)
+
+
+def test_power_input_comes_before_control_and_bypass_pins() -> None:
+    chip = part(
+        "U1",
+        "XB",
+        {
+            "1 VCC power_in": "VCCBYP",
+            "2 AVIN power_in": "AVIN",
+            "3 PVIN power_in": "+12V",
+            "4 GND power_in": "GND",
+            "5 SW output": "SW",
+        },
+    )
+    rails = find(
+        recognised(chip, Topology.BUCK, volts=5.0, roles={Role.INPUT: "1,2,3", Role.SWITCH: "5", Role.GROUND: "4"}),
+        J12,
+        part("C8", "1u", "VCCBYP GND"),
+        part("R8", "10R", "+12V AVIN"),
+        part("C9", "1u", "AVIN GND"),
+        part("L1", "10u", "SW VO"),
+        COUT,
+    )
+    assert only(rails).input_rail == "+12V"
+
+
+def test_pin_of_another_chip_that_may_drive_the_divider_leaves_it_open() -> None:
+    chip = part(
+        "U1", "XL7", {"1 IN power_in": "+12V", "2 GND power_in": "GND", "3 OUT power_out": "VO", "4 FB input": "FB"}
+    )
+    other = part("U2", "X", {"1 A unspecified": "TRIM", "2 B unspecified": "N2", "3 C unspecified": "N3"})
+    rails = find(
+        recognised(chip, Topology.LINEAR, reference=0.8), J12, other, TOP, BOTTOM, COUT, part("R3", "47k", "TRIM FB")
+    )
+    assert only(rails).vout is None
+    assert any("U2" in why for why in only(rails).why_open)
