@@ -9,6 +9,7 @@ from graphlib import CycleError, TopologicalSorter
 from analyzer.circuit import natural_key
 from analyzer.evidence import Evidence, Grade
 from analyzer.quantity import Span
+from analyzer.rails.followers import follower
 from analyzer.rails.kinds import Kind
 from analyzer.rails.passages import SILICON_DROP, Passage
 from analyzer.rails.power import Power
@@ -29,6 +30,8 @@ class Edge:
         first: References between its own pin and the net where it arrives.
         trace: The channel, for recognised parts.
         drop: What it loses, for passages.
+        gives: Voltage it gives by itself, for discrete series regulators.
+        is_opaque: True where nothing is known of what it gives.
     """
 
     ref: str
@@ -39,6 +42,8 @@ class Edge:
     first: tuple[str, ...] = ()
     trace: Trace | None = None
     drop: Evidence | None = None
+    gives: Evidence | None = None
+    is_opaque: bool = False
 
 
 def part_edges(power: Power, traces: Iterable[Trace]) -> tuple[Edge, ...]:
@@ -97,10 +102,27 @@ def discrete_edges(passages: Iterable[Passage]) -> tuple[Edge, ...]:
     )
 
 
+def follower_edges(power: Power, taken: frozenset[str], fed: frozenset[str]) -> tuple[Edge, ...]:
+    """Feeds through bipolar transistors into supplies that nothing else feeds."""
+    found: list[Edge] = []
+    for component in power.mesh.circuit.components:
+        is_transistor = power.mesh.joined.kinds[component.key] is Kind.TRANSISTOR
+        if not is_transistor or not component.fitted or component.key in taken:
+            continue
+        ends = follower(power, component)
+        if ends is not None and ends[1] not in fed:
+            source, sink, gives = ends
+            found.append(Edge(component.ref, "passage", "", source, sink, gives=gives, is_opaque=gives is None))
+    return tuple(found)
+
+
 def source_edges(power: Power, groups: Iterable[str], fed: frozenset[str]) -> tuple[Edge, ...]:
     """Sources from outside: batteries everywhere; connectors and chips' supply outputs where nothing else feeds."""
     found: list[Edge] = []
     for group in groups:
+        if group not in fed and power.is_stated(group):
+            found.append(Edge("", "supply", "", None, group))
+            continue
         inside = () if group in fed else power.chip_sources(group)
         found += [Edge(component.ref, "supply", "", None, group) for component in inside]
         if inside:

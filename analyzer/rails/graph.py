@@ -13,7 +13,7 @@ from analyzer.findings.base import Finding
 from analyzer.part import Part
 from analyzer.rail import Feed, Rail, Rails, Wiring
 from analyzer.rails.checks import check_dividers, check_feeds, check_names
-from analyzer.rails.feeds import Edge, cut_cycles, discrete_edges, part_edges, source_edges
+from analyzer.rails.feeds import Edge, cut_cycles, discrete_edges, follower_edges, part_edges, source_edges
 from analyzer.rails.ground import ground_nets
 from analyzer.rails.levels import Levels
 from analyzer.rails.links import join, path_between
@@ -41,6 +41,7 @@ def find_rails(circuit: Circuit, parts: tuple[Part, ...], rulebook: Rulebook, se
     ) | frozenset(part.key for part in parts)
     passages = find_passages(power, taken, [(edge.source, edge.sink) for edge in fixed if edge.source])
     through = (*fixed, *discrete_edges(passages))
+    through += follower_edges(power, taken, frozenset(edge.sink for edge in through))
     groups = _rail_groups(power, through)
     sources = source_edges(
         power, sorted(groups - power.ground, key=natural_key), frozenset(edge.sink for edge in through)

@@ -77,7 +77,7 @@ class Levels:
         for edge in self.edges:
             if self._stated(edge.sink) is not None:
                 continue
-            if edge.kind == "passage" and edge.source is not None:
+            if edge.kind == "passage" and edge.source is not None and edge.gives is None:
                 needs[edge.sink].add(edge.source)
             elif edge.trace is not None:
                 needs[edge.sink] |= {g for g in self._needs_of_trace[_key(edge.trace)] if g in needs and g != edge.sink}
@@ -176,7 +176,9 @@ class Levels:
         for edge, volts in given:
             if volts is not None:
                 continue
-            if edge.kind == "passage" and edge.source is not None:
+            if edge.is_opaque:
+                reasons.append(f"{own}: what holds {edge.ref} is not known")
+            elif edge.kind == "passage" and edge.source is not None:
                 reasons.extend(self._why.get(edge.source, f"{own}: voltage behind {edge.ref} not known").split("; "))
             elif edge.trace is not None:
                 reasons.extend(f"{edge.ref}: {text}" for text in self.outputs[_key(edge.trace)][1][:1])
@@ -197,7 +199,9 @@ class Levels:
             if volts is not None and edge.trace.channel.topology is Topology.CHARGER:
                 return _battery(edge.trace, volts)
             return volts
-        if edge.source is None:
+        if edge.gives is not None:
+            return edge.gives
+        if edge.source is None or edge.is_opaque:
             return None
         source = self.of.get(edge.source)
         if source is None and (edge.sink, edge.source) in self._cut:

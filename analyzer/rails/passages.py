@@ -11,7 +11,6 @@ from analyzer.circuit import Component, natural_key, plain_name
 from analyzer.evidence import Evidence, Grade
 from analyzer.quantity import Span
 from analyzer.rails.kinds import Kind, is_schottky, symbol_of
-from analyzer.rails.names import named_volts
 from analyzer.rails.power import Power
 from analyzer.rails.wiring import diode_end
 
@@ -176,17 +175,12 @@ class _State:
 
     def _diode(self, candidate: _Candidate, sure: set[str], fed: set[str]) -> tuple[str, str] | None:
         source, sink = candidate.one, candidate.other
-        if any(_is_negative(self.power, group) for group in (source, sink)):
+        if any(self.power.is_named_negative(group) for group in (source, sink)):
             source, sink = sink, source
         if source not in fed or sink not in self.power.rails:
             return None
         # into a rail that a regulator makes, only a sure source counts: else it is a clamp at a connector
         return (source, sink) if sink not in self.made or source in sure else None
-
-
-def _is_negative(power: Power, group: str) -> bool:
-    volts = [named for net in power.names(group) if (named := named_volts(net))]
-    return bool(volts) and all(item.volts < 0 for item in volts)
 
 
 def _downstream(start: str, goal: str, edges: tuple[tuple[str, str], ...]) -> bool:

@@ -118,8 +118,7 @@ class Power:
         return tuple(net for net in self.mesh.members.get(group, ()) if self.mesh.circuit.net_by_name[net].is_named)
 
     def _looks_like_supply(self, group: str) -> bool:
-        nets = self.mesh.members[group]
-        if any(matches_net(key, nets) for key in self.stated):
+        if self.is_stated(group):
             return True
         capacitor = supplied = several = False
         count = 0
@@ -218,10 +217,19 @@ class Power:
         )
         return tuple({component.key: component for component in found}.values())
 
+    def is_named_negative(self, group: str) -> bool:
+        """Whether the names of a group state a negative voltage."""
+        volts = [named.volts for net in self.names(group) if (named := named_volts(net))]
+        return bool(volts) and max(volts) < 0
+
+    def is_stated(self, group: str) -> bool:
+        """Whether the settings give this group a voltage."""
+        nets = self.mesh.members.get(group, (group,))
+        return any(matches_net(key, nets) for key in self.stated)
+
     def is_sure_source(self, group: str) -> bool:
         """Whether what comes in here is a supply by its name, by a connector's pin name, or because it is stated."""
-        nets = self.mesh.members.get(group, (group,))
-        if any(matches_net(key, nets) for key in self.stated):
+        if self.is_stated(group):
             return True
         named = any(named_volts(net) or self.standard_supply(net, group) for net in self.names(group))
         battery = any(self.mesh.joined.kinds[c.key] is Kind.BATTERY for c, _ in self.sources(group))

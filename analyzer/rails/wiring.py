@@ -69,6 +69,8 @@ def trace(power: Power, part: Part, channel: Channel) -> Trace:
     )
     if channel.topology is Topology.SHUNT:
         return _shunt(power, found)
+    if channel.topology is Topology.SERIES_DIODE:
+        return _series_diode(power, found)
     if channel.topology in SWITCHERS and channel.topology is not Topology.MODULE:
         found = _switcher(power, found)
     else:
@@ -304,6 +306,16 @@ def _by_feedback(power: Power, found: Trace) -> Trace:
     if len(candidates) == 1:
         return replace(found, output=power.mesh.members[candidates[0]][0])
     return found
+
+
+def _series_diode(power: Power, found: Trace) -> Trace:
+    """A rectifier with a rule: on a negative rail the supplying side is its cathode."""
+    output = _output_pin(power, found)
+    of = power.mesh.groups.of
+    ends = [net for net in (*found.inputs[:1], output) if net is not None]
+    if len(ends) == 2 and any(power.is_named_negative(of(net)) for net in ends):
+        return replace(found, inputs=(ends[1],), output=ends[0])
+    return replace(found, output=output)
 
 
 def _shunt(power: Power, found: Trace) -> Trace:

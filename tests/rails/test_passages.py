@@ -315,3 +315,53 @@ def test_usb_port_with_power_delivery_is_not_taken_as_5_v() -> None:
     stated = Evidence("supply", Span(5.0, 9.0, 9.45), "V", "heatledger.toml [supplies] VBUS", Grade.STATED)
     rails = find(port, sink, *consumer("VBUS"), settings=Settings(supplies={"VBUS": stated}))
     assert corners(rails, "VBUS") == (5.0, 9.0, 9.45)
+
+
+def bipolar(base: str, collector: str, emitter: str) -> Component:
+    return part("Q1", "NPN", {"1 B": base, "2 C": collector, "3 E": emitter}, lib_id="Device:Q_NPN_BCE")
+
+
+def test_transistor_on_a_zener_is_a_discrete_regulator() -> None:
+    zener = part("D1", "BZX84C5V6", {"1 K": "BASE", "2 A": "GND"}, lib_id="Device:D_Zener")
+    rails = find(
+        part("J1", "DC", {"1 +": "+12V", "2 -": "GND"}),
+        bipolar("BASE", "+12V", "VREG"),
+        part("R1", "1k", "+12V BASE"),
+        zener,
+        *consumer("VREG"),
+    )
+    assert feeds(rails, "VREG") == [("Q1", "passage", "+12V")]
+    # 5.6 V ±5 % less 0.5 to 0.9 V
+    assert corners(rails, "VREG") == pytest.approx((4.42, 4.9, 5.38))
+    assert rails.by_name["VREG"].volts.grade is Grade.PRESUMED  # type: ignore[union-attr]
+
+
+def test_transistor_held_by_something_unknown_feeds_but_gives_no_voltage() -> None:
+    rails = find(part("J1", "DC", {"1 +": "+12V", "2 -": "GND"}), bipolar("IO_U9", "+12V", "VREG"), *consumer("VREG"))
+    assert feeds(rails, "VREG") == [("Q1", "passage", "+12V")]
+    assert corners(rails, "VREG") is None
+    assert "Q1" in rails.by_name["VREG"].why_open
+
+
+def test_low_side_transistor_is_no_feed() -> None:
+    rails = find(part("J1", "DC", {"1 +": "+12V", "2 -": "GND"}), bipolar("IO_U9", "LOADX", "GND"), *consumer("+12V"))
+    assert not [feed for rail in rails.rails for feed in rail.feeds if feed.ref == "Q1"]
+
+
+def test_stated_supply_is_a_feed_of_its_own() -> None:
+    rails = find(*consumer("VRAW"), settings=Settings(supplies={"VRAW": figure(7.0)}))
+    assert feeds(rails, "VRAW") == [("", "supply", None)]
+    assert corners(rails, "VRAW") == (7.0, 7.0, 7.0)
+
+
+def test_recognised_diode_on_a_negative_rail_feeds_from_its_cathode() -> None:
+    diode = part("D1", "SS14", {"1 OUT": "Net-(J1-1)", "2 IN": "-12V"}, lib_id=SCHOTTKY)
+    rails = find(
+        part("J1", "Conn", {"1 Pin_1": "Net-(J1-1)", "2 Pin_2": "GND"}),
+        diode,
+        *consumer("-12V"),
+        parts=(recognised(diode, Topology.SERIES_DIODE, figures={"forward_drop": figure(Span(0.3, 0.35, 0.4))}),),
+        settings=Settings(supplies={"Net-(J1-1)": figure(-12.0)}),
+    )
+    assert feeds(rails, "-12V") == [("D1", "passage", "Net-(J1-1)")]
+    assert corners(rails, "-12V") == pytest.approx((-11.7, -11.65, -11.6))
