@@ -12,8 +12,8 @@ from analyzer.rule import LINEARS
 MOST_AMPS = 1000.0
 """No part asked about carries more."""
 
-_PASSES = 80
-_AGREEMENT = 1e-9
+_PASSES = 200
+_AGREEMENT = 1e-13
 
 
 def junction_at(case: Case, amps: float) -> float:

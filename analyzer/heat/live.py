@@ -6,6 +6,7 @@ coefficients are taken from the engine's own losses at the worst corner and chec
     closed_form    1 if the formula holds, else 0: then the cells keep the engine's values
     k0, k1, k2     [W], [W/A], [W/A²]
     load           load of the first channel at the worst corner [A]
+    i0, i1, i2     coefficients of the current taken from the input rail, [A], [A/A], [A/A²]
     theta_solid    part of θ that altitude does not touch [K/W]
     theta_air      part that it does, at sea level [K/W]
     exponent_free  1 if the entry's own surroundings are the board's (no neighbour, no measured spot)

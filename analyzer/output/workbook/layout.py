@@ -1,0 +1,149 @@
+"""Formats, column lists and page set-up shared by all sheets. Text is always written as text, never as a formula."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+PAPER_A4 = 9
+LONGEST_CELL = 32_000
+"""Characters in one cell; the format allows 32,767."""
+
+HEAD_ROW = 3
+"""Row (from 0) of the column heads; title and remarks stand above."""
+
+
+@dataclass(frozen=True, slots=True)
+class Column:
+    """One column of a sheet: head with its unit, width [characters], and the format of its cells."""
+
+    head: str
+    width: float = 12
+    form: str = "text"
+
+
+FORMS: Mapping[str, Mapping[str, Any]] = {
+    "text": {"valign": "top"},
+    "wrap": {"valign": "top", "text_wrap": True},
+    "number": {"num_format": "0.000", "valign": "top"},
+    "volts": {"num_format": "0.000", "valign": "top"},
+    "amps": {"num_format": "0.0000", "valign": "top"},
+    "watts": {"num_format": "0.0000", "valign": "top"},
+    "kelvin": {"num_format": "0.0", "valign": "top"},
+    "count": {"num_format": "0", "valign": "top"},
+    "percent": {"num_format": "0.0%", "valign": "top"},
+    "plain": {"num_format": "General", "valign": "top"},
+    # the look of spreadsheets' own Input style, by which people know where to type
+    "input": {"bg_color": "#FFCC99", "font_color": "#3F3F76", "border": 1, "border_color": "#7F7F7F", "locked": False},
+    "head": {"bold": True, "text_wrap": True, "valign": "top", "bottom": 2, "bg_color": "#E4E7EB"},
+    "title": {"bold": True, "font_size": 14},
+    "remark": {"italic": True, "font_color": "#444444"},
+    "label": {"bold": True, "valign": "top"},
+    # verdicts: the looks of Bad, Neutral, Note and Good, beside the word itself
+    "over": {"bg_color": "#FFC7CE", "font_color": "#9C0006", "bold": True},
+    "tight": {"bg_color": "#FFEB9C", "font_color": "#7F6000"},
+    "open": {"bg_color": "#DDEBF7", "font_color": "#1F4E78", "italic": True},
+    "clear": {"bg_color": "#C6EFCE", "font_color": "#006100"},
+}
+
+
+class Book:
+    """An XlsxWriter workbook with the formats of `FORMS`, made once each."""
+
+    def __init__(self, book: Any, footer: str) -> None:
+        self.book = book
+        self.footer = footer
+        self._forms: dict[str, Any] = {}
+
+    def form(self, name: str) -> Any:
+        """The format of this name."""
+        if name not in self._forms:
+            self._forms[name] = self.book.add_format(dict(FORMS[name]))
+        return self._forms[name]
+
+    def sheet(self, name: str, title: str, remark: str, columns: Sequence[Column], *, freeze: int = 1) -> Sheet:
+        """A sheet with title, remark, heads, frozen panes and page set-up."""
+        sheet = self.book.add_worksheet(name)
+        sheet.set_landscape()
+        sheet.set_paper(PAPER_A4)
+        sheet.fit_to_pages(1, 0)
+        sheet.set_margins(left=0.4, right=0.4, top=0.5, bottom=0.6)
+        sheet.set_footer(f"&L{self.footer}&C&A&RPage &P of &N")
+        sheet.write_string(0, 0, title, self.form("title"))
+        sheet.write_string(1, 0, remark, self.form("remark"))
+        if columns:
+            sheet.repeat_rows(HEAD_ROW)
+            sheet.freeze_panes(HEAD_ROW + 1, freeze)
+        for number, column in enumerate(columns):
+            sheet.set_column(number, number, column.width)
+            sheet.write_string(HEAD_ROW, number, column.head, self.form("head"))
+        return Sheet(self, sheet, columns)
+
+
+class Sheet:
+    """One worksheet: cells by row and column, in the format of the column."""
+
+    def __init__(self, book: Book, sheet: Any, columns: Sequence[Column]) -> None:
+        self.book = book
+        self.raw = sheet
+        self.columns = columns
+
+    def put(self, row: int, column: int, value: object, form: str | None = None) -> None:
+        """A number as number, anything else as text; None and "" leave the cell empty."""
+        cell = self.book.form(form or self.columns[column].form)
+        if value is None or value == "":
+            if form == "input":
+                self.raw.write_blank(row, column, None, cell)
+            return
+        if isinstance(value, (int, float)) and not isinstance(value, bool):
+            self.raw.write_number(row, column, value, cell)
+        else:
+            self.raw.write_string(row, column, plain(str(value)), cell)
+
+    def row(self, row: int, values: Sequence[object]) -> None:
+        """A whole row from the first column on."""
+        for column, value in enumerate(values):
+            self.put(row, column, value)
+
+    def formula(self, row: int, column: int, formula: str, result: object) -> None:
+        """A formula with the engine's value as its stored result."""
+        stored = "" if result is None else result
+        self.raw.write_formula(row, column, formula, self.book.form(self.columns[column].form), stored)
+
+    def filter(self, last_row: int) -> None:
+        """An auto-filter over the heads and the rows down to `last_row`."""
+        self.raw.autofilter(HEAD_ROW, 0, max(last_row, HEAD_ROW + 1), len(self.columns) - 1)
+
+    def verdict_colours(self, first: int, last: int, column: int) -> None:
+        """Colours that follow the verdict's word, whatever becomes of it by editing."""
+        for word in ("over", "tight", "open", "clear"):
+            rule = {"type": "cell", "criteria": "==", "value": f'"{word}"', "format": self.book.form(word)}
+            self.raw.conditional_format(first, column, max(first, last), column, rule)
+
+
+def plain(text: str) -> str:
+    """Text that a cell can hold: control characters made visible, cut to the longest a cell may be."""
+    clean = "".join(_visible(c) for c in text)
+    return clean if len(clean) <= LONGEST_CELL else clean[: LONGEST_CELL - 1] + "…"
+
+
+def _visible(c: str) -> str:
+    code = ord(c)
+    if (
+        c == "\n"
+        or 0x20 <= code < 0x7F
+        or (code > 0x9F and not 0xD800 <= code <= 0xDFFF and code not in (0xFFFE, 0xFFFF))
+    ):
+        return c
+    # the Unicode pictures of control characters; what has none becomes the replacement character
+    return chr(0x2400 + code) if code < 0x20 else "\ufffd"
+
+
+def cell(row: int, column: int) -> str:
+    """An absolute reference, $B$5."""
+    name, number = "", column + 1
+    while number:
+        number, rest = divmod(number - 1, 26)
+        name = chr(65 + rest) + name
+    return f"${name}${row + 1}"

@@ -1,0 +1,82 @@
+"""Which row of which sheet holds what, so that formulas on one sheet can point at another."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+
+from analyzer.evidence import Evidence
+from analyzer.ledger import Entry, Ledger
+from analyzer.load import Draw, Gap
+from analyzer.output.workbook.layout import HEAD_ROW
+
+FIRST_ROW = HEAD_ROW + 1
+
+
+@dataclass(frozen=True, slots=True)
+class Line:
+    """One row of the Currents sheet.
+
+    Attributes:
+        rail: Its rail.
+        ref, key, value, sheet: The part.
+        kind: "stated", "ruled", "computed", "regulator" or "gap".
+        amps: The current as evidence, None for a gap.
+        gap: The gap, None for a draw.
+        below: Entry whose input current this is, where it can be followed live.
+    """
+
+    rail: str
+    ref: str
+    key: str
+    value: str
+    sheet: str
+    kind: str
+    amps: Evidence | None
+    gap: Gap | None
+    below: Entry | None = None
+
+
+@dataclass(frozen=True)
+class Plan:
+    """Rows of the Rails, Currents and Regulators sheets."""
+
+    lines: tuple[Line, ...]
+    rail_rows: Mapping[str, int]
+    blocks: Mapping[str, tuple[int, int]]
+    """Rail → first and last row of its lines on the Currents sheet."""
+    entry_rows: Mapping[str, int]
+
+
+def plan(ledger: Ledger) -> Plan:
+    """The plan for a ledger: rails in tree order, each rail's lines together, entries worst first."""
+    values = {entry.key: entry for entry in ledger.entries}
+    lines: list[Line] = []
+    blocks: dict[str, tuple[int, int]] = {}
+    for rail in ledger.rails:
+        load = ledger.loads.get(rail.name)
+        mine = []
+        if load is not None:
+            mine += [_draw_line(draw, values) for draw in load.draws]
+            mine += [_gap_line(gap) for gap in load.gaps]
+        if mine:
+            blocks[rail.name] = (FIRST_ROW + len(lines), FIRST_ROW + len(lines) + len(mine) - 1)
+        lines += mine
+    return Plan(
+        tuple(lines),
+        {rail.name: FIRST_ROW + number for number, rail in enumerate(ledger.rails)},
+        blocks,
+        {entry.key: FIRST_ROW + number for number, entry in enumerate(ledger.entries)},
+    )
+
+
+def _draw_line(draw: Draw, entries: Mapping[str, Entry]) -> Line:
+    entry = entries.get(draw.key) if draw.kind == "regulator" else None
+    followed = entry if entry is not None and "i1" in entry.live else None
+    value = entry.value if entry else ""
+    sheet = entry.sheet if entry else ""
+    return Line(draw.rail, draw.ref, draw.key, value, sheet, draw.kind, draw.amps, None, followed)
+
+
+def _gap_line(gap: Gap) -> Line:
+    return Line(gap.rail, gap.ref, gap.key, gap.value, gap.sheet, "gap", None, gap)

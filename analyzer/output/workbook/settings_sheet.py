@@ -1,0 +1,84 @@
+"""The Settings sheet: surroundings and margins as named input cells that every formula reads."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from analyzer.heat.altitude import EXPONENTS, multiplier
+from analyzer.ledger import Ledger
+from analyzer.output.workbook.layout import HEAD_ROW, Book, Column
+from analyzer.settings import Settings
+from analyzer.wording import show_span
+
+COLUMNS = (
+    Column("Setting", 34),
+    Column("Value", 12, "plain"),
+    Column("Unit", 9),
+    Column("As audited", 12, "plain"),
+    Column("Source", 44, "wrap"),
+    Column("Grade", 10),
+    Column("Name in formulas", 20),
+)
+
+
+@dataclass(frozen=True, slots=True)
+class Input:
+    """One input cell: name in formulas, meaning, value, unit, source and grade."""
+
+    name: str
+    meaning: str
+    value: float | None
+    unit: str
+    source: str
+    grade: str
+
+
+def inputs(settings: Settings) -> Iterator[Input]:
+    """Every input cell, in the order of the sheet."""
+    site, policy = settings.site, settings.policy
+    for name, meaning, evidence, end in (
+        ("Ambient_nominal", "Ambient, nominal", site.ambient, "nominal"),
+        ("Ambient_high", "Ambient, highest", site.ambient, "high"),
+        ("Rise_nominal", "Enclosure rise, nominal", site.enclosure_rise, "nominal"),
+        ("Rise_high", "Enclosure rise, highest", site.enclosure_rise, "high"),
+        ("Altitude_high", "Altitude, highest", site.altitude, "high"),
+    ):
+        value = getattr(evidence.span, end)
+        yield Input(name, meaning, value, evidence.unit, evidence.source, evidence.grade.value)
+    exponent = site.altitude_exponent if site.altitude_exponent is not None else EXPONENTS[site.cooling]
+    yield Input(
+        "Altitude_exponent", f"Altitude exponent ({site.cooling} cooling)", exponent, "1", "see Evidence", "ruled"
+    )
+    source = f"policy {policy.name}: {policy.source}"
+    grade = "ruled" if policy.verified else "presumed"
+    yield Input("Margin_over", "Policy limit: rating less", policy.junction_over, "K", source, grade)
+    yield Input("Margin_tight", "Tight above: rating less", policy.junction_tight, "K", source, grade)
+    yield Input("Policy_factor", "Policy limit: fraction of rating", policy.junction_factor or 1.0, "1", source, grade)
+    cap = policy.junction_cap if policy.junction_cap is not None else 1000.0
+    yield Input("Policy_cap", "Policy limit: at most", cap, "°C", source, grade)
+
+
+def write(book: Book, ledger: Ledger, settings: Settings) -> None:
+    """Write the sheet and define its names."""
+    remark = "Coloured cells may be edited: dissipation, junction, margin and verdict follow. A re-run takes them over."
+    sheet = book.sheet("Settings", "Settings", remark, COLUMNS)
+    row = HEAD_ROW
+    for one in inputs(settings):
+        row += 1
+        sheet.row(row, (one.meaning, None, one.unit, one.value, one.source, one.grade, one.name))
+        sheet.put(row, 1, one.value, "input")
+        book.book.define_name(one.name, f"=Settings!$B${row + 1}")
+    row += 1
+    exponent = next(one.value for one in inputs(settings) if one.name == "Altitude_exponent")
+    factor = multiplier(settings.site.altitude.span.high, exponent or 0.0)
+    sheet.row(row, ("Altitude multiplier", None, "1", factor, "US Standard Atmosphere 1976 pressure ratio", "derived"))
+    formula = "=MAX(1,POWER(POWER(1-0.0000225577*Altitude_high,5.25588),-Altitude_exponent))"
+    sheet.formula(row, 1, formula, factor)
+    sheet.put(row, 6, "Thin_air")
+    book.book.define_name("Thin_air", f"=Settings!$B${row + 1}")
+    row += 2
+    for one in ledger.settings:
+        sheet.row(row, (one.quantity, None, one.unit, None, one.source, one.grade.value))
+        sheet.put(row, 1, show_span(one.span, one.unit), "text")
+        row += 1
