@@ -88,6 +88,12 @@ SUPPLY_WITHOUT_NET = FindingKind(
     "A supply in the settings names a net or a standard supply that does not exist.",
     "Correct the name in `[supplies]`.",
 )
+LINK_WITHOUT_PART = FindingKind(
+    "link-without-part",
+    Weight.OPEN,
+    "The settings say whether a part joins its nets, but no part has that reference.",
+    "Correct the reference in `[links]`.",
+)
 BYPASSED = FindingKind(
     "bypassed",
     Weight.NOTE,

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from graphlib import CycleError, TopologicalSorter
 
-from analyzer.circuit import natural_key
+from analyzer.circuit import natural_key, plain_name
 from analyzer.evidence import Evidence, Grade
 from analyzer.quantity import Span
 from analyzer.rails.followers import follower
@@ -113,6 +114,40 @@ def follower_edges(power: Power, taken: frozenset[str], fed: frozenset[str]) -> 
         if ends is not None and ends[1] not in fed:
             source, sink, gives = ends
             found.append(Edge(component.ref, "passage", "", source, sink, gives=gives, is_opaque=gives is None))
+    return tuple(found)
+
+
+_SWITCHES = re.compile(
+    r"(?:load|power|limit(?:ed|ing)?|high[- ]side|USB)[- ]switch|ideal diode|e-?fuse|hot[- ]?swap|power distribution"
+    r"|current[- ]limit|over-?voltage protect|power multiplexer|power mux",
+    re.IGNORECASE,
+)
+_IN_PIN = re.compile(r"V?IN[A-D1-4]?|V_?IN")
+_OUT_PIN = re.compile(r"V?OUT[A-D1-4]?|V_?OUT")
+
+
+def switch_edges(power: Power, taken: frozenset[str], fed: frozenset[str]) -> tuple[Edge, ...]:
+    """Feeds through chips that their own description calls a switch, into supplies that nothing else feeds."""
+    of = power.mesh.groups.of
+    found: list[Edge] = []
+    for component in power.mesh.circuit.components:
+        is_chip = power.mesh.joined.kinds[component.key] is Kind.CHIP
+        if not is_chip or not component.fitted or component.key in taken or not _SWITCHES.search(component.description):
+            continue
+        ins = {of(pin.net) for pin in component.pins if _IN_PIN.fullmatch(plain_name(pin.name).upper())} - power.ground
+        outs = {
+            of(pin.net) for pin in component.pins if _OUT_PIN.fullmatch(plain_name(pin.name).upper())
+        } - power.ground
+        if len(ins) != 1:
+            continue
+        (source,) = ins
+        for sink in sorted(outs - fed - ins, key=natural_key):
+            if sink in power.rails or power.is_entry(sink):
+                note = "drop not stated, common practice"
+                drop = Evidence(
+                    f"drop of {component.ref}", SWITCH_DROP, "V", "presumed for a switch", Grade.PRESUMED, note=note
+                )
+                found.append(Edge(component.ref, "passage", "", source, sink, drop=drop))
     return tuple(found)
 
 

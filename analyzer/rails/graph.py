@@ -13,7 +13,15 @@ from analyzer.findings.base import Finding
 from analyzer.part import Part
 from analyzer.rail import Feed, Rail, Rails, Wiring
 from analyzer.rails.checks import check_dividers, check_feeds, check_names
-from analyzer.rails.feeds import Edge, cut_cycles, discrete_edges, follower_edges, part_edges, source_edges
+from analyzer.rails.feeds import (
+    Edge,
+    cut_cycles,
+    discrete_edges,
+    follower_edges,
+    part_edges,
+    source_edges,
+    switch_edges,
+)
 from analyzer.rails.ground import ground_nets
 from analyzer.rails.levels import Levels
 from analyzer.rails.links import join, path_between
@@ -41,7 +49,8 @@ def find_rails(circuit: Circuit, parts: tuple[Part, ...], rulebook: Rulebook, se
     ) | frozenset(part.key for part in parts)
     passages = find_passages(power, taken, [(edge.source, edge.sink) for edge in fixed if edge.source])
     through = (*fixed, *discrete_edges(passages))
-    through += follower_edges(power, taken, frozenset(edge.sink for edge in through))
+    for find_more in (follower_edges, switch_edges):
+        through += find_more(power, taken, frozenset(edge.sink for edge in through))
     groups = _rail_groups(power, through)
     sources = source_edges(
         power, sorted(groups - power.ground, key=natural_key), frozenset(edge.sink for edge in through)
@@ -156,6 +165,9 @@ class Board:
             yield kinds.CIRCULAR_FEED.found(steps[0], f"feeds run in a circle: {text}")
         for ref in self.power.mesh.joined.unpaired:
             yield kinds.CHOKE_UNPAIRED.found(ref, f"{ref}: which pins are one winding is not known")
+        for ref in sorted(settings.links, key=natural_key):
+            if ref not in self.power.mesh.circuit.by_ref:
+                yield kinds.LINK_WITHOUT_PART.found(ref, f"link '{ref}': no part has this reference", settings.file)
         nets = [net.name for net in self.power.mesh.circuit.nets]
         for key, why in unused_supplies(settings, self.power.rulebook, nets):
             yield kinds.SUPPLY_WITHOUT_NET.found(key, f"supply '{key}': {why}", settings.file)

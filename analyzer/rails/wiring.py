@@ -7,9 +7,10 @@ from collections.abc import Iterator
 from dataclasses import dataclass, field, replace
 
 from analyzer.circuit import Component, Pin, plain_name
+from analyzer.component_value import component_value
 from analyzer.evidence import Evidence, Grade
 from analyzer.part import Channel, Part
-from analyzer.quantity import Span
+from analyzer.quantity import Dimension, Span
 from analyzer.rail import Outside
 from analyzer.rails.kinds import Kind, value_of
 from analyzer.rails.network import End, network_at
@@ -182,16 +183,20 @@ def diode_end(pin: Pin) -> str:
 
 def _outside_inductor(component: Component) -> Outside:
     value = value_of(component)
+    ohms, source = (value.dcr, f"Value '{component.value}'") if value is not None else (None, "")
+    for name in sorted(component.fields):
+        if ohms is None and _DCR_FIELD.fullmatch(name.strip()):
+            stated = component_value(component.fields[name])
+            if stated is not None and stated.dimension is Dimension.RESISTANCE:
+                ohms, source = stated.magnitude, f"field {name} '{component.fields[name]}'"
     resistance = None
-    if value is not None and value.dcr is not None:
-        resistance = Evidence(
-            "inductor resistance",
-            Span.exact(value.dcr),
-            "Ω",
-            f"{component.ref} Value '{component.value}'",
-            Grade.DERIVED,
-        )
+    if ohms is not None:
+        where = f"{component.ref} {source}"
+        resistance = Evidence("inductor resistance", Span.exact(ohms), "Ω", where, Grade.DERIVED)
     return Outside(component.ref, "inductor", resistance)
+
+
+_DCR_FIELD = re.compile(r"DCR(?:\s*\(?(?:max|typ)\)?)?|DC[ _-]?R(?:esistance)?", re.IGNORECASE)
 
 
 def _switcher(power: Power, found: Trace) -> Trace:

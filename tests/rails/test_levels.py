@@ -381,3 +381,8 @@ def test_vbus_on_a_terminal_beside_a_usb_port_is_not_5_v() -> None:
     assert find(port, terminal, *load("VBUS")).by_name["VBUS"].volts is None
     # behind an unknown switch, on no connector of its own, the port's name is believed
     assert volts(find(port, *load("VBUS")), "VBUS").span.nominal == 5.0
+
+
+def test_link_for_a_part_that_does_not_exist() -> None:
+    rails = find(IN5, *load("+5V"), settings=Settings(links={"R77": True}))
+    assert named(rails, "link-without-part") == ["R77"]

@@ -365,3 +365,15 @@ def test_recognised_diode_on_a_negative_rail_feeds_from_its_cathode() -> None:
     )
     assert feeds(rails, "-12V") == [("D1", "passage", "Net-(J1-1)")]
     assert corners(rails, "-12V") == pytest.approx((-11.7, -11.65, -11.6))
+
+
+def test_unrecognised_switch_chip_feeds_by_its_own_description() -> None:
+    chip = part(
+        "U15",
+        "XPD3",
+        {"1 EN input": "VUSB", "2 GND power_in": "GND", "3 IN power_in": "VUSB", "4 OUT passive": "+5V"},
+        description="Current Limit Switch for USB host port",
+    )
+    rails = find(part("J1", "USB", {"1 VBUS": "VUSB", "2 G": "GND"}), chip, *consumer("+5V"))
+    assert feeds(rails, "+5V") == [("U15", "passage", "VUSB")]
+    assert corners(rails, "+5V") == pytest.approx((4.55, 4.95, 5.25))

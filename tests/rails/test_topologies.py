@@ -466,3 +466,14 @@ def test_pin_of_another_chip_that_may_drive_the_divider_leaves_it_open() -> None
     )
     assert only(rails).vout is None
     assert any("U2" in why for why in only(rails).why_open)
+
+
+@pytest.mark.parametrize(
+    ("value", "fields"), [("4u7 DCR=20mR", {}), ("4u7", {"DCR": "20mΩ"}), ("4u7", {"DCR max": "0.02R"})]
+)
+def test_inductor_resistance_from_value_or_field(value: str, fields: dict[str, str]) -> None:
+    chip = part("U1", "XB", {"1 VIN power_in": "+12V", "2 GND power_in": "GND", "3 SW output": "SW"})
+    coil = part("L1", value, "SW VO", fields=fields)
+    (outside,) = only(find(recognised(chip, Topology.BUCK, volts=5.0), J12, coil, COUT)).outside
+    assert outside.resistance is not None
+    assert outside.resistance.span.nominal == pytest.approx(0.02)
