@@ -30,12 +30,12 @@ def join_buses(wired: list[WiredSheet], netting: Netting) -> None:
             _name_members(label, each.sheet, netting, tables[joins.root(label.line)])
             if label.kind == "hierarchical":
                 inside[each.sheet.number, label.text].append((label, each.sheet))
-    labelled = set(tables)
     for each in wired:
-        for pin in each.bus_pins.values():
+        # a bus line takes its names from its labels; a bare one from the first of its sheet pins, by name
+        bare = [pin for pin in each.bus_pins.values() if joins.root(pin.line) not in tables]
+        for pin in sorted(bare, key=lambda pin: pin.text):
             line = joins.root(pin.line)
-            # a bus line takes its names from its labels, and only a bare one from its sheet pins
-            if line not in labelled:
+            if line not in tables:
                 _name_members(pin, each.sheet, netting, tables[line])
     for each in wired:
         for (position, text), pin in each.bus_pins.items():

@@ -42,4 +42,7 @@ def _join_by_name(each: WiredSheet, netting: Netting, report: Report) -> None:
         if len(nets) == 1:
             netting.joins.join(nets.pop(), netting.local_node(each.sheet, name))
             message = f"sheet pin '{name}' is not wired to the net that also bears its name; KiCad joins them"
-            report.add(kinds.SHEET_PIN_LOOSE, name, message, each.sheet.drawing.place(None, each.sheet.name))
+        else:
+            # which one depends on KiCad's own order; none is the reading of the drawing
+            message = f"{len(nets)} sheet pins '{name}' are not wired to the net of that name; KiCad joins one of them"
+        report.add(kinds.SHEET_PIN_LOOSE, name, message, each.sheet.drawing.place(None, each.sheet.name))

@@ -186,10 +186,12 @@ def _attach(
     netting: Netting,
     read_bus: ReadBus,
 ) -> bool:
-    """Give a label's name to what lies under it; False if that is no wire, pin or bus."""
+    """Give a label's name to what lies under it; False if that is no wire and no bus."""
     bus = read_bus(text, sheet, label.at)
     if bus is not None:
         line = buses.tap(label.at)
+        if line is None and label.kind == "local":
+            return False  # off its bus it names nothing
         wired.bus_labels.append(BusLabel(text, label.kind, bus, netting.joins.new() if line is None else line))
         return True
     touches = bool(wires.index.under(label.at))
