@@ -176,7 +176,9 @@ class Levels:
         for edge, volts in given:
             if volts is not None:
                 continue
-            if edge.is_opaque:
+            if edge.kind == "passage" and edge.source is None:
+                reasons.append(f"{own}: no input of {edge.ref} found")
+            elif edge.is_opaque:
                 reasons.append(f"{own}: what holds {edge.ref} is not known")
             elif edge.kind == "passage" and edge.source is not None:
                 reasons.extend(self._why.get(edge.source, f"{own}: voltage behind {edge.ref} not known").split("; "))

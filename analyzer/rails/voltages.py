@@ -177,12 +177,15 @@ def _by_network(
         if leg.end is End.RAIL and levels:
             drives[group] = Drive(levels[0].span, "")
         elif levels:
-            highest = max(levels, key=lambda level: level.span.high)
-            top = highest.span.high
+            low = min(0.0, *(level.span.low for level in levels))
+            high = max(0.0, *(level.span.high for level in levels))
+            middle = (
+                min(0.0, *(level.span.nominal for level in levels))
+                + max(0.0, *(level.span.nominal for level in levels))
+            ) / 2
             name = _driver_name(power, leg)
             drives[group] = Drive(
-                Span(min(0.0, *(level.span.low for level in levels)), highest.span.nominal / 2, top),
-                f"{name} drives the feedback network with 0 to {top:.3g} V",
+                Span(low, middle, high), f"{name} drives the feedback network with {low:.3g} to {high:.3g} V"
             )
     sign = trace.channel.sign if not trace.is_inverted else 1
     span = reference.span if sign > 0 or reference.span.nominal < 0 else -reference.span

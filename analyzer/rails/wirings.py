@@ -55,8 +55,10 @@ def _vin(
     statement = settings.parts.get(one.part.ref)
     if statement is not None and statement.vin is not None:
         return statement.vin, ()
-    if one.is_off or group is None:
+    if one.is_off:
         return None, ()
+    if group is None:
+        return None, () if one.trouble else ("no input found behind its pins",)
     if one.channel.topology is Topology.POWER_MUX and len(one.inputs) > 1:
         several = [levels.of.get(power.mesh.groups.of(net)) for net in one.inputs]
         known = [volts for volts in several if volts is not None]
