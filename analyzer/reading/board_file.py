@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 import re
 from pathlib import Path
 
@@ -22,7 +23,7 @@ def copper_layers(schematic: Path, files: Files, report: Report) -> Evidence | N
     Only the head of the file is read: its list of layers stands before everything large.
     """
     board = schematic.with_suffix(".kicad_pcb")
-    if not board.is_file():
+    if not os.path.isfile(board):
         return None
     del report
     with board.open("rb") as stream:

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from collections import defaultdict
 from collections.abc import Iterable
-from typing import Any
 
 from analyzer.reading.sexpr import Node
 
@@ -16,15 +15,6 @@ Segment = tuple[Point, Point, int]
 
 GRID_PER_MM = 10_000
 _FARTHEST_MM = 1e5  # 100 m: beyond any sheet, below any trouble with integers
-
-
-def number(atom: Any) -> float | None:
-    """An atom as a finite number of believable size, else None."""
-    try:
-        value = float(atom)
-    except (TypeError, ValueError, OverflowError):
-        return None
-    return value if -_FARTHEST_MM < value < _FARTHEST_MM else None
 
 
 def point(node: Node | None) -> Point | None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -173,7 +174,7 @@ class Hierarchy:
             message = f"sheet file '{written}' lies outside the project folder and was not opened"
             self._report.add(kinds.SHEET_OUTSIDE, written, message, where, lost=True)
         except InputError as error:
-            if not path.exists():
+            if not os.path.exists(path):  # Path.exists raises for names that are too long
                 message = f"sheet file '{written}' does not exist (tried {name}){_near_name(path)}"
                 self._report.add(kinds.SHEET_MISSING, written, message, where, lost=True)
             else:
@@ -209,7 +210,7 @@ def _near_name(path: Path) -> str:
     if "${" in str(path):
         return "; KiCad does not expand variables in sheet file names"
     folder = path.parent
-    if folder.is_dir():
+    if os.path.isdir(folder):
         for other in sorted(folder.iterdir()):
             if other.name.lower() == path.name.lower():
                 return f"; there is '{other.name}': upper and lower case differ"

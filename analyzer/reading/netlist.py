@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+import os
 import re
 from collections import defaultdict
 from pathlib import Path
@@ -29,7 +30,7 @@ _OWN = {"Reference", "Value", "Footprint"}
 def schematic_beside(path: Path) -> Path | None:
     """The schematic a netlist was made from, if it lies in the same folder."""
     candidate = path.with_suffix(".kicad_sch")
-    return candidate if candidate.is_file() else None
+    return candidate if os.path.isfile(candidate) else None
 
 
 def read_netlist(path: Path, settings: Settings, variant: str | None = None) -> Circuit:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import difflib
 import json
+import os
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from pathlib import Path
@@ -53,7 +54,7 @@ def find_schematic(path: Path) -> Path:
     Raises:
         InputError: If nothing is there, or several projects are.
     """
-    if not path.is_dir():
+    if not os.path.isdir(path):
         if path.suffix == ".sch":
             remedy = "Open and save it in KiCad 6 or newer, or give its netlist (.net or .xml)."
             raise InputError(Fault("this is a schematic of KiCad 5 or older", str(path), remedy=remedy))
@@ -114,7 +115,7 @@ def load_project(path: Path, files: Files, report: Report) -> Project:
     root = path.with_suffix(".kicad_sch")
     plain = Project(path.stem, path.parent, (Root(root),))
     _note_open(path, report)
-    if not project_file.is_file():
+    if not os.path.isfile(project_file):
         others = _listed(path.parent, ".kicad_pro")
         message = f"no {project_file.name} beside the schematic"
         if others:
@@ -151,7 +152,7 @@ def _several(path: Path, found: list[Path]) -> Fault:
 def _note_open(path: Path, report: Report) -> None:
     folder = path.parent
     for name in (f"~{path.stem}.kicad_sch.lck", f"~{path.stem}.kicad_pro.lck", f"_autosave-{path.stem}.kicad_sch"):
-        if (folder / name).exists():
+        if os.path.exists(folder / name):
             report.add(kinds.OPEN_IN_EDITOR, path.stem, f"{name} exists: the saved state was read", name)
             return
 
@@ -217,9 +218,9 @@ class _Reader:
                 )
             )
         asked = plain.roots[0].path
-        if len(roots) > 1 and (not asked.exists() or any(_same(root.path, asked) for root in roots)):
+        if len(roots) > 1 and (not os.path.exists(asked) or any(_same(root.path, asked) for root in roots)):
             return tuple(roots)
-        if len(roots) == 1 and not asked.exists():
+        if len(roots) == 1 and not os.path.exists(asked):
             return (replace(roots[0], name=""),)
         return plain.roots
 

@@ -48,10 +48,11 @@ def parse(data: bytes, file: str, root: str, *, bare_words: bool = False) -> Nod
 
     with no_collector():
         try:
-            outer = parse_sexp(f"({guarded})")  # in parentheses of our own, so that text after the root shows
+            # in parentheses of our own and with a last word, so that text after the root shows
+            outer = parse_sexp(f"({guarded} {GUARD})")
         except (AssertionError, IndexError):
             outer = []
-    if len(outer) != 1 or not isinstance(outer[0], list):
+    if len(outer) != 2 or not isinstance(outer[0], list) or outer[1] != GUARD:
         raise InputError(diagnose(source, file) or Fault("the parentheses do not match", file))
     tree: Node = outer[0]
     check_nesting(tree, file)
@@ -134,7 +135,10 @@ def check_nesting(tree: Node, file: str) -> None:
 
 def _quoted(match: re.Match[str]) -> str:
     found = match[0]
-    return found if found[0] == '"' else f'"{found}"'
+    if found[0] == '"':
+        return found
+    escaped = found.replace("\\", "\\\\")
+    return f'"{escaped}"'
 
 
 def _meaning(match: re.Match[str]) -> str:

@@ -82,7 +82,13 @@ def test_aliases_that_multiply_end_quickly() -> None:
 
 
 def test_bus_limit_in_a_drawing_makes_it_incomplete(tmp_path: Path) -> None:
-    circuit = read(save(tmp_path, "p", schematic(label("D[0..99999]", (0, 0)), part("TP1", "TP", (5, 5)))))
+    circuit = read(
+        save(
+            tmp_path,
+            "p",
+            schematic(label("D[0..99999]", (0, 0)), wire((0, 0), (9, 0), "bus"), part("TP1", "TP", (5, 5))),
+        )
+    )
     assert [finding.name for finding in circuit.findings] == ["bus-not-understood"]
     assert not circuit.complete
 

@@ -204,3 +204,8 @@ def test_every_line_of_a_file_cut_anywhere_is_an_error_or_a_circuit(tmp_path: Pa
         path.write_bytes(whole[:end])
         with pytest.raises(InputError):
             read(path)
+
+
+@pytest.mark.parametrize("name", ["x" * 300 + ".kicad_sch", "x" * 300 + ".net", "x" * 300])
+def test_name_that_is_too_long_is_one_clear_error(tmp_path: Path, name: str) -> None:
+    assert "cannot be opened: File name too long" in fault_of(tmp_path / name)

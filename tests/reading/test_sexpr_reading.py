@@ -19,6 +19,10 @@ TOKEN = re.compile(r'\s*(?:([()])|"((?:[^"\\]|\\.)*)"|([^\s()"]+))', re.DOTALL)
 MEANING = {"n": "\n", "t": "\t", "r": "\r", "a": "\a", "b": "\b", "f": "\f", "v": "\v"}
 
 
+def undone(escaped: str) -> str:
+    return re.sub(r"\\(.)", lambda m: MEANING.get(m[1], m[1]), escaped, flags=re.DOTALL)
+
+
 def slow_parse(source: str) -> list[object]:
     """The obvious way: one token after another."""
     stack: list[list[object]] = [[]]
@@ -29,9 +33,9 @@ def slow_parse(source: str) -> list[object]:
             done = stack.pop()
             stack[-1].append(done)
         elif bare:
-            stack[-1].append(bare)
+            stack[-1].append(undone(bare))  # KiCad's bare words hold no backslash; ours are treated as strings are
         else:
-            stack[-1].append(re.sub(r"\\(.)", lambda m: MEANING.get(m[1], m[1]), string, flags=re.DOTALL))
+            stack[-1].append(undone(string))
     ((root,),) = stack
     assert isinstance(root, list)
     return root
@@ -91,7 +95,7 @@ def test_any_bytes_are_text_or_a_clear_error(data: bytes) -> None:
     assert len(faults) <= 1
 
 
-@given(st.lists(st.text(st.sampled_from("ab019.-+/^~*'"), min_size=1, max_size=6), min_size=1, max_size=6))
+@given(st.lists(st.text(st.sampled_from("ab019.-+/^~*'\\"), min_size=1, max_size=6), min_size=1, max_size=6))
 def test_bare_words_of_old_netlists_stay_as_written(words: list[str]) -> None:
     source = f"(export (version D) (x {' '.join(words)}))"
     tree = parse(source.encode(), "f", "export", bare_words=True)
@@ -112,6 +116,12 @@ def test_bare_words_of_old_netlists_stay_as_written(words: list[str]) -> None:
 def test_flag_in_all_its_spellings(node: list[object], expected: bool) -> None:
     assert flag(node, "hide") is expected
     assert flag(["pin"], "hide", default=True) is True
+
+
+@pytest.mark.parametrize("rest", ["))(", ") ) (", "))((a)", ") (b)", ")x", ')"x"', "))"])
+def test_text_after_the_root_is_never_dropped(rest: str) -> None:
+    with pytest.raises(InputError):
+        parse(f"(kicad_sch {rest}".encode(), "f", "kicad_sch")
 
 
 def test_views() -> None:

@@ -280,3 +280,60 @@ def test_reference_is_that_of_this_project_and_path(
     drawn = " ".join(f'(project "{name}" (path "{path}" (reference "{ref}") (unit 1)))' for name, path, ref in uses)
     symbol = part("R5", "TP", (0, 0)).partition(" (instances")[0] + (f" (instances {drawn}))" if uses else ")")
     assert [each.ref for each in read(save(tmp_path, "p", schematic(symbol, libs=(TP,)))).components] == [expected]
+
+
+def loose_pin_board(folder: Path, *labels: str, pins: int = 1) -> Circuit:
+    """A parent with TP1 under `labels`, and sheet pins named VCC that are wired to nothing; TP2 is inside."""
+    for number in range(pins):
+        inner = part(f"TP{number + 2}", "TP", (0, 0), path=f"/{ROOT}/s{number}")
+        save(folder, f"c{number}", schematic(inner, label("VCC", (0, 0), "hierarchical_label"), uuid=CHILD), None)
+    sheets = [sheet(f"s{n}", f"c{n}.kicad_sch", ("VCC", (50 * n + 50, 50))) for n in range(pins)]
+    return read(save(folder, "p", schematic(*sheets, part("TP1", "TP", (0, 0)), *labels)))
+
+
+@pytest.mark.parametrize("kind", ["label", "global_label"])
+def test_loose_sheet_pin_does_not_join_the_label_of_its_name(tmp_path: Path, kind: str) -> None:
+    circuit = loose_pin_board(tmp_path, label("VCC", (0, 0), kind))
+    name = "/VCC" if kind == "label" else "VCC"
+    assert nets(circuit) == {name: {"TP1.1"}, "/s0/VCC": {"TP2.1"}}
+
+
+def test_loose_sheet_pin_joins_the_net_on_which_its_name_comes_second(tmp_path: Path) -> None:
+    # as KiCad 9 does, measured
+    circuit = loose_pin_board(tmp_path, label("VCC", (0, 0)), label("A", (0, 0)))
+    assert nets(circuit) == {"/A": {"TP1.1", "TP2.1"}}
+    assert messages(circuit, "sheet-pin-loose") == [
+        "sheet pin 'VCC' is not wired to the net that also bears its name; KiCad joins them"
+    ]
+
+
+def test_several_loose_sheet_pins_of_that_name_stay_apart_and_are_reported(tmp_path: Path) -> None:
+    circuit = loose_pin_board(tmp_path, label("VCC", (0, 0)), label("A", (0, 0)), pins=2)
+    assert nets(circuit) == {"/A": {"TP1.1"}, "/s0/VCC": {"TP2.1"}, "/s1/VCC": {"TP3.1"}}
+    assert messages(circuit, "sheet-pin-loose") == [
+        "2 sheet pins 'VCC' are not wired to the net of that name; KiCad joins one of them"
+    ]
+
+
+def test_equal_names_of_unrelated_sheet_pins_are_told_apart(tmp_path: Path) -> None:
+    save(tmp_path, "c", schematic(uuid=CHILD), None)
+    root = schematic(
+        sheet("a", "c.kicad_sch", ("N", (50, 50))),
+        sheet("b", "c.kicad_sch", ("N", (90, 50)), uuid="b"),
+        part("TP1", "TP", (50, 50)),
+        part("TP2", "TP", (90, 50)),
+    )
+    assert nets(read(save(tmp_path, "p", root))) == {"/N": {"TP1.1"}, "/N_1": {"TP2.1"}}
+
+
+def test_net_with_two_names_that_hold_everywhere_is_reported(tmp_path: Path) -> None:
+    items = [part("TP1", "TP", (0, 0)), label("VBUS", (0, 0), "global_label"), label("+5V", (0, 0), "global_label")]
+    circuit = read(save(tmp_path, "p", schematic(*items)))
+    assert nets(circuit) == {"+5V": {"TP1.1"}}
+    assert messages(circuit, "net-with-several-names") == ["net +5V bears several names: +5V, VBUS"]
+
+
+def test_sheet_path_that_is_no_path(tmp_path: Path) -> None:
+    circuit = read(save(tmp_path, "p", schematic(sheet("s", "a\\u0000b.kicad_sch".replace("\\u0000", "\x7f" * 300)))))
+    assert not circuit.complete
+    assert circuit.findings[0].name in {"sheet-missing", "sheet-unreadable"}

@@ -358,3 +358,30 @@ def test_unknown_variant_is_an_error_with_the_near_spelling(tmp_path: Path) -> N
         read(path, variant="LOV")
     with pytest.raises(InputError, match="Defined: LOW, OTHER"):
         read(path, variant="")
+
+
+BODY = (
+    "(rectangle (start -9 -1) (end 9 1)) (circle (center 0 0) (radius 12))"
+    " (polyline (pts (xy -1 -1) (xy 14 0))) (arc (start 0 0) (mid 1 1) (end 2 0))"
+)
+
+
+@pytest.mark.parametrize(
+    ("points", "touched"),
+    [
+        # the symbol's body reaches 14 mm to the right and 12 mm up, down and to the left
+        ("(xy 13 -1) (xy 20 -1) (xy 20 1) (xy 13 1)", True),
+        ("(xy -20 -1) (xy -11 -1) (xy -11 1) (xy -20 1)", True),
+        ("(xy -1 11) (xy 1 11) (xy 0 20)", True),
+        ("(xy -1 13) (xy 1 13) (xy 0 20)", False),
+        ("(xy 15 -1) (xy 20 -1) (xy 20 1)", False),
+        # an area around everything
+        ("(xy -99 -99) (xy 99 -99) (xy 99 99) (xy -99 99)", True),
+        ("(xy 0 0) (xy 1 1)", False),
+    ],
+)
+def test_rule_area_touches_the_body_of_a_symbol(tmp_path: Path, points: str, touched: bool) -> None:
+    lib = library("B", units={"0_1": BODY, "1_1": pin("1", "A")})
+    area = AREA.format(bom="yes", dnp="yes", points=points)
+    circuit = circuit_of(tmp_path, part("U1", "B", (0, 0)), area, libs=(lib,), version=20260306)
+    assert circuit.components[0].fitted is not touched
