@@ -15,8 +15,11 @@ coefficients are taken from the engine's own losses at the worst corner and chec
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 from analyzer.heat.case import Case, Chosen, Worked
-from analyzer.losses.base import End, Point
+from analyzer.losses.base import End, Loss, Point
+from analyzer.losses.dispatch import HOT_CELSIUS
 
 _AGREEMENT = 1e-9
 
@@ -31,32 +34,45 @@ def live_numbers(case: Case, worst: Worked, rise_extra: float) -> dict[str, floa
     if path is None or not path.is_linear or path.measured is not None:
         return found
     found |= {"theta_solid": path.solid.high, "theta_air": path.air.high}
-    if any(one.case.model.heats for one in worst.chosen) or first.case.model.loads or first.case.model.own_load:
+    one = first.case
+    if others or one.model.heats or one.model.loads or one.model.own_load or first.point.iout != one.load.high:
         return found
-    coefficients = _polynomial(first)
+    coefficients = _polynomial(lambda amps: _at(first, first.point, amps).watts, first.point.iout)
     if coefficients is None:
         return found
     k0, k1, k2 = coefficients
-    k0 += sum(one.loss.watts for one in others)
-    return {**found, "closed_form": 1.0, "k0": k0, "k1": k1, "k2": k2}
+    found |= {"closed_form": 1.0, "k0": k0, "k1": k1, "k2": k2}
+    taken = _polynomial(lambda amps: _at(first, _thirstiest(first), amps).iin, first.point.iout)
+    if taken is not None:
+        found |= {"i0": taken[0], "i1": taken[1], "i2": taken[2]}
+    return found
 
 
-def _polynomial(chosen: Chosen) -> tuple[float, float, float] | None:
-    point, model = chosen.point, chosen.case.model
-    step = point.iout or 0.1
+def _at(chosen: Chosen, point: Point, amps: float) -> Loss:
+    return chosen.case.model.at(Point(point.vin, point.vout, amps, point.junction), End.SEVERE)
 
-    def heat(amps: float) -> float:
-        return model.at(Point(point.vin, point.vout, amps, point.junction), End.SEVERE).watts
 
+def _thirstiest(chosen: Chosen) -> Point:
+    """The corner at which the part takes most from its input, as the tree of currents has it."""
+    one = chosen.case
+    points = [
+        Point(vin, vout, one.load.high, HOT_CELSIUS)
+        for vin in (one.vin.low, one.vin.high)
+        for vout in (one.vout.low, one.vout.high)
+    ]
+    return max(points, key=lambda point: one.model.at(point, End.SEVERE).iin)
+
+
+def _polynomial(of: Callable[[float], float], amps: float) -> tuple[float, float, float] | None:
+    """Coefficients of a quadratic through three loads, None if a fourth does not lie on it."""
+    step = amps or 0.1
     try:
-        k0, at_one, at_two, at_three = heat(0.0), heat(step), heat(2 * step), heat(3 * step)
+        c0, at_one, at_two, at_three = of(0.0), of(step), of(2 * step), of(3 * step)
     except ValueError:
         return None
-    k2 = (at_two - 2 * at_one + k0) / (2 * step * step)
-    k1 = (at_one - k0) / step - k2 * step
-    if abs(k2) * step * step <= 1e-12 * max(abs(at_one), 1e-12):
-        k2, k1 = 0.0, (at_one - k0) / step
-    expected = k0 + k1 * 3 * step + k2 * 9 * step * step
-    if abs(expected - at_three) > _AGREEMENT * max(1.0, abs(at_three)):
-        return None
-    return k0, k1, k2
+    c2 = (at_two - 2 * at_one + c0) / (2 * step * step)
+    c1 = (at_one - c0) / step - c2 * step
+    if abs(c2) * step * step <= 1e-12 * max(abs(at_one), 1e-12):
+        c2, c1 = 0.0, (at_one - c0) / step
+    expected = c0 + c1 * 3 * step + c2 * 9 * step * step
+    return (c0, c1, c2) if abs(expected - at_three) <= _AGREEMENT * max(1.0, abs(at_three)) else None
