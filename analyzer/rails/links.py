@@ -24,12 +24,14 @@ class Link:
         ref: Reference of the part.
         one, other: The nets it joins.
         ohms: Resistance in the path [Ω]; 0 where it is negligible.
+        key: Identity of the part: references may be doubled.
     """
 
     ref: str
     one: str
     other: str
     ohms: float = 0.0
+    key: str = ""
 
 
 @dataclass
@@ -142,7 +144,7 @@ def join(circuit: Circuit, parts: tuple[Part, ...], settings: Settings, ground: 
             unpaired.append(component.ref)
             continue
         resistance = (ohms(component) or 0.0) if kind is Kind.RESISTOR else 0.0
-        links = (Link(component.ref, one, other, resistance) for one, other in pairs if one != other)
+        links = (Link(component.ref, one, other, resistance, component.key) for one, other in pairs if one != other)
         (plain if stated or kind not in _MAGNETIC else magnetic).extend(links)
     groups = Groups()
     for link in plain:

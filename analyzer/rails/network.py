@@ -134,11 +134,11 @@ class Mesh:
     @cached_property
     def by_group(self) -> Mapping[str, tuple[tuple[Component, str, str], ...]]:
         """Fitted resistors and trimmers at every group: (part, this group, far group)."""
-        linked = {link.ref for link in self.joined.links}
+        linked = {link.key for link in self.joined.links}
         found: dict[str, list[tuple[Component, str, str]]] = {}
         for component in self.circuit.components:
             kind = self.joined.kinds[component.key]
-            if kind not in (Kind.RESISTOR, Kind.THERMISTOR) or component.ref in linked or not conducts(component, kind):
+            if kind not in (Kind.RESISTOR, Kind.THERMISTOR) or component.key in linked or not conducts(component, kind):
                 continue
             for one, other in resistor_pairs(component):
                 near, far = self.groups.of(one), self.groups.of(other)

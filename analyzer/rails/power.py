@@ -231,9 +231,11 @@ class Power:
         """Whether what comes in here is a supply by its name, by a connector's pin name, or because it is stated."""
         if self.is_stated(group):
             return True
+        if not self.is_entry(group):
+            return False
         named = any(named_volts(net) or self.standard_supply(net, group) for net in self.names(group))
         battery = any(self.mesh.joined.kinds[c.key] is Kind.BATTERY for c, _ in self.sources(group))
-        return self.is_entry(group) and (named or battery or self.supply_pin_name(group) is not None)
+        return named or battery or self.supply_pin_name(group) is not None
 
     def supply_pin_name(self, group: str) -> str | None:
         """Name of a connector pin on this group that says "supply"; None if there is none."""

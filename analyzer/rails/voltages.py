@@ -72,9 +72,19 @@ def depends_on(power: Power, trace: Trace, network: Network | None) -> frozenset
     """Groups whose voltage the channel's own output voltage depends on."""
     if trace.channel.topology is Topology.CHARGE_PUMP and trace.channel.volts is None:
         return frozenset(power.mesh.groups.of(net) for net in trace.inputs)
+    ground = _lifted_ground(power, trace)
+    lifted = frozenset([ground] if ground is not None else [])
     if network is None or trace.channel.volts is not None:
-        return frozenset()
-    return frozenset(group for groups in supplies_of_drivers(power, network).values() for group in groups)
+        return lifted
+    return lifted | {group for groups in supplies_of_drivers(power, network).values() for group in groups}
+
+
+def _lifted_ground(power: Power, trace: Trace) -> str | None:
+    """Group of a ground pin that is neither board ground nor the part's own output; None for all ordinary parts."""
+    if trace.ground is None or trace.is_inverted or trace.channel.topology is Topology.SHUNT:
+        return None
+    group = power.mesh.groups.of(trace.ground)
+    return None if group in power.ground else group
 
 
 def channel_volts(
@@ -88,6 +98,29 @@ def channel_volts(
     stated = settings.parts.get(trace.part.ref)
     if stated is not None and stated.vout is not None:
         return stated.vout, (), ()
+    own, why, reasons = _above_own_ground(power, trace, network, known, settings)
+    ground = _lifted_ground(power, trace)
+    if own is None or ground is None:
+        return own, why, reasons
+    below = known(ground)
+    if below is None:
+        return None, ("voltage at its ground pin not known",), ()
+    lifted = Evidence(
+        own.quantity,
+        own.span + below.span,
+        "V",
+        f"{trace.part.ref} above its ground pin",
+        Grade.DERIVED,
+        f"{own.span.nominal:.4g} V + ({below.span.nominal:.4g} V)",
+        (own, below),
+        own.note,
+    )
+    return lifted, why, reasons
+
+
+def _above_own_ground(
+    power: Power, trace: Trace, network: Network | None, known: Known, settings: Settings
+) -> tuple[Evidence | None, tuple[str, ...], tuple[str, ...]]:
     channel = trace.channel
     figures = channel.figures
     if channel.volts is not None:
@@ -117,7 +150,7 @@ def channel_volts(
 
 
 def _sign_of(trace: Trace) -> int:
-    return -1 if trace.is_inverted else trace.channel.sign
+    return -1 if trace.is_inverted else trace.sign
 
 
 def _signed(evidence: Evidence, sign: int) -> Evidence:
@@ -154,7 +187,7 @@ def _unity(power: Power, trace: Trace, reference: Evidence) -> tuple[Evidence | 
                 (f"feedback is wired to the output, so it is a fixed version; its voltage is not known ({net})",),
                 (),
             )
-    span = reference.span if trace.channel.sign > 0 or reference.span.nominal < 0 else -reference.span
+    span = reference.span if trace.sign > 0 or reference.span.nominal < 0 else -reference.span
     evidence = Evidence(
         "output voltage",
         span,
@@ -187,7 +220,7 @@ def _by_network(
             drives[group] = Drive(
                 Span(low, middle, high), f"{name} drives the feedback network with {low:.3g} to {high:.3g} V"
             )
-    sign = trace.channel.sign if not trace.is_inverted else 1
+    sign = trace.sign if not trace.is_inverted else 1
     span = reference.span if sign > 0 or reference.span.nominal < 0 else -reference.span
     current = trace.channel.figures.get("feedback_current")
     solved = solve_feedback(network, span, current.span if current else ZERO, across=_across(trace), drives=drives)
@@ -235,7 +268,7 @@ def _by_gain(
 ) -> tuple[Evidence | None, tuple[str, ...], tuple[str, ...]]:
     if vin is None:
         return None, ("a charge pump's output follows its input, which is not known",), ()
-    factor = gain.span.nominal * (-1 if trace.channel.sign < 0 and gain.span.nominal > 0 else 1)
+    factor = gain.span.nominal * (-1 if trace.sign < 0 and gain.span.nominal > 0 else 1)
     span = vin.span.scaled(factor)
     evidence = Evidence(
         "output voltage",

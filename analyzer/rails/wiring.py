@@ -31,6 +31,7 @@ class Trace:
         tap: Net of its feedback pin.
         outside: Parts of its power path.
         first: References of the parts between its own pin and `output`.
+        sign: Sign of its output as wired: a shunt element with its cathode on ground makes a negative voltage.
         is_inverted: A converter whose ground pin is its (negative) output.
         is_off: Strapped off.
         trouble: What could not be found, one line each.
@@ -45,6 +46,7 @@ class Trace:
     tap: str | None = None
     outside: tuple[Outside, ...] = ()
     first: tuple[str, ...] = ()
+    sign: int = 1
     is_inverted: bool = False
     is_off: bool = False
     trouble: tuple[str, ...] = field(default=())
@@ -56,9 +58,9 @@ def trace(power: Power, part: Part, channel: Channel) -> Trace:
     grounds = channel.nets(Role.GROUND)
     at_ground = [net for net in grounds if of(net) in ground]
     inputs = channel.nets(Role.INPUT)
-    live = tuple(
-        net for net in inputs if of(net) not in ground or of(net) in {of(n) for n in grounds if n not in at_ground}
-    )
+    # between a negative rail and ground, the positive side is the input
+    is_lifted = bool(grounds) and not at_ground
+    live = tuple(net for net in inputs if of(net) not in ground or is_lifted)
     found = Trace(
         part,
         channel,
@@ -66,6 +68,7 @@ def trace(power: Power, part: Part, channel: Channel) -> Trace:
         ground=next(iter((*at_ground, *grounds)), None),
         control=next(iter(channel.nets(Role.BIAS)), None),
         tap=next(iter(channel.nets(Role.FEEDBACK)), None),
+        sign=channel.sign,
         is_off=bool(inputs) and not live,
     )
     if channel.topology is Topology.SHUNT:
@@ -328,10 +331,12 @@ def _shunt(power: Power, found: Trace) -> Trace:
     of = power.mesh.groups.of
     pins = [pin for role in (Role.INPUT, Role.OUTPUT, Role.GROUND) for pin in found.channel.pins.get(role, ())]
     pins = pins or [pin for pin in found.part.component.pins if diode_end(pin)]
-    live = [pin.net for pin in pins if of(pin.net) not in power.ground]
+    live = [pin for pin in pins if of(pin.net) not in power.ground]
     if not live:
         return replace(found, is_off=True)
-    output = live[0]
+    output = live[0].net
+    cathode_on_ground = any(diode_end(pin) == "K" and of(pin.net) in power.ground for pin in found.part.component.pins)
+    sign = -1 if cathode_on_ground or power.is_named_negative(of(output)) else found.sign
     feeding: dict[str, float] = {}
     for component, _, far in power.mesh.by_group.get(of(output), ()):
         branch = power.mesh.resistance(component, of(output), far)
@@ -341,4 +346,4 @@ def _shunt(power: Power, found: Trace) -> Trace:
     series = [c.ref for c, _, far in power.mesh.by_group.get(of(output), ()) if far == best]
     inputs = (power.mesh.members[best][0],) if best else ()
     trouble = () if best else ("no series resistor to a supply found",)
-    return replace(found, inputs=inputs, output=output, first=tuple(series), is_off=False, trouble=trouble)
+    return replace(found, inputs=inputs, output=output, first=tuple(series), sign=sign, is_off=False, trouble=trouble)

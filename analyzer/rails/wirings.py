@@ -13,6 +13,8 @@ from analyzer.rails.wiring import Trace
 from analyzer.rule import PASSAGES, Topology
 from analyzer.settings import Settings
 
+GROUND = Evidence("ground", Span.exact(0.0), "V", "ground is the reference of all voltages", Grade.DERIVED)
+
 
 def wiring(
     power: Power, levels: Levels, names: Mapping[str, str], one: Trace, through: tuple[str, ...], settings: Settings
@@ -68,7 +70,7 @@ def _vin(
         for other in others:
             first = _hull(first, other)
         return first, ()
-    volts = levels.of.get(group)
+    volts = levels.of.get(group) if group not in power.ground else GROUND
     if volts is None:
         return None, (f"input voltage not known: {levels.why(group)}",)
     if ground is None or ground in power.ground or one.channel.topology is Topology.SHUNT:

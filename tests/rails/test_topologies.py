@@ -342,7 +342,7 @@ def test_inverting_charge_pump_follows_its_input() -> None:
 def test_negative_shunt_reference() -> None:
     chip = part("U1", "XR10", {"1 K passive": "GND", "2 A passive": "VREF-10"})
     rails = find(
-        recognised(chip, Topology.SHUNT, volts=10.0, sign=-1, roles={Role.OUTPUT: "2", Role.GROUND: "1"}),
+        recognised(chip, Topology.SHUNT, volts=10.0, roles={Role.OUTPUT: "2", Role.GROUND: "1"}),
         part("J1", "Conn", {"1 Pin_1": "-12V", "2 Pin_2": "GND"}),
         part("C5", "1u", "-12V GND"),
         part("R1", "2k2", "-12V VREF-10"),
@@ -477,3 +477,35 @@ def test_inductor_resistance_from_value_or_field(value: str, fields: dict[str, s
     (outside,) = only(find(recognised(chip, Topology.BUCK, volts=5.0), J12, coil, COUT)).outside
     assert outside.resistance is not None
     assert outside.resistance.span.nominal == pytest.approx(0.02)
+
+
+def test_regulator_between_a_negative_rail_and_ground() -> None:
+    # its ground pin is -12 V, its input is ground: 5 V above -12 V is -7 V
+    chip = part("U1", "XL5", {"1 VIN power_in": "GND", "2 GND power_in": "-12V", "3 VOUT power_out": "VM"})
+    rails = find(
+        recognised(chip, Topology.LINEAR, volts=5.0),
+        part("J1", "Conn", {"1 Pin_1": "-12V", "2 Pin_2": "GND"}),
+        part("C1", "1u", "VM -12V"),
+        settings=Settings(supplies={"-12V": figure(-12.0)}),
+    )
+    wiring = only(rails)
+    assert not wiring.is_off
+    assert (wiring.input_rail, wiring.ground_rail) == ("GND", "-12V")
+    assert wiring.vin is not None
+    assert wiring.vin.span.nominal == 12.0
+    assert nominal(wiring) == -7.0
+
+
+def test_doubled_references_do_not_mix_a_link_with_a_divider() -> None:
+    # an unannotated board: every resistor is "R?", one of them a 0 Ω link
+    from dataclasses import replace
+
+    chip = part(
+        "U1", "XB", {"1 VIN power_in": "+12V", "2 GND power_in": "GND", "3 SW output": "SW", "4 FB input": "FB"}
+    )
+    resistors = [
+        replace(part(f"R{number}", value, nets), ref="R?")
+        for number, (value, nets) in enumerate((("0R", "VO +X"), ("10k 1%", "VO FB"), ("10k 1%", "FB GND")), start=1)
+    ]
+    rails = find(recognised(chip, Topology.BUCK, reference=0.8), J12, part("L1", "1u", "SW VO"), COUT, *resistors)
+    assert nominal(only(rails)) == pytest.approx(1.6)
