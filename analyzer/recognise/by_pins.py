@@ -16,6 +16,7 @@ from analyzer.part import Channel
 from analyzer.quantity import Dimension, Span
 from analyzer.recognise import words
 from analyzer.recognise.by_rule import DEFAULT_TOLERANCE, letters_of
+from analyzer.recognise.identity import identities, looks_like_part_number
 from analyzer.recognise.roles import by_role, channel_number
 from analyzer.rule import PASSAGES, Role, Topology
 
@@ -170,19 +171,23 @@ def _channel(
     component: Component, name: str, topology: Topology, roles: Mapping[Role, tuple[Pin, ...]], text: str
 ) -> Channel:
     sign = -1 if words.NEGATIVE.search(component.description) and topology is not Topology.MODULE else 1
-    adjustable = bool(roles.get(Role.FEEDBACK)) or topology in PASSAGES
+    # the second number in a module's name may be its current
+    adjustable = bool(roles.get(Role.FEEDBACK)) or topology in PASSAGES or topology is Topology.MODULE
     volts = None if adjustable or name or not text else _named_volts(component, sign)
     return Channel(name, topology, sign, roles, volts)
 
 
 def _named_volts(component: Component, sign: int) -> Evidence | None:
     """A voltage written with a decimal in the part's name is safe (KiCad's libraries: no counter-example)."""
-    symbol = component.lib_id.rpartition(":")[2]
-    for field, name in (("Value", component.value), ("symbol name", symbol)):
-        found = _DECIMAL.search(name) or _LETTER.search(name.upper())
+    for identity in identities(component):
+        found = _DECIMAL.search(identity.text) or _LETTER.search(identity.text)
         if found:
             value = float(".".join(found.groups()))
             note = f"accuracy not given: ±{DEFAULT_TOLERANCE:.0%} presumed, common practice"
             span = Span.around(value * sign, DEFAULT_TOLERANCE)
-            return Evidence("output voltage", span, "V", f"{component.ref} {field} {name}", Grade.PRESUMED, note=note)
+            source = f"{component.ref} {identity.field} {identity.text}"
+            return Evidence("output voltage", span, "V", source, Grade.PRESUMED, note=note)
+        if looks_like_part_number(identity.text):
+            # the part's own number says nothing; the symbol may have been copied from another part
+            return None
     return None

@@ -7,7 +7,7 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 
-from analyzer.circuit import Component
+from analyzer.circuit import Component, plain_name
 from analyzer.evidence import Evidence, Grade
 from analyzer.part import Channel
 from analyzer.quantity import Span
@@ -18,6 +18,8 @@ from analyzer.rule import PASSAGES, ChannelRule, Role, Rule, Rulebook, Topology
 
 DEFAULT_TOLERANCE = 0.02
 """Accuracy of a fixed output where its rule gives none: ±2 %, common practice for fixed regulators over temperature."""
+
+_DIFFERENTIAL = frozenset({"+IN", "-IN"})
 
 
 @dataclass(frozen=True, slots=True)
@@ -119,6 +121,9 @@ def fits(component: Component, rule: Rule) -> bool:
 def _has_roles(component: Component, channel: ChannelRule) -> bool:
     if channel.topology is Topology.SHUNT:
         return len(component.pins) >= 2
+    if {plain_name(pin.name).upper() for pin in component.pins} >= _DIFFERENTIAL:
+        # an amplifier's or receiver's pair of inputs
+        return False
     roles = by_role(component.pins, channel.pins)
     if channel.topology is Topology.CONTROLLER:
         return Role.INPUT in roles

@@ -42,12 +42,12 @@ def identities(component: Component) -> Iterator[Identity]:
     for wanted, is_part_number in ((PART_FIELDS, True), (SUPPLIER_FIELDS, False)):
         for name, text in component.fields.items():
             if _plain(name) in wanted:
-                for piece in _pieces(text):
+                for piece in pieces(text):
                     yield Identity(name, piece, is_part_number)
-    for piece in _pieces(component.value):
+    for piece in pieces(component.value):
         yield Identity("Value", piece, False)
     name = component.lib_id.rpartition(":")[2]
-    for piece in _pieces(name):
+    for piece in pieces(name):
         yield Identity("symbol name", piece, False)
 
 
@@ -55,7 +55,7 @@ def _plain(name: str) -> str:
     return re.sub(r"[^a-z0-9]", "", name.lower())
 
 
-def _pieces(text: str) -> Iterator[str]:
+def pieces(text: str) -> Iterator[str]:
     """A field may hold two part numbers, trailing blanks and invisible marks."""
     visible = "".join(c for c in text if unicodedata.category(c) != "Cf").upper()
     for piece in _BREAKS.split(visible):

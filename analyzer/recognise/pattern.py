@@ -100,7 +100,7 @@ def _match_body(pattern: Pattern, body: str, text: str) -> Hit | None:
 
 
 def _codes(pattern: Pattern, text: str) -> Iterator[tuple[int, str]]:
-    """Every place where a code may stand: not followed by a further digit, so that no code is cut short."""
+    """Every place where a code may stand: no digit follows unless the pattern has it, so that no code is cut short."""
     if pattern.decode == "table":
         for code in pattern.table:
             start = text.find(code)
@@ -109,11 +109,12 @@ def _codes(pattern: Pattern, text: str) -> Iterator[tuple[int, str]]:
                 start = text.find(code, start + 1)
         return
     form = CODE_FORMS[pattern.decode]
+    head, _, tail = pattern.text.partition("{code}")
+    goes_on = tail[:1].isdigit()
     for start in range(len(text)):
         found = form.match(text, start)
-        if found is None or text[found.end() : found.end() + 1].isdigit():
+        if found is None or (not goes_on and text[found.end() : found.end() + 1].isdigit()):
             continue
-        head = pattern.text.partition("{code}")[0]
         if head.endswith("*") and text[start - 1 : start].isdigit():
             continue
         if not pattern.codes or found[0] in pattern.codes:

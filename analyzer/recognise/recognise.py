@@ -9,7 +9,7 @@ from analyzer.circuit import Circuit, Component
 from analyzer.evidence import Evidence
 from analyzer.findings import recognition as kinds
 from analyzer.findings.base import Finding
-from analyzer.part import Channel, Part
+from analyzer.part import Channel, Package, Part
 from analyzer.recognise import by_pins, by_rule, words
 from analyzer.recognise.by_rule import Choice, Index, RuleHit, letters_of
 from analyzer.recognise.identity import Identity
@@ -45,13 +45,11 @@ def _recognise(
 ) -> tuple[Part | None, list[Finding]]:
     choice, findings, how = _choice(component, index, stated)
     where = str(component.place)
-    package = read_package(stated.package or component.footprint, index.rulebook.packages)
-    if stated.package:
-        package = replace(package, family=package.family or stated.package, source="stated")
     if choice.conflict:
         findings.append(kinds.IDENTITY_CONFLICT.found(component.ref, choice.conflict, where, key=component.key))
     if choice.hit is not None:
         hit = choice.hit
+        package = _package(component, index, stated)
         if choice.tie:
             message = f"rules {hit.rule.name} and {choice.tie} match {hit.identity.text} equally well"
             findings.append(kinds.RULES_TIE.found(component.ref, message, hit.rule.where, key=component.key))
@@ -65,6 +63,7 @@ def _recognise(
     channels, why = by_pins.channels_of(component, circuit)
     if channels:
         name = component.value or component.lib_id.rpartition(":")[2]
+        package = _package(component, index, stated)
         part = Part(component, "pins", None, "Value", name, package, channels, (), why)
         if part.topology.regulates and component.fitted:
             message = f"{name} looks like a {part.topology.value} regulator ({why}), but no rule knows it"
@@ -74,6 +73,13 @@ def _recognise(
         message = f"{component.value}: '{component.description[:80]}', pins not understood"
         findings.append(kinds.SOUNDS_LIKE.found(component.ref, message, where, key=component.key))
     return None, findings
+
+
+def _package(component: Component, index: Index, stated: PartStatement) -> Package:
+    package = read_package(stated.package or component.footprint, index.rulebook.packages)
+    if stated.package:
+        return replace(package, family=package.family or stated.package, source="stated")
+    return package
 
 
 def _choice(component: Component, index: Index, stated: PartStatement) -> tuple[Choice, list[Finding], str]:
