@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Iterable, Mapping
-from dataclasses import dataclass, replace
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
 from pathlib import Path
 
 from analyzer.circuit import Circuit, InputFile, natural_key
@@ -16,7 +16,7 @@ from analyzer.part import Part
 from analyzer.quantity import Span
 from analyzer.rail import Rails
 from analyzer.rule import Rulebook
-from analyzer.settings import Settings, StatedDraw
+from analyzer.settings import Settings
 
 SETTINGS_NAME = "heatledger.toml"
 
@@ -39,7 +39,7 @@ def audit(
     *,
     settings_file: Path | None = None,
     rule_files: Iterable[Path] = (),
-    typed: Iterable[StatedDraw] = (),
+    adjust: Callable[[Settings], Settings] = lambda settings: settings,
     variant: str | None = None,
     allow_outside: bool = False,
     chance_seed: int | None = None,
@@ -50,7 +50,7 @@ def audit(
         path: A `.kicad_sch`, a `.kicad_pro`, a folder with one project, or a netlist.
         settings_file: Settings to use; None looks for `heatledger.toml` beside the project.
         rule_files: Rule files besides those the settings name.
-        typed: Currents typed into a workbook; they beat the settings' own for the same part and rail.
+        adjust: Changes the settings as read: what was typed into a workbook beats them.
         variant: Design variant to audit.
         allow_outside: Whether sheets outside the project folder may be read.
         chance_seed: Seed of the Monte-Carlo estimate; None leaves it out.
@@ -63,8 +63,7 @@ def audit(
     from analyzer.settings_file import load_settings
 
     found = settings_file or settings_beside(path)
-    settings = load_settings(found)
-    settings = replace(settings, draws=_merged(settings.draws, typed))
+    settings = adjust(load_settings(found))
     base = found.parent if found else path.parent
     rulebook = load_rulebook([*(base / name for name in settings.rule_files), *rule_files])
     circuit = read(path, settings=settings, variant=variant, allow_outside=allow_outside)
@@ -137,11 +136,6 @@ def in_force(settings: Settings, circuit: Circuit) -> tuple[Evidence, ...]:
             for name, value, unit in margins
         ),
     )
-
-
-def _merged(stated: tuple[StatedDraw, ...], typed: Iterable[StatedDraw]) -> tuple[StatedDraw, ...]:
-    latest: Mapping[tuple[str, str], StatedDraw] = {(draw.ref, draw.rail): draw for draw in typed}
-    return (*(draw for draw in stated if (draw.ref, draw.rail) not in latest), *latest.values())
 
 
 def _settings_input(settings: Settings) -> tuple[InputFile, ...]:

@@ -45,3 +45,9 @@ RULE_FILES = 100
 """Rule files of one run, besides the shipped ones."""
 RULES = 20_000
 """Rules of one run."""
+WORKBOOK_ENTRIES = 1_000
+"""Parts inside one workbook's archive."""
+WORKBOOK_UNPACKED = 64 * 1024 * 1024
+"""Size of one workbook unpacked [bytes]."""
+WORKBOOK_RATIO = 100
+"""Compression ratio of one workbook above which it is taken for a bomb."""

@@ -15,6 +15,7 @@ from analyzer.errors import Fault, UsageError
 if TYPE_CHECKING:
     from analyzer.audit import Audit
     from analyzer.gate import Gate
+    from analyzer.output.workbook.typed import Typed
 
 EXAMPLES = """examples:
   heatledger audit board.kicad_pro --workbook board.xlsx
@@ -86,20 +87,26 @@ def audited(arguments: argparse.Namespace) -> Audit:
     """The audit of the board, typed currents and the Monte-Carlo estimate included where asked for."""
     from analyzer.audit import audit
 
-    typed = ()
-    if arguments.currents is not None:
-        from analyzer.output.workbook.typed import read_typed
-
-        typed = read_typed(arguments.currents).draws
+    typed = typed_before(arguments)
+    extra = {"adjust": typed.applied_to} if typed is not None else {}
     return audit(
         arguments.paths[0],
         settings_file=arguments.settings,
         rule_files=arguments.rules,
-        typed=typed,
+        **extra,
         variant=arguments.variant,
         allow_outside=arguments.allow_outside,
         chance_seed=arguments.chance,
     )
+
+
+def typed_before(arguments: argparse.Namespace) -> Typed | None:
+    """What was typed into the workbook of `--currents`, if one is given."""
+    if arguments.currents is None:
+        return None
+    from analyzer.output.workbook.typed import read_typed
+
+    return read_typed(arguments.currents)
 
 
 def judged(result: Audit, arguments: argparse.Namespace) -> Gate:
@@ -146,7 +153,7 @@ def write_files(result: Audit, gate: Gate, arguments: argparse.Namespace) -> lis
     if arguments.workbook is not None:
         from analyzer.output.workbook import write_workbook
 
-        write_workbook(arguments.workbook, ledger, result.settings, carried_from=arguments.currents)
+        write_workbook(arguments.workbook, ledger, result.settings, typed_before(arguments))
     if arguments.json is not None:
         from analyzer.output.ledger_json import write_json
 

@@ -18,7 +18,7 @@ def run_variants(arguments: argparse.Namespace) -> int:
     Raises:
         InputError: If the project has no variants.
     """
-    from analyzer.archive.since import changes, standings_of
+    from analyzer.archive.since import Standings, changes, standings_of
     from analyzer.commands.audit import audited, judged, print_report, write_files
     from analyzer.output.ledger_json import as_document
     from analyzer.reading import variants
@@ -27,7 +27,8 @@ def run_variants(arguments: argparse.Namespace) -> int:
     names = variants(path)
     if not names:
         raise InputError(Fault("the project has no design variants", str(path), remedy="Leave out --variant."))
-    statuses, base = [], None
+    statuses: list[int] = []
+    base: Standings | None = None
     for name in (None, *names):
         one = copy.copy(arguments)
         one.variant = name
@@ -40,9 +41,10 @@ def run_variants(arguments: argparse.Namespace) -> int:
         for file in write_files(result, gate, one):
             print(f"written: {file}")
         now = standings_of(as_document(result.ledger), "")
-        for change in changes(base, now) if base is not None else ():
+        if base is None:
+            base = now
+        for change in changes(base, now):
             print(f"against the base design, {change}")
-        base = base if base is not None else now
         statuses.append(gate.status)
         print()
     return max(statuses)

@@ -90,8 +90,7 @@ def read_table(path: Path, heads: Mapping[str, str] | None = None) -> Table:
 
 
 def _csv(path: Path) -> tuple[list[list[str]], bool]:
-    data = _bytes(path)
-    text = _decoded(path, data)
+    text, _ = decoded(path)
     head = next((line for line in text.splitlines() if line.strip()), "")
     separator = max(";\t,", key=head.count)
     try:
@@ -130,16 +129,23 @@ def _bytes(path: Path) -> bytes:
         raise InputError(Fault(f"cannot be read ({error.strerror})", str(path))) from error
 
 
-def _decoded(path: Path, data: bytes) -> str:
+def decoded(path: Path) -> tuple[str, str]:
+    """The text of a CSV file and the encoding it is written in.
+
+    Raises:
+        InputError: If it cannot be read, is too large, or is no text.
+    """
+    data = _bytes(path)
     if data.startswith((b"\xff\xfe", b"\xfe\xff")):
-        return data.decode("utf-16")
+        return data.decode("utf-16", errors="replace"), "utf-16"
     if b"\0" in data:
         raise InputError(Fault("is no text file", str(path), remedy="Export the table as CSV or XLSX."))
+    encoding = "utf-8-sig" if data.startswith(b"\xef\xbb\xbf") else "utf-8"
     try:
-        return data.decode("utf-8-sig")
+        return data.decode(encoding), encoding
     except UnicodeDecodeError:
         # spreadsheets on Western Windows still write this code page (common practice)
-        return data.decode("cp1252", errors="replace")
+        return data.decode("cp1252", errors="replace"), "cp1252"
 
 
 def _columns(row: list[str], heads: Mapping[str, str]) -> dict[str, tuple[int, str]]:

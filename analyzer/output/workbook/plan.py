@@ -9,6 +9,7 @@ from analyzer.evidence import Evidence
 from analyzer.ledger import Entry, Ledger
 from analyzer.load import Draw, Gap
 from analyzer.output.workbook.layout import HEAD_ROW
+from analyzer.output.workbook.typed import Typed
 
 FIRST_ROW = HEAD_ROW + 1
 
@@ -20,7 +21,7 @@ class Line:
     Attributes:
         rail: Its rail.
         ref, key, value, sheet: The part.
-        kind: "stated", "ruled", "computed", "regulator" or "gap".
+        kind: "stated", "ruled", "computed", "regulator", "gap", or "gone" for a part not there now.
         amps: The current as evidence, None for a gap.
         gap: The gap, None for a draw.
         below: Entry whose input current this is, where it can be followed live.
@@ -48,8 +49,11 @@ class Plan:
     entry_rows: Mapping[str, int]
 
 
-def plan(ledger: Ledger) -> Plan:
-    """The plan for a ledger: rails in tree order, each rail's lines together, entries worst first."""
+def plan(ledger: Ledger, typed: Typed) -> Plan:
+    """The plan for a ledger: rails in tree order, each rail's lines together, entries worst first.
+
+    What was typed for a part or rail that is gone gets a line of kind "gone" at the end: nothing typed is dropped.
+    """
     values = {entry.key: entry for entry in ledger.entries}
     lines: list[Line] = []
     blocks: dict[str, tuple[int, int]] = {}
@@ -62,6 +66,10 @@ def plan(ledger: Ledger) -> Plan:
         if mine:
             blocks[rail.name] = (FIRST_ROW + len(lines), FIRST_ROW + len(lines) + len(mine) - 1)
         lines += mine
+    there = {(line.key, line.rail) for line in lines}
+    for (key, gone), (ref, value) in typed.parts.items():
+        if (key, gone) not in there:
+            lines.append(Line(gone, ref, key, value, "", "gone", None, None))
     return Plan(
         tuple(lines),
         {rail.name: FIRST_ROW + number for number, rail in enumerate(ledger.rails)},

@@ -53,6 +53,7 @@ COLUMNS = (
     Column("Engine heat [W]", 9, "plain"),
     Column("Engine junction [°C]", 9, "plain"),
     Column("Engine load [A]", 9, "plain"),
+    Column("θ as audited [K/W]", 9, "plain"),
     Column("Identity", 12),
 )
 PLACES: Mapping[str, int] = {column.head: number for number, column in enumerate(COLUMNS)}
@@ -74,10 +75,8 @@ def write(book: Book, ledger: Ledger, plan: Plan) -> None:
     if ledger.entries:
         sheet.verdict_colours(FIRST_ROW, last, PLACES["Verdict"])
         _margin_colours(sheet, last)
-    for first in (PLACES["k0 [W]"], PLACES["Engine heat [W]"]):
-        sheet.raw.set_column(
-            first, first + 9 if first == PLACES["k0 [W]"] else first + 3, 9, None, {"level": 1, "hidden": 1}
-        )
+    hidden = {"level": 1, "hidden": 1}
+    sheet.raw.set_column(PLACES["k0 [W]"], PLACES["Identity"], 9, None, hidden)
     sheet.raw.print_area(0, 0, max(last, FIRST_ROW), PLACES["Sheet"])
 
 
@@ -122,6 +121,7 @@ def _row(sheet: Sheet, entry: Entry, plan: Plan, shares: Mapping[tuple[str, str]
         "Engine heat [W]": worst.watts if worst else None,
         "Engine junction [°C]": worst.junction if worst else None,
         "Engine load [A]": load,
+        "θ as audited [K/W]": live.get("theta_air") if closed else None,
         "Identity": entry.key,
     }
     for head, value in static.items():

@@ -78,7 +78,7 @@ def write(book: Book, ledger: Ledger, settings: Settings) -> None:
     sheet.put(row, 6, "Thin_air")
     book.book.define_name("Thin_air", f"=Settings!$B${row + 1}")
     row += 2
-    for one in ledger.settings:
-        sheet.row(row, (one.quantity, None, one.unit, None, one.source, one.grade.value))
-        sheet.put(row, 1, show_span(one.span, one.unit), "text")
+    for evidence in ledger.settings:
+        sheet.row(row, (evidence.quantity, None, evidence.unit, None, evidence.source, evidence.grade.value))
+        sheet.put(row, 1, show_span(evidence.span, evidence.unit), "text")
         row += 1

@@ -1,0 +1,174 @@
+"""The Rails and Currents sheets: who draws what, where currents are typed, and the sums that follow.
+
+Lines of one rail stand together, so that each rail sums its own block and no formula ever meets itself.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+from analyzer.ledger import Entry, Ledger
+from analyzer.output.workbook.layout import Book, Column, Sheet
+from analyzer.output.workbook.plan import FIRST_ROW, Line, Plan
+from analyzer.output.workbook.regulators import PLACES as REGULATOR_PLACES
+from analyzer.output.workbook.regulators import _letter as letter
+
+RAIL_COLUMNS = (
+    Column("Rail", 24, "wrap"),
+    Column("Fed by", 22, "wrap"),
+    Column("Low [V]", 9, "volts"),
+    Column("Nominal [V]", 9, "volts"),
+    Column("High [V]", 9, "volts"),
+    Column("Known load high [A]", 11, "amps"),
+    Column("Missing currents", 10, "count"),
+    Column("Headroom until over [A]", 11, "amps"),
+    Column("Grade", 10),
+    Column("Source of the voltage, or why it is unknown", 44, "wrap"),
+    Column("Joined by", 18, "wrap"),
+    Column("Nets", 30, "wrap"),
+)
+
+CURRENT_COLUMNS = (
+    Column("Rail", 20, "wrap"),
+    Column("Part", 8),
+    Column("Value", 18, "wrap"),
+    Column("Kind", 10),
+    Column("Low [A]", 9, "amps"),
+    Column("Nominal [A]", 9, "amps"),
+    Column("High [A]", 9, "amps"),
+    Column("Type low [A]", 10, "plain"),
+    Column("Type nominal [A]", 10, "plain"),
+    Column("Type high [A]", 10, "plain"),
+    Column("Your note", 24, "wrap"),
+    Column("Counts as [A]", 10, "amps"),
+    Column("Missing", 8, "count"),
+    Column("Rail headroom [A]", 10, "amps"),
+    Column("Suggestions from notes, or source", 44, "wrap"),
+    Column("Sheet", 14, "wrap"),
+    Column("i0 [A]", 8, "plain"),
+    Column("i1 [A/A]", 8, "plain"),
+    Column("i2 [A/A²]", 8, "plain"),
+    Column("Identity", 12),
+)
+CURRENT_PLACES: Mapping[str, int] = {column.head: number for number, column in enumerate(CURRENT_COLUMNS)}
+
+
+def write_rails(book: Book, ledger: Ledger, plan: Plan) -> None:
+    """Write the Rails sheet: sources first, as a tree."""
+    remark = "In tree order: each rail after the one that feeds it. Loads sum the lines of the Currents sheet."
+    sheet = book.sheet("Rails", "Rails", remark, RAIL_COLUMNS)
+    feeders = _feeders(ledger)
+    for rail in ledger.rails:
+        row = plan.rail_rows[rail.name]
+        volts = rail.volts
+        ends = (volts.span.low, volts.span.nominal, volts.span.high) if volts else (None, None, None)
+        feeds = ", ".join(dict.fromkeys(feed.ref or feed.kind for feed in rail.feeds))
+        why = volts.source if volts else rail.why_open
+        load = ledger.loads.get(rail.name)
+        grade = volts.grade.value if volts else ""
+        joined, nets = ", ".join(rail.links), ", ".join(rail.nets)
+        sheet.row(row, (rail.name, feeds, *ends, None, None, None, grade, why, joined, nets))
+        block = plan.blocks.get(rail.name)
+        total, gaps = "=0", "=0"
+        if block:
+            first, last = block[0] + 1, block[1] + 1
+            total = f"=SUM(Currents!$L${first}:$L${last})"
+            gaps = f"=SUM(Currents!$M${first}:$M${last})"
+        sheet.formula(row, 5, total, load.known.high if load else 0.0)
+        sheet.formula(row, 6, gaps, len(load.gaps) if load else 0)
+        entry = feeders.get(rail.name)
+        place = letter(REGULATOR_PLACES["Further load until over [A]"])
+        reference = f"Regulators!{place}${plan.entry_rows[entry.key] + 1}" if entry else '""'
+        sheet.formula(row, 7, f"={reference}", _room(entry))
+    sheet.filter(FIRST_ROW + len(ledger.rails) - 1)
+
+
+def _feeders(ledger: Ledger) -> dict[str, Entry]:
+    """The entry that feeds each rail; of several the one with least room."""
+    found: dict[str, Entry] = {}
+    for entry in ledger.entries:
+        for output in entry.outputs:
+            if entry.fitted and output.rail:
+                found.setdefault(output.rail, entry)
+    return found
+
+
+def _room(entry: Entry | None) -> object:
+    if entry is None or entry.headroom is None or entry.live.get("closed_form") != 1.0:
+        return ""
+    return entry.headroom.over
+
+
+def write_currents(
+    book: Book,
+    plan: Plan,
+    typed: Mapping[tuple[str, str], tuple[object, object, object]],
+    notes: Mapping[tuple[str, str], str],
+) -> None:
+    """Write the Currents sheet.
+
+    Args:
+        book: The workbook.
+        plan: Rows.
+        typed: (identity, rail) → what was typed as low, nominal, high; carried over.
+        notes: (identity, rail) → what was typed as a note.
+    """
+    remark = (
+        "Type currents into the coloured cells: amperes as numbers, or text with a unit such as 120 mA or 80..150 mA."
+    )
+    sheet = book.sheet("Currents", "Currents", remark, CURRENT_COLUMNS, freeze=2)
+    for number, line in enumerate(plan.lines):
+        _line(sheet, FIRST_ROW + number, line, plan, typed.get((line.key, line.rail)), notes.get((line.key, line.rail)))
+    last = FIRST_ROW + len(plan.lines) - 1
+    sheet.filter(last)
+    first = CURRENT_PLACES["i0 [A]"]
+    sheet.raw.set_column(first, first + 3, 9, None, {"level": 1, "hidden": 1})
+    sheet.raw.print_area(0, 0, max(last, FIRST_ROW), CURRENT_PLACES["Sheet"])
+    if plan.lines:
+        rule = {"type": "cell", "criteria": ">", "value": "0", "format": book.form("open")}
+        sheet.raw.conditional_format(FIRST_ROW, CURRENT_PLACES["Missing"], last, CURRENT_PLACES["Missing"], rule)
+
+
+def _line(
+    sheet: Sheet,
+    row: int,
+    line: Line,
+    plan: Plan,
+    typed: tuple[object, object, object] | None,
+    note: str | None,
+) -> None:
+    span = line.amps.span if line.amps else None
+    ends = span.corners if span else (None, None, None)
+    words = _words(line)
+    sheet.row(row, (line.rail, line.ref or "off-board", line.value, line.kind, *ends))
+    for offset in range(3):
+        sheet.put(row, 7 + offset, typed[offset] if typed else None, "input")
+    sheet.put(row, 10, note, "input")
+    sheet.put(row, CURRENT_PLACES["Suggestions from notes, or source"], words)
+    sheet.put(row, CURRENT_PLACES["Sheet"], line.sheet)
+    sheet.put(row, CURRENT_PLACES["Identity"], line.key)
+    below = next((o.rail for o in line.below.outputs if o.rail in plan.rail_rows), None) if line.below else None
+    if line.below and below:
+        for offset, key in enumerate(("i0", "i1", "i2")):
+            sheet.put(row, CURRENT_PLACES["i0 [A]"] + offset, line.below.live[key])
+    at = f"{row + 1}"
+    below_load = f"Rails!$F${plan.rail_rows[below] + 1}" if below else "0"
+    follows = f"$Q{at}+$R{at}*{below_load}+$S{at}*{below_load}^2"
+    counts = (
+        f"=IF(ISNUMBER($J{at}),$J{at},IF(ISNUMBER($I{at}),$I{at},IF(ISNUMBER($H{at}),$H{at},"
+        f"IF(ISNUMBER($R{at}),{follows},N($G{at})))))"
+    )
+    sheet.formula(row, CURRENT_PLACES["Counts as [A]"], counts, span.high if span else 0.0)
+    missing = f'=IF(OR($D{at}<>"gap",COUNTA($H{at}:$J{at})>0),0,1)'
+    sheet.formula(row, CURRENT_PLACES["Missing"], missing, 1 if line.gap else 0)
+    if line.rail in plan.rail_rows:
+        place = f"Rails!$H${plan.rail_rows[line.rail] + 1}"
+        sheet.formula(row, CURRENT_PLACES["Rail headroom [A]"], f'=IF(ISNUMBER({place}),{place},"")', "")
+
+
+def _words(line: Line) -> str:
+    if line.gap is not None:
+        return "; ".join(line.gap.suggestions) or line.gap.why
+    if line.amps is not None:
+        return line.amps.source
+    return "typed for a part or rail that is not on the board now: rename, move or delete it"

@@ -1,0 +1,116 @@
+"""The plain list sheets: Remedies, Evidence, Findings (with a column for the reviewer's answer), Not understood."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+
+from analyzer.findings.base import Finding
+from analyzer.ledger import Ledger
+from analyzer.output.workbook.layout import Book, Column
+from analyzer.output.workbook.plan import FIRST_ROW
+
+REMEDY_COLUMNS = (
+    Column("Part", 8),
+    Column("Verdict", 9),
+    Column("Kind", 20),
+    Column("What the numbers say (none is a promise)", 100, "wrap"),
+)
+EVIDENCE_COLUMNS = (
+    Column("Part", 8),
+    Column("Quantity", 34, "wrap"),
+    Column("Low", 11, "plain"),
+    Column("Nominal", 11, "plain"),
+    Column("High", 11, "plain"),
+    Column("Unit", 9),
+    Column("Grade", 10),
+    Column("Source", 60, "wrap"),
+    Column("Formula", 30, "wrap"),
+    Column("Note", 34, "wrap"),
+)
+FINDING_COLUMNS = (
+    Column("Weight", 8),
+    Column("About", 14, "wrap"),
+    Column("Finding", 22, "wrap"),
+    Column("What", 56, "wrap"),
+    Column("What to do", 44, "wrap"),
+    Column("Where", 26, "wrap"),
+    Column("Your answer", 28, "wrap"),
+    Column("Identity", 12),
+)
+
+
+def write_remedies(book: Book, ledger: Ledger) -> None:
+    """Write the Remedies sheet."""
+    remark = "Each line holds with everything else as it is."
+    sheet = book.sheet("Remedies", "Remedies", remark, REMEDY_COLUMNS)
+    row = FIRST_ROW
+    for entry in ledger.entries:
+        for remedy in entry.remedies:
+            sheet.row(row, (entry.ref, entry.verdict.value, remedy.kind, remedy.text))
+            row += 1
+        for name, kelvin in entry.sensitivity[:3]:
+            text = f"{name} alone moves the junction by {kelvin:.1f} K over its span"
+            sheet.row(row, (entry.ref, entry.verdict.value, "sensitivity", text))
+            row += 1
+        if entry.chance is not None:
+            over, low, high = entry.chance
+            text = f"chance of exceeding the limit {over:.1%}; junction {low:.1f} to {high:.1f} °C (5 to 95 %), "
+            text += "triangular over each span, inputs independent"
+            sheet.row(row, (entry.ref, entry.verdict.value, "uncertainty", text))
+            row += 1
+    sheet.filter(row - 1)
+    if row > FIRST_ROW:
+        sheet.verdict_colours(FIRST_ROW, row - 1, 1)
+
+
+def write_evidence(book: Book, ledger: Ledger) -> None:
+    """Write the Evidence sheet: every number that entered a budget."""
+    remark = "Grades, best first: stated, ruled, derived, presumed. An entry is as good as its weakest number."
+    sheet = book.sheet("Evidence", "Evidence", remark, EVIDENCE_COLUMNS)
+    row = FIRST_ROW
+    for entry in ledger.entries:
+        for one in entry.evidence:
+            source = (one.unit, one.grade.value, one.source, one.formula, one.note)
+            sheet.row(row, (entry.ref, one.quantity, *one.span.corners, *source))
+            row += 1
+    sheet.filter(row - 1)
+
+
+def write_findings(book: Book, ledger: Ledger, answers: Mapping[tuple[str, str, str], str]) -> None:
+    """Write the Findings sheet.
+
+    Args:
+        book: The workbook.
+        ledger: The ledger.
+        answers: (finding, subject, identity) → what a reviewer answered; carried over.
+    """
+    remark = "Answer in the coloured column; a re-run carries the answers over."
+    sheet = book.sheet("Findings", "Findings", remark, FINDING_COLUMNS)
+    row = FIRST_ROW
+    for finding in ledger.findings:
+        where = (finding.message, finding.remedy, finding.where)
+        sheet.row(row, (finding.weight.value, finding.subject, finding.name, *where, None, finding.key))
+        sheet.put(row, 6, answers.get(answer_key(finding)), "input")
+        row += 1
+    sheet.filter(row - 1)
+    sheet.raw.set_column(7, 7, 12, None, {"level": 1, "hidden": 1})
+    sheet.raw.print_area(0, 0, max(row - 1, FIRST_ROW), 6)
+    if row > FIRST_ROW:
+        sheet.verdict_colours(FIRST_ROW, row - 1, 0)
+
+
+def answer_key(finding: Finding) -> tuple[str, str, str]:
+    """What an answer is filed under: the same finding about the same part, whatever its wording."""
+    return (finding.name, finding.subject, finding.key)
+
+
+def write_not_understood(book: Book, ledger: Ledger) -> None:
+    """Write the sheet of parts that look like regulators and that no rule knows."""
+    remark = (
+        "Write a rule for each ('heatledger rules draft' makes one to fill in), or declare that it is no regulator."
+    )
+    sheet = book.sheet("Not understood", "Not understood", remark, (Column("Part and why", 120, "wrap"),), freeze=0)
+    for number, line in enumerate(ledger.not_understood):
+        sheet.put(FIRST_ROW + number, 0, line)
+    if not ledger.not_understood:
+        sheet.put(FIRST_ROW, 0, "nothing: every regulator found has a rule")

@@ -1,0 +1,86 @@
+"""The Summary sheet: verdict counts, the worst part, inputs with hashes, cautions, review and sign-off."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from importlib.metadata import version
+
+from analyzer.cli import CAUTION
+from analyzer.findings.base import Verdict
+from analyzer.ledger import Ledger
+from analyzer.output.ledger_json import summary
+from analyzer.output.workbook.layout import Book
+from analyzer.output.workbook.plan import FIRST_ROW
+from analyzer.output.workbook.regulators import PLACES
+from analyzer.output.workbook.regulators import _letter as letter
+
+SIGN_OFF = ("Reviewed by", "Date", "Decision", "Remarks")
+CAUTIONS = (
+    CAUTION,
+    "θJA depends on the board: ±20 % of the rise at best with a matching board class, ±40 % with generic figures.",
+    "Thermal shutdown is no limit to design to. Hot parts can burn: guard accessible ones.",
+    "Currents that nobody stated are missing, not zero: a budget with a missing current is open.",
+)
+_WORDS = {
+    Verdict.OVER: "a limit is exceeded",
+    Verdict.OPEN: "cannot be closed: something is missing",
+    Verdict.TIGHT: "inside the limit, outside the required margin",
+    Verdict.CLEAR: "inside the limit with the required margin, on complete evidence",
+}
+
+
+def write(book: Book, ledger: Ledger, sign_off: Mapping[str, str]) -> None:
+    """Write the sheet; the verdict counts follow the Regulators sheet."""
+    sheet = book.sheet("Summary", f"Thermal budgets: {ledger.board}", CAUTION, ())
+    raw = sheet.raw
+    raw.set_column(0, 0, 24)
+    raw.set_column(1, 1, 44)
+    raw.set_column(2, 2, 70)
+    row = 3
+
+    def put(label: str, value: object, more: object = None) -> None:
+        nonlocal row
+        sheet.put(row, 0, label, "label")
+        sheet.put(row, 1, value, "wrap" if isinstance(value, str) else "plain")
+        sheet.put(row, 2, more, "wrap")
+        row += 1
+
+    if not ledger.complete:
+        put("INCOMPLETE", "part of the drawing could not be read; no part can be clear")
+    if not any(entry.fitted for entry in ledger.entries):
+        put("NO REGULATORS FOUND", "nothing was budgeted")
+    column = letter(PLACES["Verdict"])
+    last = FIRST_ROW + max(len(ledger.entries), 1)
+    first_count = row
+    for verdict in Verdict:
+        sheet.put(row, 0, verdict.value, "label")
+        formula = f'=COUNTIF(Regulators!{column}${FIRST_ROW + 1}:{column}${last},"{verdict.value}")'
+        raw.write_formula(row, 1, formula, book.form("count"), ledger.count(verdict))
+        sheet.put(row, 2, _WORDS[verdict], "wrap")
+        row += 1
+    sheet.verdict_colours(first_count, row - 1, 0)
+    facts = summary(ledger)
+    margin = facts["worst_margin_kelvin"]
+    put(
+        "Worst part",
+        facts["worst_part"] or "none known",
+        "" if margin is None else f"margin {margin:+.1f} K as audited",
+    )
+    put("Missing currents", facts["gaps"])
+    put("heatledger", version("heatledger"))
+    row += 1
+    for caution in CAUTIONS:
+        put("Caution", "", caution)
+    row += 1
+    sheet.put(row, 0, "Review and sign-off", "title")
+    row += 1
+    for label in SIGN_OFF:
+        sheet.put(row, 0, label, "label")
+        sheet.put(row, 1, sign_off.get(label), "input")
+        row += 1
+    row += 1
+    sheet.put(row, 0, "Inputs read", "title")
+    row += 1
+    for file in ledger.inputs:
+        put("", file.path, f"SHA-256 {file.sha256}")
+    raw.print_area(0, 0, row, 2)
