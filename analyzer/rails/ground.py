@@ -9,7 +9,7 @@ from analyzer.rails.names import base_name, named_volts
 
 _NAME = re.compile(
     r"(?:[A-Z0-9]{1,8}[_-]?)?(?<![A-Z])(?:[ADPSFC]|PWR|SIG|CH|ISO|USB|RF|HV|LV|POE|VBUS)?[_-]?GND(?:[A-Z]{0,4}|[_-]?\w{0,12})"
-    r"|(?:\w{1,10}[_-])?(?:RTN|RETURN)|GROUND\w*|EARTH\w*|VSS[A-Z0-9_]{0,6}|0V[A-Z0-9_]{0,4}|CHASSIS\w*|SHIELD\w*|PE|FG|COM(?:MON)?"
+    r"|(?:\w{1,10}[_-])?(?:RTN|RETURN)|GROUND\w*|EARTH\w*|VSS[A-Z0-9_]{0,6}|0V(?:[A-Z_][A-Z0-9_]{0,4})?|CHASSIS\w*|SHIELD\w*|PE|FG"
 )
 _NOT = re.compile(r"DET|DETECT|SENSE|SNS|_?OK$|_FB$|EN$")
 _GROUND_PIN = re.compile(r"(?:[ADPSG]?GND\w{0,4}|VSS\w?|GROUND|EP|E?PAD|GND/HS|V-)")

@@ -88,7 +88,7 @@ class _Tree:
 
     def _volts(self, rail: Rail) -> str:
         if rail.volts is None:
-            return f"voltage not known ({rail.why_open})" if rail.why_open else "voltage not known"
+            return "voltage not known"
         return f"{_volts(rail.volts)} {rail.volts.weakest.value}"
 
     def _load(self, rail: Rail) -> str:
@@ -98,17 +98,25 @@ class _Tree:
         if load.is_complete:
             return f"load {show_span(load.known, 'A')}"
         gaps = f"{len(load.gaps)} without a current" if len(load.gaps) > 1 else "1 part without a current"
-        if not load.known.high:
+        if not load.known.nominal:
             return f"load not known, {gaps}"
         return f"load at least {show(load.known.nominal, 'A')}, {gaps}"
 
     def _open(self) -> Iterable[str]:
-        reasons = [(wiring, wiring.why_open) for wiring in self.rails.wirings if wiring.why_open]
-        if not reasons:
-            return
-        yield "not known:"
-        for wiring, why in reasons:
-            yield from self._wrapped(f"{_channel(wiring)}: {'; '.join(why)}", 2)
+        """Root causes once, then which parts they leave open."""
+        causes = {cause: None for rail in self.rails.rails for cause in rail.why_open.split("; ") if cause}
+        left: dict[str, list[str]] = {}
+        for wiring in self.rails.wirings:
+            for reason in wiring.why_open:
+                head, _, tail = reason.partition(": ")
+                is_told = bool(tail) and all(cause in causes for cause in tail.split("; "))
+                left.setdefault(head if is_told else reason, []).append(_channel(wiring))
+        if causes or left:
+            yield "not known:"
+        for cause in causes:
+            yield from self._wrapped(cause, 2)
+        for reason, refs in left.items():
+            yield from self._wrapped(f"{', '.join(refs)}: {reason}", 2)
 
     def _wrapped(self, text: str, indent: int) -> Iterable[str]:
         return textwrap.wrap(

@@ -352,7 +352,9 @@ def test_ground_names(name: str) -> None:
     assert is_ground_name(name)
 
 
-@pytest.mark.parametrize("name", ["-9V", "VEE", "+5V", "GND_DET", "VSYS", "/psu/VN", "FGND_SENSE", "PGOOD"])
+@pytest.mark.parametrize(
+    "name", ["-9V", "VEE", "+5V", "GND_DET", "VSYS", "/psu/VN", "FGND_SENSE", "PGOOD", "0V9", "0V85", "0V6_REG", "COM"]
+)
 def test_names_that_are_not_ground(name: str) -> None:
     from analyzer.rails.ground import is_ground_name
 

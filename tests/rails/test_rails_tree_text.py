@@ -95,7 +95,7 @@ def test_unknown_is_listed_with_its_reason() -> None:
     made = circuit(chip, part("J1", "Jack", {"1 P": "DC_IN", "2 N": "GND"}), part("C1", "1u", "OUT GND"))
     text = tree_text(find_rails(made, (recognised(chip, Topology.LINEAR, volts=5.0),), rulebook(), Settings()))
     tail = " ".join(text.partition("not known:\n")[2].split())
-    assert tail == "U1: input voltage not known: DC_IN comes from J1 and nothing states its voltage"
+    assert tail == "DC_IN comes from J1 and nothing states its voltage U1: input voltage not known"
 
 
 @pytest.mark.boards
