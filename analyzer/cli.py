@@ -67,6 +67,13 @@ def main(argv: Sequence[str] | None = None) -> int:
         # the reader of a pipe went away: silence the interpreter's own flush at exit
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
         return 0
+    except Exception as error:
+        if os.environ.get("HEATLEDGER_TRACE"):
+            raise
+        # a traceback means nothing to a user; the variable brings it back for a report
+        print(f"heatledger: internal fault: {type(error).__name__}: {error}", file=sys.stderr)
+        print("heatledger: please report it with the output of a run with HEATLEDGER_TRACE=1", file=sys.stderr)
+        return 2
     except KeyboardInterrupt:
         print("heatledger: interrupted; what was finished is whole", file=sys.stderr)
         return 130

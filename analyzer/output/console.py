@@ -118,7 +118,8 @@ def _finding_lines(findings: Iterable[Finding], width: int) -> Iterator[str]:
         yield "findings"
     for finding in shown:
         weight = "note" if finding.weight is Weight.NOTE else finding.weight.value
-        yield from _wrapped(f"{weight:<5} {finding.subject}: {finding.message} ({finding.name})", width)
+        message = finding.message.removeprefix(f"{finding.subject}: ")
+        yield from _wrapped(f"{weight:<5} {finding.subject}: {message} ({finding.name})", width)
         if finding.weight is not Weight.NOTE:
             yield from _wrapped(f"      → {finding.remedy}", width, indent="        ")
 
@@ -137,9 +138,18 @@ def gap_lines(ledger: Ledger, width: int) -> Iterator[str]:
         yield from _wrapped(f"  {rail}{known}{_room(ledger, rail)}", width, indent="    ")
         names = ", ".join(f"{gap.ref} {gap.value}".strip() for gap in gaps)
         yield from _wrapped(f"    {names}", width, indent="    ")
-        for gap in gaps:
-            for suggestion in gap.suggestions:
-                yield from _wrapped(f"    note for {gap.ref}: {suggestion}", width, indent="      ")
+        for suggestion, refs in _suggestions(gaps).items():
+            whom = "" if suggestion.startswith(f"for all of {rail}:") else f" for {', '.join(refs)}"
+            yield from _wrapped(f"    note{whom}: {suggestion}", width, indent="      ")
+
+
+def _suggestions(gaps: Iterable[Gap]) -> dict[str, list[str]]:
+    """Each suggestion once, with the parts it stands beside."""
+    found: dict[str, list[str]] = {}
+    for gap in gaps:
+        for suggestion in gap.suggestions:
+            found.setdefault(suggestion, []).append(gap.ref)
+    return found
 
 
 def _room(ledger: Ledger, rail: str) -> str:

@@ -5,8 +5,8 @@ from __future__ import annotations
 from typing import Any
 
 from analyzer.ledger import Ledger
-from analyzer.output.workbook.layout import Book, Column
-from analyzer.output.workbook.plan import FIRST_ROW, Plan
+from analyzer.output.workbook.layout import FIRST_ROW, Book, Column
+from analyzer.output.workbook.plan import Plan
 from analyzer.output.workbook.regulators import PLACES, is_live
 from analyzer.output.workbook.regulators import _letter as letter
 

@@ -8,8 +8,8 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from analyzer.ledger import Entry, Ledger
-from analyzer.output.workbook.layout import Book, Column, Sheet
-from analyzer.output.workbook.plan import FIRST_ROW, Line, Plan
+from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, Sheet
+from analyzer.output.workbook.plan import Line, Plan
 from analyzer.output.workbook.regulators import PLACES as REGULATOR_PLACES
 from analyzer.output.workbook.regulators import _letter as letter
 

@@ -13,6 +13,11 @@ LONGEST_CELL = 32_000
 HEAD_ROW = 3
 """Row (from 0) of the column heads; title and remarks stand above."""
 
+FIRST_ROW = HEAD_ROW + 1
+
+SIGN_OFF = ("Reviewed by", "Date", "Decision", "Remarks")
+"""Labels of the review block on the Summary sheet."""
+
 
 @dataclass(frozen=True, slots=True)
 class Column:

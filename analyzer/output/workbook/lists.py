@@ -6,8 +6,7 @@ from collections.abc import Mapping
 
 from analyzer.findings.base import Finding
 from analyzer.ledger import Ledger
-from analyzer.output.workbook.layout import Book, Column
-from analyzer.output.workbook.plan import FIRST_ROW
+from analyzer.output.workbook.layout import FIRST_ROW, Book, Column
 
 REMEDY_COLUMNS = (
     Column("Part", 8),

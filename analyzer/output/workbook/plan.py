@@ -8,10 +8,8 @@ from dataclasses import dataclass
 from analyzer.evidence import Evidence
 from analyzer.ledger import Entry, Ledger
 from analyzer.load import Draw, Gap
-from analyzer.output.workbook.layout import HEAD_ROW
+from analyzer.output.workbook.layout import FIRST_ROW
 from analyzer.output.workbook.typed import Typed
-
-FIRST_ROW = HEAD_ROW + 1
 
 
 @dataclass(frozen=True, slots=True)

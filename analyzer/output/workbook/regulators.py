@@ -10,8 +10,8 @@ from collections.abc import Mapping
 
 from analyzer.findings.base import Weight
 from analyzer.ledger import Entry, Ledger
-from analyzer.output.workbook.layout import Book, Column, Sheet
-from analyzer.output.workbook.plan import FIRST_ROW, Plan
+from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, Sheet
+from analyzer.output.workbook.plan import Plan
 
 COLUMNS = (
     Column("Part", 8),

@@ -9,12 +9,10 @@ from analyzer.cli import CAUTION
 from analyzer.findings.base import Verdict
 from analyzer.ledger import Ledger
 from analyzer.output.ledger_json import summary
-from analyzer.output.workbook.layout import Book
-from analyzer.output.workbook.plan import FIRST_ROW
+from analyzer.output.workbook.layout import FIRST_ROW, SIGN_OFF, Book
 from analyzer.output.workbook.regulators import PLACES
 from analyzer.output.workbook.regulators import _letter as letter
 
-SIGN_OFF = ("Reviewed by", "Date", "Decision", "Remarks")
 CAUTIONS = (
     CAUTION,
     "θJA depends on the board: ±20 % of the rise at best with a matching board class, ±40 % with generic figures.",

@@ -17,8 +17,7 @@ from analyzer.grammar import parse, parse_load
 from analyzer.limits import TABLE_ROWS
 from analyzer.load import Pulse
 from analyzer.output.workbook.archive_check import check_archive
-from analyzer.output.workbook.layout import HEAD_ROW
-from analyzer.output.workbook.summary import SIGN_OFF
+from analyzer.output.workbook.layout import HEAD_ROW, SIGN_OFF
 from analyzer.quantity import Dimension, Span
 from analyzer.settings import PartStatement, Policy, Settings, Site, StatedDraw
 
