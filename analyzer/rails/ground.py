@@ -34,8 +34,10 @@ def ground_nets(circuit: Circuit) -> frozenset[str]:
     net that carries most ground pins.
     """
     named = frozenset(net.name for net in circuit.nets if is_ground_name(net.name))
+    # beside a net called GND, one called VSS may be the negative supply of an analogue board
+    sure = frozenset(name for name in named if not base_name(name).upper().startswith("VSS"))
     if named:
-        return named
+        return sure or named
     votes: dict[str, tuple[int, int]] = {}
     for net in circuit.nets:
         volts = named_volts(net.name)

@@ -388,3 +388,12 @@ def test_vbus_on_a_terminal_beside_a_usb_port_is_not_5_v() -> None:
 def test_link_for_a_part_that_does_not_exist() -> None:
     rails = find(IN5, *load("+5V"), settings=Settings(links={"R77": True}))
     assert named(rails, "link-without-part") == ["R77"]
+
+
+def test_vss_is_ground_only_where_nothing_is_called_ground() -> None:
+    amplifier = part("U3", "AMP", {"1 VDD power_in": "+5V", "2 VSS power_in": "VSS"})
+    alone = find(amplifier, part("J1", "DC", {"1 +": "+5V", "2 -": "VSS"}), part("C1", "1u", "+5V VSS"))
+    assert [rail.name for rail in alone.rails if rail.is_ground] == ["VSS"]
+    beside = find(amplifier, IN5, part("C1", "1u", "+5V GND"), part("C2", "1u", "VSS GND"))
+    assert [rail.name for rail in beside.rails if rail.is_ground] == ["GND"]
+    assert beside.of_net.get("VSS") != "GND"
