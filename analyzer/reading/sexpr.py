@@ -108,7 +108,7 @@ def flag(node: Node, key: str, default: bool = False) -> bool:
         if child == key:
             return True
         if type(child) is list and child and child[0] == key:
-            return len(child) == 1 or child[1] in {"yes", "true"}
+            return len(child) == 1 or child[1] == "yes" or child[1] == "true"
     return default
 
 

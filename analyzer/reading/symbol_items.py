@@ -93,7 +93,7 @@ def take_symbol(drawing: Drawing, node: Node) -> bool:
             mirror = text(entry)
         elif key == "unit":
             unit = _integer(entry)
-        elif key in {"convert", "body_style"}:
+        elif key == "convert" or key == "body_style":
             style = _integer(entry)
         elif key == "uuid":
             uuid = text(entry)

@@ -209,3 +209,21 @@ def test_every_line_of_a_file_cut_anywhere_is_an_error_or_a_circuit(tmp_path: Pa
 @pytest.mark.parametrize("name", ["x" * 300 + ".kicad_sch", "x" * 300 + ".net", "x" * 300])
 def test_name_that_is_too_long_is_one_clear_error(tmp_path: Path, name: str) -> None:
     assert "cannot be opened: File name too long" in fault_of(tmp_path / name)
+
+
+@pytest.mark.parametrize(
+    ("good", "bad"),
+    [
+        ("(unit 1)", "((unit) 1)"),
+        ('(uuid "TP1")', "((x) (y))"),
+        ("(in_bom yes)", "(in_bom (yes))"),
+        ("(size 20 200)", "(dnp (yes))"),
+        ('(property "Value"', "(property (x)"),
+        ("(lib_symbols", "(lib_symbols (symbol) (symbol (x)) ()"),
+        ('(project "p"', '(project ("p")'),
+    ],
+)
+def test_lists_where_words_belong_do_no_harm(tmp_path: Path, good: str, bad: str) -> None:
+    text = schematic(part("TP1", "TP", (0, 0), more="(in_bom yes)"), sheet("s", "c.kicad_sch"))
+    assert good in text
+    assert read(save(tmp_path, "p", text.replace(good, bad))).findings
