@@ -243,3 +243,65 @@ def test_remote_sense_behind_a_bead_and_second_decoy_divider() -> None:
     assert wiring.vout is not None
     assert wiring.vout.span.nominal == pytest.approx(1.6)
     assert rails.of_net["VOUT"] == rails.of_net["VCORE"]
+
+
+def test_jumper_and_transistor_switched_legs_of_a_drawn_board() -> None:
+    common = (part("R1", "100k 0.0%", "VOUT FB1"), part("R2", "10k 0.0%", "FB1 GND"), part("R3", "10k 0.0%", "FB1 N1"))
+    both = pytest.approx((8.8, 8.8, 16.8))  # 0.8·(1 + 100/10) and 0.8·(1 + 100/5)
+    jumper = part("JP1", "Jumper", "N1 GND", lib_id="Jumper:SolderJumper_2_Open")
+    wiring, rails = solve(*common, jumper)
+    assert wiring.vout.span.corners == both
+    assert "JP1" in wiring.vout.note
+    assert [finding.name for finding in rails.findings if finding.subject == "U1"] == ["adjustable-output"]
+    switch = part("Q1", "NMOS", {"1 G": "SEL", "2 S": "GND", "3 D": "N1"}, lib_id="Device:Q_NMOS_GSD")
+    wiring, _ = solve(*common, switch)
+    assert wiring.vout.span.corners == both
+    # a jumper at the pin itself, the resistor behind it
+    behind = (*common[:2], part("JP1", "J", "FB1 N1", lib_id="Jumper:Jumper_2_Open"), part("R3", "10k 0.0%", "N1 GND"))
+    wiring, _ = solve(*behind)
+    assert wiring.vout.span.corners == both
+    # bridged, it is no choice any more
+    bridged = part("JP1", "J", "N1 GND", lib_id="Jumper:SolderJumper_2_Bridged")
+    wiring, _ = solve(*common, bridged)
+    assert wiring.vout.span.corners == pytest.approx((16.8, 16.8, 16.8))
+
+
+def test_trimmer_of_a_drawn_board() -> None:
+    wiring, _ = solve(
+        part("R1", "10k 0.0%", "VOUT A"),
+        part("RV1", "10k", {"1": "A", "2": "FB1", "3": "B"}),
+        part("R2", "10k 0.0%", "B GND"),
+    )
+    assert wiring.vout.span.corners == pytest.approx((1.2, 1.6, 2.4), rel=1e-6)
+
+
+def test_rheostat_in_the_lower_leg() -> None:
+    # wiper tied to one end: 10k plus 0 to 10k below, 10k above
+    wiring, _ = solve(
+        part("R1", "10k 0.0%", "VOUT FB1"),
+        part("R2", "10k 0.0%", "FB1 A"),
+        part("RV1", "10k", {"1": "A", "2": "GND", "3": "GND"}),
+    )
+    assert wiring.vout.span.corners == pytest.approx((1.2, 0.8 * (1 + 10 / 15), 1.6), rel=1e-6)
+
+
+def test_pull_up_of_the_divider_to_another_rail() -> None:
+    # a margining resistor to a stated 2.5 V: (V-0.8)/10k + (2.5-0.8)/20k = 0.8/10k
+    board = circuit(
+        *buck(),  # type: ignore[arg-type]
+        part("R1", "10k 0.0%", "VOUT FB1"),
+        part("R2", "10k 0.0%", "FB1 GND"),
+        part("R3", "20k 0.0%", "FB1 +2V5"),
+        part("U7", "MCU", {"1 VDD power_in": "+2V5", "2 VSS power_in": "GND"}),
+        part("C7", "1u", "+2V5 GND"),
+    )
+    from rails_bench import figure
+
+    rails = find_rails(
+        board,
+        (recognised(board.by_ref["U1"][0], Topology.BUCK, reference=0.8),),
+        rulebook(),
+        Settings(supplies={"+2V5": figure(2.5)}),
+    )
+    assert rails.wirings[0].vout is not None
+    assert rails.wirings[0].vout.span.nominal == pytest.approx(0.8 + 10 * (0.8 / 10 - 1.7 / 20))
