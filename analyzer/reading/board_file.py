@@ -37,4 +37,4 @@ def copper_layers(schematic: Path, files: Files, report: Report) -> Evidence | N
     if not found:
         return None
     source = f"{files.name(board)}: list of layers"
-    return Evidence("copper layers", Span.exact(float(len(found))), "1", source, Grade.DERIVED)
+    return Evidence("copper layers", Span.exact(float(len(found))), "layers", source, Grade.DERIVED)

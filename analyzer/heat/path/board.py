@@ -96,4 +96,4 @@ def design_class(circuit: Circuit, settings: Settings, stated: PartStatement) ->
 
 def _why(found: BoardClass, note: str, source: str, grade: Grade) -> Evidence:
     rank = list(BoardClass).index(found)
-    return Evidence(f"board class {found.value}", Span.exact(float(rank)), "1", source, grade, note=note)
+    return Evidence(f"board class {found.value}", Span.exact(float(rank)), "rank", source, grade, note=note)

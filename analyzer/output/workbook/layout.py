@@ -28,6 +28,12 @@ class Column:
     form: str = "text"
 
 
+WRAPPED = frozenset({"wrap", "head"})
+LINE_HEIGHT = 15.0
+MOST_LINES = 20
+WIDE = 66.0
+"""Width taken for sheets without columns of their own."""
+
 FORMS: Mapping[str, Mapping[str, Any]] = {
     "text": {"valign": "top"},
     "wrap": {"valign": "top", "text_wrap": True},
@@ -36,9 +42,9 @@ FORMS: Mapping[str, Mapping[str, Any]] = {
     "amps": {"num_format": "0.0000", "valign": "top"},
     "watts": {"num_format": "0.0000", "valign": "top"},
     "kelvin": {"num_format": "0.0", "valign": "top"},
-    "count": {"num_format": "0", "valign": "top"},
+    "count": {"num_format": "0", "valign": "top", "align": "left"},
     "percent": {"num_format": "0.0%", "valign": "top"},
-    "plain": {"num_format": "General", "valign": "top"},
+    "plain": {"num_format": "General", "valign": "top", "align": "left"},
     # the look of spreadsheets' own Input style, by which people know where to type
     "input": {"bg_color": "#FFCC99", "font_color": "#3F3F76", "border": 1, "border_color": "#7F7F7F", "locked": False},
     "head": {"bold": True, "text_wrap": True, "valign": "top", "bottom": 2, "bg_color": "#E4E7EB"},
@@ -80,10 +86,11 @@ class Book:
         if columns:
             sheet.repeat_rows(HEAD_ROW)
             sheet.freeze_panes(HEAD_ROW + 1, freeze)
+        made = Sheet(self, sheet, columns)
         for number, column in enumerate(columns):
             sheet.set_column(number, number, column.width)
-            sheet.write_string(HEAD_ROW, number, column.head, self.form("head"))
-        return Sheet(self, sheet, columns)
+            made.put(HEAD_ROW, number, column.head, "head")
+        return made
 
 
 class Sheet:
@@ -93,6 +100,7 @@ class Sheet:
         self.book = book
         self.raw = sheet
         self.columns = columns
+        self._lines: dict[int, int] = {}
 
     def put(self, row: int, column: int, value: object, form: str | None = None) -> None:
         """A number as number, anything else as text; None and "" leave the cell empty."""
@@ -104,7 +112,17 @@ class Sheet:
         if isinstance(value, (int, float)) and not isinstance(value, bool):
             self.raw.write_number(row, column, value, cell)
         else:
-            self.raw.write_string(row, column, plain(str(value)), cell)
+            text = plain(str(value))
+            self.raw.write_string(row, column, text, cell)
+            if (form or self.columns[column].form) in WRAPPED:
+                self._grow(row, text, self.columns[column].width if self.columns else WIDE)
+
+    def _grow(self, row: int, text: str, width: float) -> None:
+        """Make a row as high as its longest wrapped text needs; not every program does it by itself."""
+        lines = min(MOST_LINES, sum(max(1, -(-len(line) // int(width * 1.05))) for line in text.split("\n")))
+        if lines > self._lines.get(row, 1):
+            self._lines[row] = lines
+            self.raw.set_row(row, LINE_HEIGHT * lines)
 
     def row(self, row: int, values: Sequence[object]) -> None:
         """A whole row from the first column on."""

@@ -15,10 +15,10 @@ from analyzer.output.workbook.plan import Plan
 
 COLUMNS = (
     Column("Part", 8),
-    Column("Part number", 20, "wrap"),
-    Column("Kind", 10),
-    Column("Package", 10),
-    Column("Rail fed", 16, "wrap"),
+    Column("Part number", 15, "wrap"),
+    Column("Kind", 8, "wrap"),
+    Column("Package", 9, "wrap"),
+    Column("Rail fed", 13, "wrap"),
     Column("Input low [V]", 8, "volts"),
     Column("Input high [V]", 8, "volts"),
     Column("Output low [V]", 8, "volts"),
@@ -77,7 +77,7 @@ def write(book: Book, ledger: Ledger, plan: Plan) -> None:
         _margin_colours(sheet, last)
     hidden = {"level": 1, "hidden": 1}
     sheet.raw.set_column(PLACES["k0 [W]"], PLACES["Identity"], 9, None, hidden)
-    sheet.raw.print_area(0, 0, max(last, FIRST_ROW), PLACES["Sheet"])
+    sheet.raw.print_area(0, 0, max(last, FIRST_ROW), PLACES["Grade"])
 
 
 def is_live(entry: Entry) -> bool:
