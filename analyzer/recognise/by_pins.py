@@ -22,6 +22,8 @@ from analyzer.rule import PASSAGES, Role, Topology
 
 MOST_NAMES = 12
 """A linear regulator has at most so many different pin names; more make a mixed-signal part."""
+MOST_NAMES_DESCRIBED = 24
+"""The same where the description speaks of a linear regulator: duals with supervisors, outputs set by pins."""
 
 LETTERS = frozenset({"U", "IC", "VR", "PS", "REG", "A", "N", "M", "MOD", "PWR", "T", "TR", "Q", "D", "CR"})
 _SHUNT_PINS = {
@@ -51,7 +53,11 @@ def channels_of(component: Component, circuit: Circuit | None) -> tuple[tuple[Ch
             # several numbered inputs and one switch: it selects among them
             passage = Topology.POWER_MUX
         return (Channel("", passage, 1, roles),), f"its description says {passage.value}"
-    if words.CHARGER.search(text) and Role.INPUT in roles and (battery := _battery(component.pins)):
+    battery = _battery(component.pins)
+    if not battery and words.CHARGER.search(component.description) and Role.SWITCH not in roles:
+        # a linear charger without a power path may call its battery pin an output
+        battery = roles.get(Role.OUTPUT, ())
+    if battery and words.CHARGER.search(text) and Role.INPUT in roles:
         pins = {**roles, Role.OUTPUT: battery}
         return (Channel("", Topology.CHARGER, 1, pins),), "its description says charger"
     if words.SHUNT.search(text) and (shunt := _shunt(component.pins)):
@@ -81,6 +87,9 @@ def _regulator(
 ) -> tuple[tuple[Channel, ...], str]:
     kind = words.kind_of(component.description) or words.kind_of(component.keywords)
     switches = bool(roles.get(Role.SWITCH)) and bool(roles.get(Role.INPUT) or kind is Topology.BOOST)
+    if kind is None and all(pin.kind == "input" for pin in roles.get(Role.SWITCH, ())):
+        # inputs called SW are push buttons
+        switches = False
     tapped = bool(roles.get(Role.FEEDBACK) or roles.get(Role.SENSE) or roles.get(Role.OUTPUT))
     if switches and tapped:
         topology = kind if kind not in (None, Topology.LINEAR) else _by_inductor(roles, circuit)
@@ -108,7 +117,8 @@ def _regulator(
 
 def _looks_linear(component: Component, roles: Mapping[Role, tuple[Pin, ...]]) -> bool:
     names = {plain_name(pin.name) for pin in component.pins}
-    if len(names) > MOST_NAMES or not (roles.get(Role.GROUND) or roles.get(Role.FEEDBACK)):
+    most = MOST_NAMES_DESCRIBED if words.kind_of(component.description) is Topology.LINEAR else MOST_NAMES
+    if len(names) > most or not (roles.get(Role.GROUND) or roles.get(Role.FEEDBACK)):
         return False
     inputs = [
         pin for pin in roles.get(Role.INPUT, ()) if plain_name(pin.name).upper().strip("0123456789") in _LINEAR_INPUTS

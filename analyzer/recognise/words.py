@@ -26,7 +26,7 @@ PASSAGES: tuple[tuple[re.Pattern[str], Topology], ...] = (
         Topology.LOAD_SWITCH,
     ),
 )
-CHARGER = re.compile(r"\bcharg(er|ing|e[- ]management)\b|li-?(ion|po)\w* charge", re.IGNORECASE)
+CHARGER = re.compile(r"(?<!dis)charg(er|ing|e[- ]management)\b|li-?(ion|po)\w* charge", re.IGNORECASE)
 SHUNT = re.compile(r"shunt|voltage reference.*(2|two)[- ]?(pin|terminal)", re.IGNORECASE)
 
 KINDS: tuple[tuple[re.Pattern[str], Topology], ...] = (

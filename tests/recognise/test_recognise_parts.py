@@ -44,6 +44,13 @@ def volts(value: str = "", pins: tuple[str, ...] = LINEAR_PINS, **more: str) -> 
         ("AP1231-3.3V(SOT23-5)", 3.3),
         ("TLV70018", 1.8),
         ("LP5907MFX-1.2", 1.2),
+        ("7805", 5),
+        ("7912", -12),
+        ("78L05", 5),
+        ("XC6206P332MR", 3.3),
+        ("LP2985-33DBVR", 3.3),
+        ("TLV1117LV33DCYR", 3.3),
+        ("RT9013-18GB", 1.8),
     ],
 )
 def test_voltage_codes(value: str, nominal: float) -> None:
