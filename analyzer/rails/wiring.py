@@ -13,6 +13,7 @@ from analyzer.part import Channel, Part
 from analyzer.quantity import Dimension, Span
 from analyzer.rail import Outside
 from analyzer.rails.kinds import Kind, value_of
+from analyzer.rails.names import named_volts
 from analyzer.rails.network import End, network_at
 from analyzer.rails.power import Power
 from analyzer.rule import SWITCHERS, Role, Topology
@@ -54,6 +55,16 @@ class Trace:
 
 def trace(power: Power, part: Part, channel: Channel) -> Trace:
     """Trace one channel."""
+    found = _trace(power, part, channel)
+    if part.rule is None and found.sign < 0 and not found.is_inverted and found.output is not None:
+        # without a rule the sign was read from words ("4.2V-18V"); a rail named with a plus knows better
+        named = [volts for net in power.names(power.mesh.groups.of(found.output)) if (volts := named_volts(net))]
+        if named and min(item.volts for item in named) > 0:
+            return replace(found, sign=1)
+    return found
+
+
+def _trace(power: Power, part: Part, channel: Channel) -> Trace:
     of, ground = power.mesh.groups.of, power.ground
     grounds = channel.nets(Role.GROUND)
     at_ground = [net for net in grounds if of(net) in ground]

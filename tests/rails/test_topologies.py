@@ -509,3 +509,19 @@ def test_doubled_references_do_not_mix_a_link_with_a_divider() -> None:
     ]
     rails = find(recognised(chip, Topology.BUCK, reference=0.8), J12, part("L1", "1u", "SW VO"), COUT, *resistors)
     assert nominal(only(rails)) == pytest.approx(1.6)
+
+
+def test_sign_read_from_words_gives_way_to_the_rails_name() -> None:
+    # recognised by pins only, its sign misread from "4.2V-18V"
+    chip = part(
+        "U1", "XB", {"1 VIN power_in": "+12V", "2 GND power_in": "GND", "3 SW output": "SW", "4 FB input": "FB"}
+    )
+    rails = find(
+        recognised(chip, Topology.BUCK, reference=0.8, sign=-1),
+        J12,
+        part("L1", "1u", "SW +3V3"),
+        part("R1", "31k6 1%", "+3V3 FB"),
+        BOTTOM,
+        part("C1", "10u", "+3V3 GND"),
+    )
+    assert nominal(only(rails)) == pytest.approx(3.328)
