@@ -34,8 +34,8 @@ def multiplier(altitude: float, exponent: float) -> float:
 
     Args:
         altitude: [m].
-        exponent: n, from `EXPONENTS` or the settings; 0 to 1.
+        exponent: n, from `EXPONENTS` or the settings; 0 to 2 (above 1 is stricter than any source).
     """
-    if not 0.0 <= exponent <= 1.0:
-        raise ValueError(f"the exponent lies between 0 and 1, not at {exponent:g}")
+    if not 0.0 <= exponent <= 2.0:
+        raise ValueError(f"the exponent lies between 0 and 2, not at {exponent:g}")
     return max(1.0, float(pressure_ratio(altitude) ** -exponent))

@@ -15,7 +15,7 @@ from analyzer.heat.draft import Draft, by_part, draft
 from analyzer.heat.headroom import headroom
 from analyzer.heat.live import live_numbers
 from analyzer.heat.path.board import design_class
-from analyzer.heat.pulses import with_pulses
+from analyzer.heat.pulses import swing_of, worked_swing
 from analyzer.heat.remedies import remedies
 from analyzer.heat.sensitivity import sensitivity
 from analyzer.heat.trail import steps, unique
@@ -99,6 +99,9 @@ def _with_neighbours(drafts: list[Draft], settings: Settings) -> list[tuple[Draf
         if all(abs(found[ref] - rises[ref]) < 1e-9 for ref in found):
             break
         rises = found
+    else:
+        # neighbours that heat each other without end: their heat is as good as unknown
+        watts = {}
     unfitted = {one.part.ref for one in drafts if not one.part.component.fitted}
     return [
         (one, rises[one.part.ref], tuple(by for by in pairs[one.part.ref] if by not in watts and by not in unfitted))
@@ -111,7 +114,8 @@ def _heat(one: Draft, rise: float) -> float | None:
     if not one.case.channels or not one.is_complete:
         return None
     try:
-        return worst(_warmer(one.case, rise)).watts
+        swing = swing_of(one.case)
+        return worst(_warmer(swing.peak if swing else one.case, rise)).watts
     except ValueError:
         return None
 
@@ -132,6 +136,8 @@ def _entry(
     case = _warmer(one.case, extra)
     one = replace(one, case=case, missing=(*one.missing, *(f"heat of its neighbour {ref}" for ref in lost)))
     hottest, middle, case, found = _work(one)
+    pulses = case is not one.case
+    one = replace(one, case=case)
     missing = one.missing
     findings = list(one.findings)
     if case.channels and hottest is None:
@@ -187,7 +193,7 @@ def _entry(
         remedies=remedies(one, case, hottest, greatest, packages, board) if hottest else (),
         sensitivity=sensitivity(case, hottest.junction) if hottest and hottest.junction is not None else (),
         chance=chance(case, chance_seed) if chance_seed is not None and complete else None,
-        live=live_numbers(case, hottest, extra) if hottest else {},
+        live=live_numbers(case, hottest, extra, steady=not pulses) if hottest else {},
     )
 
 
@@ -210,11 +216,14 @@ def _work(one: Draft) -> tuple[Worked | None, Worked | None, Case, tuple[Finding
         return None, None, one.case, ()
     try:
         middle = nominal(one.case)
-        case, hottest, found = with_pulses(one, worst(one.case))
+        swing = swing_of(one.case)
+        if swing is None:
+            return worst(one.case), middle, one.case, ()
+        hottest, found = worked_swing(swing, one.part.ref, one.part.key)
     except ValueError as error:
         message = f"an operating point is outside what its figures cover: {error}"
         return None, None, one.case, (kinds.OUT_OF_TABLE.found(one.part.ref, message, key=one.part.key),)
-    return hottest, middle, case, found
+    return hottest, middle, swing.peak, found
 
 
 def _judged(one: Draft, hottest: Worked, settings: Settings) -> list[Finding]:

@@ -6,11 +6,14 @@ junction is iterated where the losses depend on it. Channels of one package are 
 
 from __future__ import annotations
 
+import itertools
+import math
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 
 from analyzer.heat.path import ThermalPath
 from analyzer.ledger import ChannelPoint, Corner
+from analyzer.load import RailLoad
 from analyzer.losses.base import End, Loss, LossModel, Point
 from analyzer.losses.hot import HOPELESS_CELSIUS
 from analyzer.quantity import Span
@@ -20,18 +23,21 @@ _Choose = Callable[[float], tuple["Chosen", ...]]
 """What a corner takes at a junction temperature [°C]."""
 
 _PASSES = 200
+_SEARCHES = 24
 _AGREEMENT = 1e-9
 
 
 @dataclass(frozen=True, slots=True)
 class ChannelCase:
-    """One channel: its loss model, and the spans of input, output (magnitudes) and load."""
+    """One channel: its loss model, the spans of input, output (magnitudes) and load, and where the load comes from."""
 
     wiring: Wiring
     model: LossModel
     vin: Span
     vout: Span
     load: Span
+    rail: RailLoad | None = None
+    share: float = 1.0
 
     @property
     def name(self) -> str:
@@ -63,6 +69,11 @@ class Case:
         """The case with exactly this load on its first channel."""
         first, *rest = self.channels
         return replace(self, channels=(replace(first, load=Span.exact(amps)), *rest))
+
+    def with_load_up_to(self, amps: float) -> Case:
+        """The case with any load up to this on its first channel; a load the part itself sets stays."""
+        first, *rest = self.channels
+        return replace(self, channels=(replace(first, load=Span(0.0, amps, amps)), *rest))
 
     def with_ambient(self, ambient: Span) -> Case:
         """The case in other air."""
@@ -102,7 +113,7 @@ def worst(case: Case) -> Worked:
     Raises:
         ValueError: If a figure's table does not cover a point.
     """
-    return _settled(case, lambda junction: tuple(_hottest(one, junction) for one in case.channels), severe=True)
+    return _settled(case, lambda junction: tuple(hottest_of(one, junction) for one in case.channels), severe=True)
 
 
 def nominal(case: Case) -> Worked:
@@ -131,8 +142,14 @@ def _settled(case: Case, choose: _Choose, *, severe: bool) -> Worked:
         ambient = span.high if severe else span.nominal
     junction = ambient
     heats = any(one.model.heats for one in case.channels)
-    for _ in range(_PASSES):
-        chosen = choose(junction)
+    chosen = choose(junction)
+    for turn in range(_PASSES):
+        if turn:
+            try:
+                chosen = choose(junction)
+            except ValueError:
+                # a figure that stops being one (efficiency below zero) on the way up has no rest
+                break
         watts = sum(one.loss.watts for one in chosen)
         theta = case.path.theta(thin_air, watts, severe=severe)
         found = ambient + theta * watts
@@ -144,7 +161,8 @@ def _settled(case: Case, choose: _Choose, *, severe: bool) -> Worked:
     return Worked(chosen, watts, ambient, theta, found, runs_away=True)
 
 
-def _hottest(one: ChannelCase, junction: float) -> Chosen:
+def hottest_of(one: ChannelCase, junction: float) -> Chosen:
+    """The operating point of a channel that makes the most heat at this junction temperature [°C]."""
     best: tuple[Point, Loss] | None = None
     for point in _candidates(one, junction):
         loss = one.model.at(point, End.SEVERE)
@@ -152,7 +170,52 @@ def _hottest(one: ChannelCase, junction: float) -> Chosen:
             best = point, loss
     if best is None:
         raise ValueError("no operating point")
+    if _has_humps(one):
+        best = _climbed(one, best)
     return Chosen(one, *best, _ends(one, best[0]))
+
+
+def _has_humps(one: ChannelCase) -> bool:
+    """Whether the heat may be greatest between two knots: a table of efficiency, I · (1/η(I) − 1), does that."""
+    channel = one.wiring.channel
+    tabled = channel.efficiency_map is not None or "efficiency" in channel.curves
+    return tabled and not one.load.is_exact
+
+
+def _climbed(one: ChannelCase, best: tuple[Point, Loss]) -> tuple[Point, Loss]:
+    """The greatest heat between the knots of the load, at every input and output voltage that may be worst.
+
+    A few points in each stretch tell which one to climb.
+    """
+    points = list(_candidates(one, best[0].junction))
+    loads = sorted({point.iout for point in points})
+    found, stretch = best, None
+    for vin, vout in sorted({(point.vin, point.vout) for point in points}):
+        for left, right in itertools.pairwise(loads):
+            for share in (0.125, 0.25, 0.5, 0.75):
+                point = replace(best[0], vin=vin, vout=vout, iout=left + share * (right - left))
+                loss = one.model.at(point, End.SEVERE)
+                if loss.watts > found[1].watts:
+                    found, stretch = (point, loss), (left, right)
+    return found if stretch is None else max(found, _between(one, found[0], *stretch), key=lambda one: one[1].watts)
+
+
+def _between(one: ChannelCase, at: Point, left: float, right: float) -> tuple[Point, Loss]:
+    """Golden-section search: with η linear between two knots the heat has one maximum at most."""
+    ratio = (math.sqrt(5.0) - 1.0) / 2.0
+
+    def heat(load: float) -> tuple[Point, Loss]:
+        point = replace(at, iout=load)
+        return point, one.model.at(point, End.SEVERE)
+
+    low, high = left, right
+    for _ in range(_SEARCHES):
+        a, b = high - ratio * (high - low), low + ratio * (high - low)
+        if heat(a)[1].watts < heat(b)[1].watts:
+            low = a
+        else:
+            high = b
+    return heat((low + high) / 2)
 
 
 def _candidates(one: ChannelCase, junction: float) -> Iterator[Point]:
@@ -162,7 +225,9 @@ def _candidates(one: ChannelCase, junction: float) -> Iterator[Point]:
     loads = {load.low, load.high, *(x for x in one.model.loads if load.low < x < load.high)}
     if not vin.is_exact:
         vins |= set(one.model.interior(vin.low, vin.high, vout.nominal, load.high))
-        vins |= {edge for edge in vouts if vin.low < edge < vin.high}
+        table = one.wiring.channel.efficiency_map
+        knots = {y for _, y, _ in table.points} if table else set()
+        vins |= {edge for edge in vouts | knots if vin.low < edge < vin.high}
     for a in sorted(vins):
         for b in sorted(vouts):
             for c in sorted(loads):

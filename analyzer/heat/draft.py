@@ -8,7 +8,7 @@ from dataclasses import dataclass, field
 from analyzer.circuit import Circuit
 from analyzer.evidence import Evidence, Grade
 from analyzer.findings.base import Finding, Weight
-from analyzer.heat.altitude import EXPONENTS, multiplier
+from analyzer.heat.altitude import EXPONENTS, HIGHEST, multiplier
 from analyzer.heat.case import Case, ChannelCase
 from analyzer.heat.limits import Limits, limits_of
 from analyzer.heat.path import ThermalPath, thermal_path
@@ -101,6 +101,8 @@ def draft(
         evidence.append(limits.evidence)
         findings += limits.findings
     evidence += site_evidence(settings.site)
+    if settings.site.altitude.span.high > HIGHEST:
+        missing.append("altitude: no correction is known above 11 km")
     missing += _open_findings(part, wirings, circuit, known)
     return Draft(
         part,
@@ -136,8 +138,13 @@ def air(site: Site) -> Span:
 
 def thin_air(site: Site) -> tuple[float, float]:
     """Altitude multiplier at the nominal and at the highest altitude."""
-    exponent = site.altitude_exponent if site.altitude_exponent is not None else EXPONENTS[site.cooling]
-    return multiplier(site.altitude.span.nominal, exponent), multiplier(site.altitude.span.high, exponent)
+    exponent = site.altitude_exponent
+    if exponent is None:
+        # air that is stated to move is forced, whatever else was left at its default
+        moving = site.cooling == "natural" and site.air_speed.span.high > 0
+        exponent = EXPONENTS["forced" if moving else site.cooling]
+    nominal, high = (min(metres, HIGHEST) for metres in (site.altitude.span.nominal, site.altitude.span.high))
+    return multiplier(nominal, exponent), multiplier(high, exponent)
 
 
 def _channel(
@@ -165,7 +172,7 @@ def _channel(
             lacks.append(f"{name}load of {load.rail}: {_gap_words(load)}")
     if model.missing or wiring.vin is None or wiring.vout is None:
         return None, lacks, evidence, list(model.notes)
-    channel = ChannelCase(wiring, model, _magnitude(wiring.vin.span), _magnitude(wiring.vout.span), amps)
+    channel = ChannelCase(wiring, model, _magnitude(wiring.vin.span), _magnitude(wiring.vout.span), amps, load, share)
     return channel, lacks, evidence, list(model.notes)
 
 
@@ -200,7 +207,12 @@ def _share(rails: Rails, wiring: Wiring) -> float:
 
 def _open_findings(part: Part, wirings: tuple[Wiring, ...], circuit: Circuit, known: Iterable[Finding]) -> list[str]:
     """Open matters about this part or its rails keep its budget from being closed."""
-    names = {part.ref} | {rail for one in wirings for rail in (one.input_rail, one.output_rail) if rail}
+    names = {part.ref} | {
+        rail
+        for one in wirings
+        for rail in (one.input_rail, one.output_rail, one.control_rail, one.input_net, one.output_net)
+        if rail
+    }
     found = []
     for finding in known:
         mine = finding.key == part.key if finding.key else finding.subject in names

@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Callable
 
-from analyzer.heat.case import Case, worst
+from analyzer.heat.case import Case, ChannelCase, worst
 from analyzer.ledger import Headroom
 from analyzer.rule import LINEARS
 
@@ -17,9 +18,9 @@ _AGREEMENT = 1e-13
 
 
 def junction_at(case: Case, amps: float) -> float:
-    """Worst junction [°C] with exactly this load; infinite where there is no rest or the figures end."""
+    """Worst junction [°C] with any load up to this; infinite where there is no rest or the figures end."""
     try:
-        worked = worst(case.with_load(amps))
+        worked = worst(case.with_load_up_to(amps))
     except ValueError:
         return math.inf
     return math.inf if worked.runs_away or worked.junction is None else worked.junction
@@ -48,6 +49,23 @@ def closed_form(case: Case, junction: float) -> float | None:
     if idle.theta is None or vin <= vout:
         return None
     return max(0.0, ((junction - idle.ambient) / idle.theta - idle.watts) / (vin - vout))
+
+
+def dropout_load(one: ChannelCase) -> float | None:
+    """Greatest load [A] that leaves a linear part its dropout at the lowest input; None where the load is no matter.
+
+    Inverts the table of dropout over load by linear interpolation; above the table nothing is known.
+    """
+    table = one.wiring.channel.curves.get("dropout")
+    left = one.vin.low - one.vout.high
+    if table is None or one.wiring.channel.topology not in LINEARS:
+        return None
+    if table.points[0][1].high > left:
+        return 0.0
+    for (x0, y0), (x1, y1) in itertools.pairwise(table.points):
+        if y1.high > left:
+            return x0 + (x1 - x0) * (left - y0.high) / (y1.high - y0.high)
+    return table.highest
 
 
 def _greatest(excess: Callable[[float], float], start: float) -> float:
@@ -101,6 +119,9 @@ def headroom(case: Case, rated: float | None, allowed: float | None) -> tuple[He
     over, bound = greatest, "junction"
     if rated is not None and rated < over:
         over, bound = rated, "rated current"
+    regulated = dropout_load(first)
+    if regulated is not None and regulated < over:
+        over, bound = regulated, "dropout"
     if allowed is not None:
         tight = min(tight, allowed)
     tight = min(tight, over)

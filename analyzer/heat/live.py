@@ -16,16 +16,20 @@ coefficients are taken from the engine's own losses at the worst corner and chec
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 
-from analyzer.heat.case import Case, Chosen, Worked
+from analyzer.heat.case import Case, Chosen, Worked, hottest_of
 from analyzer.losses.base import End, Loss, Point
 from analyzer.losses.dispatch import HOT_CELSIUS
+from analyzer.quantity import Span
 
 _AGREEMENT = 1e-9
+_LEAST = 1e-9
+"""Loads [A] below this are none: formulas through them would divide by rounding errors."""
 
 
-def live_numbers(case: Case, worst: Worked, rise_extra: float) -> dict[str, float]:
-    """The numbers for a worked case; {} where nothing was worked out."""
+def live_numbers(case: Case, worst: Worked, rise_extra: float, *, steady: bool = True) -> dict[str, float]:
+    """The numbers for a worked case; {} where nothing was worked out. Pulsed loads (not `steady`) have no formula."""
     if not worst.chosen:
         return {}
     (first, *others) = worst.chosen
@@ -35,7 +39,16 @@ def live_numbers(case: Case, worst: Worked, rise_extra: float) -> dict[str, floa
         return found
     found |= {"theta_solid": path.solid.high, "theta_air": path.air.high}
     one = first.case
-    if others or one.model.heats or one.model.loads or one.model.own_load or first.point.iout != one.load.high:
+    if (
+        not steady
+        or others
+        or one.model.heats
+        or one.model.loads
+        or one.model.own_load
+        or first.point.iout != one.load.high
+    ):
+        return found
+    if not _keeps_its_corner(first):
         return found
     coefficients = _polynomial(lambda amps: _at(first, first.point, amps).watts, first.point.iout)
     if coefficients is None:
@@ -46,6 +59,20 @@ def live_numbers(case: Case, worst: Worked, rise_extra: float) -> dict[str, floa
     if taken is not None:
         found |= {"i0": taken[0], "i1": taken[1], "i2": taken[2]}
     return found
+
+
+def _keeps_its_corner(first: Chosen) -> bool:
+    """Whether the same ends of input and output are the hottest at lower and higher loads too."""
+    step = first.point.iout if first.point.iout > _LEAST else 0.1
+    for amps in (step * share for share in (0.5, 1.5, 2.0, 3.0)):
+        try:
+            there = hottest_of(replace(first.case, load=Span.exact(amps)), first.point.junction)
+        except ValueError:
+            continue
+        same = _at(first, first.point, amps).watts
+        if there.loss.watts > same * (1 + _AGREEMENT):
+            return False
+    return True
 
 
 def _at(chosen: Chosen, point: Point, amps: float) -> Loss:
@@ -65,7 +92,7 @@ def _thirstiest(chosen: Chosen) -> Point:
 
 def _polynomial(of: Callable[[float], float], amps: float) -> tuple[float, float, float] | None:
     """Coefficients of a quadratic through three loads, None if a fourth does not lie on it."""
-    step = amps or 0.1
+    step = amps if amps > _LEAST else 0.1
     try:
         c0, at_one, at_two, at_three = of(0.0), of(step), of(2 * step), of(3 * step)
     except ValueError:

@@ -16,6 +16,9 @@ from analyzer.wording import show
 SINK_CONTACT = 1.0
 """θCS [K/W] of a TO-220 with compound (TI TPS758xx data sheet); 0.2 for TO-3, 1.5 to 2.5 if unknown."""
 
+NO_HEAT = 1e-9
+"""Heat [W] below which a part has none that any θ would matter to."""
+
 SINKABLE = frozenset({"TO-220", "TO-3"})
 E24 = tuple(
     float(step)
@@ -54,7 +57,7 @@ def _what_passes(case: Case, hottest: Worked, greatest: float | None) -> Iterato
             yield Remedy(
                 "greatest ambient", f"passes up to {show(ambient, '°C')} around the part", {"celsius": ambient}
             )
-        if hottest.watts > 0:
+        if hottest.watts > NO_HEAT:
             theta = (limit - hottest.ambient) / hottest.watts
             words = f"passes with up to {show(theta, 'K/W')} from junction to air" if theta > 0 else "no θ would pass"
             yield Remedy("θ needed", words, {"k_per_w": max(theta, 0.0)})
@@ -124,7 +127,7 @@ def _what_helps(
 def _heat_sink(draft: Draft, case: Case, hottest: Worked) -> Remedy | None:
     figure = draft.part.thermal[0] if draft.part.thermal else None
     theta = figure.theta_jc_bottom if figure else None
-    if theta is None or draft.part.package.family not in SINKABLE or case.limit is None or hottest.watts <= 0:
+    if theta is None or draft.part.package.family not in SINKABLE or case.limit is None or hottest.watts <= NO_HEAT:
         return None
     needed = needed_sink(case.limit, hottest.ambient, hottest.watts, theta.span.high, SINK_CONTACT)
     if needed <= 0:

@@ -42,7 +42,8 @@ def unique(evidence: Iterable[Evidence]) -> Iterator[Evidence]:
 def _read(evidence: Iterable[Evidence]) -> Iterator[Step]:
     for one in unique(evidence):
         note = f" ({one.note})" if one.note else ""
-        yield Step(one.quantity, one.formula, show_span(one.span, one.unit) + note, one.source, one.grade)
+        value = one.note if one.unit == "rank" else show_span(one.span, one.unit) + note
+        yield Step(one.quantity, one.formula, value, one.source, one.grade)
 
 
 def _corner(draft: Draft, case: Case, corner: Corner, grade: Grade) -> Iterator[Step]:
@@ -58,8 +59,13 @@ def _corner(draft: Draft, case: Case, corner: Corner, grade: Grade) -> Iterator[
     thin = case.thin_air[0] if corner.name == "nominal" else case.thin_air[1]
     factor = f", air side × {thin:.3f} for altitude" if thin != 1 else ""
     yield Step("θ", "", show(corner.theta, "K/W"), case.path.words + factor, grade, corner.name)
-    formula = f"{show(corner.ambient, '°C')} + {show(corner.theta, 'K/W')} · {show(corner.watts, 'W')}"
-    yield Step("junction", formula, show(corner.junction, "°C"), "Tj = Ta + θ · P", grade, corner.name)
+    formula, why = (
+        f"{show(corner.ambient, '°C')} + {show(corner.theta, 'K/W')} · {show(corner.watts, 'W')}",
+        "Tj = Ta + θ · P",
+    )
+    if abs(corner.ambient + corner.theta * corner.watts - corner.junction) > 1e-6 * abs(corner.junction) + 1e-6:
+        formula, why = "", "end of the pulse, through the Foster network"
+    yield Step("junction", formula, show(corner.junction, "°C"), why, grade, corner.name)
 
 
 def _air_words(case: Case) -> str:

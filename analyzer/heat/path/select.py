@@ -23,20 +23,33 @@ def thermal_path(
     part: Part, circuit: Circuit, settings: Settings, stated: PartStatement, packages: Iterable[PackageRule]
 ) -> ThermalPath | str:
     """The path, or what is missing for one, in words."""
-    figure = part.thermal[0] if part.thermal else None
+    design, why = design_class(circuit, settings, stated)
+    figure = _closest(part.thermal, design)
     found = _measured(stated, figure) or _sink(stated)
     if found is not None:
         return found
     if stated.theta_ja is not None:
         return _with_foster(all_air(stated.theta_ja, words="θJA stated for this part"), figure)
-    design, why = design_class(circuit, settings, stated)
     if figure is not None:
-        table = _copper(figure, stated, settings) or _air(figure, settings, design, part)
+        table = _copper(figure, stated, settings, design, part) or _air(figure, settings, design, part)
         if table is not None:
             return _with_foster(table, figure)
         if figure.theta_ja is not None:
             return _with_foster(_by_class(part, figure, design, why), figure)
     return _generic(part, design, why, packages)
+
+
+def _closest(figures: Iterable[ThermalFigure], design: BoardClass) -> ThermalFigure | None:
+    """The figure of the design's own class, else of the next poorer one, else of a better one; the worse of two."""
+    order = list(BoardClass)
+    wanted = order.index(design)
+
+    def far(figure: ThermalFigure) -> tuple[int, float]:
+        rank = order.index(figure.board or BoardClass.HIGH)
+        theta = figure.theta_ja.span.high if figure.theta_ja else 0.0
+        return (wanted - rank if rank <= wanted else len(order) + rank - wanted, -theta)
+
+    return min(figures, key=far, default=None)
 
 
 def _measured(stated: PartStatement, figure: ThermalFigure | None) -> ThermalPath | None:
@@ -61,9 +74,14 @@ def _sink(stated: PartStatement) -> ThermalPath | None:
     )
 
 
-def _copper(figure: ThermalFigure, stated: PartStatement, settings: Settings) -> ThermalPath | None:
+def _copper(
+    figure: ThermalFigure, stated: PartStatement, settings: Settings, design: BoardClass, part: Part
+) -> ThermalPath | None:
     pour = stated.pour or settings.board.pour
     if figure.copper is None or pour is None:
+        return None
+    if figure.board is BoardClass.HIGH and correction(part.package.family, figure.board, design) > 1:
+        # measured over inner planes that this board has not: the copper alone does not make up for them
         return None
     return _from_table(figure.copper, pour, f"θJA at {pour.span.low * 1e6:.0f} mm² of copper")
 
