@@ -11,6 +11,7 @@ from analyzer.circuit import Component, plain_name
 from analyzer.evidence import Evidence, Grade
 from analyzer.part import Channel
 from analyzer.quantity import Span
+from analyzer.recognise import words
 from analyzer.recognise.identity import Identity, identities, looks_like_part_number
 from analyzer.recognise.pattern import Hit, core, match
 from analyzer.recognise.roles import by_role
@@ -113,7 +114,7 @@ def letters_of(component: Component) -> str:
 
 def fits(component: Component, rule: Rule) -> bool:
     """Whether reference letter and pins fit the rule, so that a transistor named like a regulator is none."""
-    if letters_of(component) not in rule.letters:
+    if letters_of(component) not in rule.letters or words.SIGNAL_PART.search(component.description):
         return False
     return all(_has_roles(component, channel) for channel in rule.channels)
 

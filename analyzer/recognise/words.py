@@ -15,6 +15,11 @@ NOT_A_REGULATOR = re.compile(
 )
 """A description with one of these is not taken for a regulator on pin names alone."""
 
+SIGNAL_PART = re.compile(
+    r"\b(dac|adc|analog[- ]to[- ]digital|digital[- ]to[- ]analog|line (receiver|driver)s?)\b", re.IGNORECASE
+)
+"""A description with one of these overrules even a matching number: AD78.. and DS78.. are no 78.. regulators."""
+
 PASSAGES: tuple[tuple[re.Pattern[str], Topology], ...] = (
     (re.compile(r"ideal[- ]diode|or-?ing controller", re.I), Topology.IDEAL_DIODE),
     (re.compile(r"e-?fuse|hot[- ]?swap", re.I), Topology.EFUSE),

@@ -60,10 +60,11 @@ def test_voltage_codes(value: str, nominal: float) -> None:
     assert found[0] < found[1] < found[2]
 
 
-def test_twelve_behind_1117_is_never_read_as_twelve_or_as_1v2() -> None:
+def test_twelve_behind_1117_reads_by_maker() -> None:
     # one maker means 12 V, the others 1.2 V
-    found = volts("NCP1117-12")
-    assert found is None or found[1] == 12
+    assert volts("NCP1117-12")[1] == 12  # type: ignore[index]
+    assert volts("NCP1117ST12T3G")[1] == 12  # type: ignore[index]
+    assert volts("LD1117S12TR")[1] == 1.2  # type: ignore[index]
 
 
 @pytest.mark.parametrize(
@@ -74,6 +75,12 @@ def test_look_alikes_are_no_regulators(value: str) -> None:
     coupler = component(value, ref="U2", pins=("1 A passive", "2 K passive", "4 T1 passive", "6 T2 passive"))
     diode = component(value, ref="D1", pins=("1 K passive", "2 A passive"))
     assert recognised(transistor, coupler, diode, rulebook=SHIPPED) == ((), ())
+
+
+@pytest.mark.parametrize("description", ["Dual line receiver", "12-bit DAC, voltage output"])
+def test_signal_parts_with_a_regulators_number_are_none(description: str) -> None:
+    pins = ("1 INPUT input", "3 OUTPUT output", "7 GND power_in", "14 VCC power_in")
+    assert recognised(component("AB7812", pins=pins, description=description), rulebook=SHIPPED) == ((), ())
 
 
 def test_a_receiver_with_a_regulators_number_is_none() -> None:
