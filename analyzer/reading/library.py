@@ -124,7 +124,11 @@ def read_symbol(node: Node, version: int, siblings: dict[str, Node]) -> LibraryS
         units=frozenset(units),
         styles=frozenset(styles),
         has_styles=any(len(each) > 1 for each in (first(node, "body_styles"), first(base, "body_styles")) if each),
-        jumper_groups=tuple(tuple(text(pad) for pad in group) for group in groups[1:] if isinstance(group, list)),
+        jumper_groups=tuple(
+            tuple(text(pad) for pad in group if type(pad) is not list)
+            for group in groups[1:]
+            if isinstance(group, list)
+        ),
         same_number_joins=flag(node, "duplicate_pin_numbers_are_jumpers")
         or flag(base, "duplicate_pin_numbers_are_jumpers"),
         fields={**read_fields(base), **read_fields(node)},

@@ -157,7 +157,7 @@ def _alias(drawing: Drawing, node: Node) -> bool:
     members = first(node, "members")
     if len(node) < 2 or members is None:
         return False
-    drawing.aliases.setdefault(text(node[1]), tuple(text(member) for member in members[1:]))
+    drawing.aliases.setdefault(text(node[1]), tuple(text(member) for member in members[1:] if type(member) is not list))
     return True
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from pathlib import Path
 
 import pytest
@@ -290,3 +291,25 @@ def test_order_of_items_and_unknown_items_do_not_matter(
     }
     assert [part.ref for part in circuit.components] == ["TPA", "TPB", "TPC", "U1", "U2"]
     assert circuit.complete
+
+
+@settings(max_examples=150, deadline=None)
+@given(st.sets(st.integers(0, 10_000), min_size=1, max_size=4))
+def test_unknown_entries_inside_items_do_not_matter(tmp_path_factory: pytest.TempPathFactory, places: set[int]) -> None:
+    chip = library("U", pin("1", "A"), pin("2", "B", at=(0, -5)), units=None)
+    known = schematic(
+        *ITEMS,
+        '(bus_alias "M" (members "A0" "CK"))',
+        wire((0, 90), (9, 90), "bus"),
+        label("{M}", (0, 90)),
+        libs=(TP, chip),
+    )
+    closing = [match.start() for match in re.finditer(r"\)", known)]
+    text = known
+    for at in sorted({closing[place % len(closing)] for place in places}, reverse=True):
+        text = f'{text[:at]} (future "thing" (of 2031)) {text[at:]}'
+    folder = tmp_path_factory.mktemp("p")
+    before, after = read(save(folder, "p", known)), read(save(folder, "p", text))
+    assert after.nets == before.nets
+    assert after.components == before.components
+    assert after.findings == before.findings
