@@ -102,6 +102,15 @@ def choose(component: Component, index: Index) -> Choice:
     return Choice(best, _conflict(names, matched, best), tie)
 
 
+def kept_out(component: Component, index: Index) -> RuleHit | None:
+    """The best match by name whose input and output pins were not found, though the reference letter fits."""
+    for identity in identities(component):
+        for hit in index.hits(identity):
+            if letters_of(component) in hit.rule.letters and not fits(component, hit.rule):
+                return hit
+    return None
+
+
 def _gated(component: Component, hits: list[RuleHit]) -> list[RuleHit]:
     return [one for one in hits if fits(component, one.rule)]
 

@@ -20,6 +20,9 @@ from analyzer.settings import PartStatement, Settings
 
 NOTHING_STATED = PartStatement()
 
+MOST_PINS = 8
+"""A larger part that shares a regulator's number but not its pins is another kind of part."""
+
 
 def recognise(circuit: Circuit, rulebook: Rulebook, settings: Settings) -> tuple[tuple[Part, ...], tuple[Finding, ...]]:
     """Every regulator and passage of a circuit, fitted or not, in the circuit's order, and what there is to report."""
@@ -69,7 +72,9 @@ def _recognise(
             message = f"{name} looks like a {part.topology.value} regulator ({why}), but no rule knows it"
             findings.append(kinds.NO_RULE.found(component.ref, message, where, key=component.key))
         return part, findings
-    if component.fitted and _sounds_like(component):
+    if component.fitted and (missing := _pins_missing(component, index)):
+        findings.append(kinds.RULE_PINS_MISSING.found(component.ref, missing, where, key=component.key))
+    elif component.fitted and _sounds_like(component):
         message = f"{component.value}: '{component.description[:80]}', pins not understood"
         findings.append(kinds.SOUNDS_LIKE.found(component.ref, message, where, key=component.key))
     return None, findings
@@ -105,6 +110,18 @@ def _stated_hit(component: Component, rule: Rule, stated: PartStatement) -> Rule
         if hit is not None:
             return RuleHit(rule, identity, hit, pattern.text)
     return RuleHit(rule, identity, Hit("", None, ""), core(rule.patterns[0].text))
+
+
+def _pins_missing(component: Component, index: Index) -> str:
+    """What a rule matches by name while the pins say nothing; "" for parts that plainly are something else."""
+    if len(component.pins) > MOST_PINS or words.NOT_A_REGULATOR.search(component.description):
+        return ""
+    if words.SIGNAL_PART.search(component.description):
+        return ""
+    hit = by_rule.kept_out(component, index)
+    if hit is None:
+        return ""
+    return f"{hit.identity.field} {hit.identity.text} matches {hit.rule.where}, but no input and output pins were found"
 
 
 def _sounds_like(component: Component) -> bool:

@@ -16,7 +16,8 @@ NOT_A_REGULATOR = re.compile(
 """A description with one of these is not taken for a regulator on pin names alone."""
 
 SIGNAL_PART = re.compile(
-    r"\b(dac|adc|analog[- ]to[- ]digital|digital[- ]to[- ]analog|line (receiver|driver)s?)\b", re.IGNORECASE
+    r"\b(dac|adc|opto[- ]?\w*|analog[- ]to[- ]digital|digital[- ]to[- ]analog|line (receiver|driver)s?)\b",
+    re.IGNORECASE,
 )
 """A description with one of these overrules even a matching number: AD78.. and DS78.. are no 78.. regulators."""
 

@@ -72,9 +72,17 @@ def test_twelve_behind_1117_reads_by_maker() -> None:
 )
 def test_look_alikes_are_no_regulators(value: str) -> None:
     transistor = component(value, ref="Q1", pins=("1 B input", "2 C passive", "3 E passive"))
-    coupler = component(value, ref="U2", pins=("1 A passive", "2 K passive", "4 T1 passive", "6 T2 passive"))
+    coupler = component(
+        value, ref="U2", description="Opto-Triac", pins=("1 A passive", "2 K passive", "4 T1 passive", "6 T2 passive")
+    )
     diode = component(value, ref="D1", pins=("1 K passive", "2 A passive"))
     assert recognised(transistor, coupler, diode, rulebook=SHIPPED) == ((), ())
+
+
+def test_a_regulators_number_without_its_pins_is_reported() -> None:
+    parts, findings = recognised(component("LM1117-3.3", pins=("1 1 passive", "2 2 passive", "3 3 passive")))
+    assert parts == ()
+    assert [(finding.name, finding.weight.value) for finding in findings] == [("rule-pins-missing", "open")]
 
 
 @pytest.mark.parametrize("description", ["Dual line receiver", "12-bit DAC, voltage output"])
