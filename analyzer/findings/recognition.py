@@ -9,7 +9,7 @@ IDENTITY_CONFLICT = FindingKind(
     Weight.OPEN,
     "Two fields of a part name different parts or voltages, or one of them names a part that no rule knows: the "
     "figures used may belong to another part.",
-    'Correct the fields, or name the part in the settings: [parts.REF] part = "...".',
+    'Correct the fields, or name the part in the settings: [parts.REF] identity = "...".',
 )
 RULES_TIE = FindingKind(
     "rules-tie",
@@ -27,7 +27,7 @@ SOUNDS_LIKE = FindingKind(
     "sounds-like-regulator",
     Weight.NOTE,
     "A part's description speaks of a regulator, but its pins were not understood.",
-    "If it is one, write a rule that names its pins; else declare it: [parts.REF] regulator = false.",
+    "If it is one, write a rule that names its pins; else declare it: [parts.REF] is_regulator = false.",
 )
 STATED_RULE_UNKNOWN = FindingKind(
     "stated-rule-unknown",

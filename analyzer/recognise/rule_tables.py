@@ -72,7 +72,7 @@ def rule(table: Table, file: str, is_user: bool) -> Rule:
         source.text,
     )
     table.text("note")
-    table.finish()
+    table.finish(*FIGURES)
     return entry
 
 
@@ -112,7 +112,7 @@ def _channels(table: Table, source: Source) -> tuple[ChannelRule, ...]:
         return (base,)
     found = tuple(_channel(entry, source, base) for entry in entries)
     for entry in entries:
-        entry.finish()
+        entry.finish(*FIGURES)
     return found
 
 
@@ -147,7 +147,8 @@ def _channel(table: Table, source: Source, base: ChannelRule | None) -> ChannelR
 def _figures(table: Table, source: Source) -> tuple[dict[str, Evidence], dict[str, Curve]]:
     figures: dict[str, Evidence] = {}
     curves: dict[str, Curve] = {}
-    for key, figure in FIGURES.items():
+    for key in (key for key in FIGURES if key in table):
+        figure = FIGURES[key]
         name = key.replace("_", " ")
         if figure.may_be_curve and isinstance(table.raw(key), list):
             points = _points(table, key, Dimension.CURRENT, figure.dimension)
