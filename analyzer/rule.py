@@ -138,6 +138,9 @@ FIGURES: Mapping[str, FigureKey] = {
         _D.VOLTAGE, "input-output difference at which regulation is lost", "electrical characteristics", True
     ),
     "gain": FigureKey(_D.RATIO, "input multiplier of a charge pump (2 doubles, 1 inverts)", "description"),
+    "output_resistance": FigureKey(
+        _D.RESISTANCE, "output resistance of an unregulated charge pump", "electrical characteristics"
+    ),
     # what it takes
     "quiescent": FigureKey(_D.CURRENT, "input current without load", "electrical characteristics"),
     "ground_current": FigureKey(_D.CURRENT, "ground-pin current under load", "electrical characteristics", True),

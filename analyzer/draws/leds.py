@@ -195,7 +195,7 @@ def _drop(component: Component, anode: Pin, cathode: Pin) -> Evidence:
         (
             *(_PIN_COLOURS.get(letter, "") for letter in own),
             component.value.replace("_", " "),
-            component.lib_id.replace("_", " "),
+            component.lib_id.rpartition(":")[2].replace("_", " "),
             component.description,
             *component.fields.values(),
         )

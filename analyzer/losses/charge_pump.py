@@ -30,6 +30,10 @@ def build(wiring: Wiring) -> LossModel:
     lacks = [] if figures.has("gain") else ["gain (2 doubles, 1 inverts)"]
     if not figures.has("quiescent") and not figures.has("drive_fraction"):
         lacks.append("quiescent current")
+    channel = wiring.channel
+    if channel.volts is None and channel.reference is None and not figures.has("output_resistance"):
+        # its no-load output would hide all of its transfer loss
+        lacks.append("output resistance (the pump does not regulate)")
     if lacks:
         return lacking(*lacks)
 
@@ -37,7 +41,8 @@ def build(wiring: Wiring) -> LossModel:
         gain = figures.high("gain", end)
         drive = figures.high("drive_fraction", end, default=0.0)
         own = figures.high("quiescent", end, default=0.0) + drive * point.iout
-        vout = min(point.vout, gain * point.vin)
+        sag = point.iout * figures.high("output_resistance", end, default=0.0)
+        vout = max(0.0, min(point.vout, gain * point.vin - sag))
         return Loss(
             pump_heat(point.vin, vout, point.iout, gain, own),
             gain * point.iout + own,
@@ -49,4 +54,6 @@ def build(wiring: Wiring) -> LossModel:
             regulating=gain * point.vin >= point.vout,
         )
 
-    return LossModel(at, figures.used("gain", "quiescent", "drive_fraction"), iin_needs_voltages=False)
+    return LossModel(
+        at, figures.used("gain", "quiescent", "drive_fraction", "output_resistance"), iin_needs_voltages=False
+    )
