@@ -46,6 +46,12 @@ DROPOUT_DOUBTFUL = FindingKind(
     "By voltages that are only presumed, the part may lose regulation at its lowest input.",
     "State the supply's real voltage span in the settings.",
 )
+DROPOUT_UNKNOWN = FindingKind(
+    "dropout-unknown",
+    Weight.NOTE,
+    "Little is left between input and output, and the part's dropout is not known: regulation was not checked.",
+    "Supply the dropout in the part's rule.",
+)
 INPUT_OVER_RATING = FindingKind(
     "input-over-rating",
     Weight.OVER,

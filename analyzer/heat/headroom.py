@@ -5,6 +5,7 @@ from __future__ import annotations
 import itertools
 import math
 from collections.abc import Callable
+from functools import cache, partial
 
 from analyzer.heat.case import Case, ChannelCase, worst
 from analyzer.ledger import Headroom
@@ -26,13 +27,14 @@ def junction_at(case: Case, amps: float) -> float:
     return math.inf if worked.runs_away or worked.junction is None else worked.junction
 
 
-def load_for(case: Case, junction: float) -> float:
+def load_for(case: Case, junction: float, at: Callable[[float], float] | None = None) -> float:
     """Greatest load [A] whose worst junction stays at or below `junction` [°C]; 0 if none does.
 
     The secant through two points is exact for parts whose heat is linear in the load; what is not linear is narrowed
-    down between two bounds.
+    down between two bounds. `at` gives the worst junction at a load where it is already at hand.
     """
-    return _greatest(lambda amps: junction_at(case, amps) - junction, max(case.channels[0].load.high, 0.01))
+    heat = at or partial(junction_at, case)
+    return _greatest(lambda amps: heat(amps) - junction, max(case.channels[0].load.high, 0.01))
 
 
 def closed_form(case: Case, junction: float) -> float | None:
@@ -110,12 +112,12 @@ def headroom(case: Case, rated: float | None, allowed: float | None) -> tuple[He
     if case.path is None or case.limit is None or case.tight_above is None or not case.channels:
         return None, None
     first = case.channels[0]
-    if first.model.own_load is not None or junction_at(case, first.load.high + 1.0) <= junction_at(
-        case, first.load.high
-    ):
+    at = cache(partial(junction_at, case))
+    start = max(first.load.high, 0.01)
+    if first.model.own_load is not None or at(2.0 * start) <= at(start):
         return None, None
-    greatest = load_for(case, case.limit)
-    tight = load_for(case, case.tight_above)
+    greatest = load_for(case, case.limit, at)
+    tight = load_for(case, case.tight_above, at)
     over, bound = greatest, "junction"
     if rated is not None and rated < over:
         over, bound = rated, "rated current"

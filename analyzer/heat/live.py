@@ -22,6 +22,7 @@ from analyzer.heat.case import Case, Chosen, Worked, hottest_of
 from analyzer.losses.base import End, Loss, Point
 from analyzer.losses.dispatch import HOT_CELSIUS
 from analyzer.quantity import Span
+from analyzer.rule import LINEARS
 
 _AGREEMENT = 1e-9
 _LEAST = 1e-9
@@ -63,6 +64,9 @@ def live_numbers(case: Case, worst: Worked, rise_extra: float, *, steady: bool =
 
 def _keeps_its_corner(first: Chosen) -> bool:
     """Whether the same ends of input and output are the hottest at lower and higher loads too."""
+    channel = first.case.wiring.channel
+    if channel.topology in LINEARS and "ground_current_dropout" not in channel.figures:
+        return True  # heat rises with the input and falls with the output at every load
     step = first.point.iout if first.point.iout > _LEAST else 0.1
     for amps in (step * share for share in (0.5, 1.5, 2.0, 3.0)):
         try:

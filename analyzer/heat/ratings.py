@@ -15,6 +15,9 @@ from analyzer.rule import LINEARS, Topology
 from analyzer.settings import Policy, Settings
 from analyzer.wording import show
 
+USUAL_DROPOUT = 2.0
+"""Dropout [V] that bipolar three-terminal regulators need at their rated current (common practice)."""
+
 
 def junction_findings(draft: Draft, worst: Worked, policy: Policy) -> Iterator[Finding]:
     """The junction against both limits."""
@@ -90,7 +93,11 @@ def _dropout(draft: Draft, one: ChannelCase) -> Iterator[Finding]:
         return
     left = one.vin.low - one.vout.high
     needed = _needed(one)
+    known = "dropout" in channel.figures or "dropout" in channel.curves
     if left >= needed:
+        if not known and channel.topology in LINEARS and left < USUAL_DROPOUT:
+            message = f"{show(left, 'V')} are left between lowest input and highest output"
+            yield kinds.DROPOUT_UNKNOWN.found(part.ref, message, key=part.key)
         return
     doubtful = any(
         evidence is not None and evidence.weakest is Grade.PRESUMED for evidence in (one.wiring.vin, one.wiring.vout)

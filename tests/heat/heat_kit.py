@@ -112,7 +112,9 @@ class Bench:
             if self.theta is not None:
                 theta = number(self.theta, "K/W", "θJA")
                 thermal = (ThermalFigure(self.package or "", "test", theta_ja=theta, board=self.theta_class),)
-        part = Part(component, "rule", rule, "Value", "REG", Package(self.package, ""), (channel,), thermal)
+        part = Part(
+            component, "rule", rule, "Value", "REG", Package(self.package, ""), (channel,), thermal, "test rule"
+        )
         wiring = Wiring(
             part,
             channel,
