@@ -56,6 +56,7 @@ class Gap:
         sheet: Human sheet path.
         why: Why no current is known ("no current stated", "load of U3 not known", ...).
         suggestions: Currents found in notes near it, with their place; never used until accepted.
+        follows: True where only rails below it have gaps: closing those closes it.
     """
 
     ref: str
@@ -65,6 +66,7 @@ class Gap:
     sheet: str
     why: str = "no current stated"
     suggestions: tuple[str, ...] = ()
+    follows: bool = False
 
 
 @dataclass(frozen=True, slots=True)

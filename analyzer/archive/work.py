@@ -97,7 +97,7 @@ def _work(job: Job) -> Outcome:
         tuple((verdict.value, ledger.count(verdict)) for verdict in Verdict),
         worst.margin if worst else None,
         worst.ref if worst else "",
-        len(ledger.gaps),
+        sum(1 for gap in ledger.gaps if not gap.follows),
         str(ledger_file),
         str(workbook_file),
     )

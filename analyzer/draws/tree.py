@@ -107,7 +107,7 @@ def _add(here: _Rail, edge: Edge, solved: Mapping[str, RailLoad], taken: dict[tu
 def _miss(here: _Rail, edge: Edge, why: str) -> None:
     part = edge.component
     why = f"load of {part.ref} not known: {why}"
-    here.gaps.setdefault(part.key, Gap(part.ref, part.key, edge.above, part.value, part.place.sheet, why))
+    here.gaps.setdefault(part.key, Gap(part.ref, part.key, edge.above, part.value, part.place.sheet, why, follows=True))
 
 
 def _pulse(edge: Edge, below: RailLoad) -> Pulse | None:

@@ -127,7 +127,7 @@ def _finding_lines(findings: Iterable[Finding], width: int) -> Iterator[str]:
 def gap_lines(ledger: Ledger, width: int) -> Iterator[str]:
     """Missing currents by rail, with how much room the rail's regulator has left."""
     by_rail: dict[str, list[Gap]] = {}
-    for gap in ledger.gaps:
+    for gap in roots(ledger.gaps):
         by_rail.setdefault(gap.rail, []).append(gap)
     if by_rail:
         yield ""
@@ -141,6 +141,11 @@ def gap_lines(ledger: Ledger, width: int) -> Iterator[str]:
         for suggestion, refs in _suggestions(gaps).items():
             whom = "" if suggestion.startswith(f"for all of {rail}:") else f" for {', '.join(refs)}"
             yield from _wrapped(f"    note{whom}: {suggestion}", width, indent="      ")
+
+
+def roots(gaps: Iterable[Gap]) -> list[Gap]:
+    """Gaps that somebody must close; those that only follow from gaps on rails below close with them."""
+    return [gap for gap in gaps if not gap.follows]
 
 
 def _suggestions(gaps: Iterable[Gap]) -> dict[str, list[str]]:
@@ -165,8 +170,12 @@ def summary_line(ledger: Ledger, waived: int = 0) -> str:
     """The last line: how many parts have which verdict."""
     fitted = sum(1 for entry in ledger.entries if entry.fitted)
     counts = ", ".join(f"{ledger.count(verdict)} {verdict.value}" for verdict in Verdict)
-    text = f"{ledger.board}: {fitted} budget{'s' if fitted != 1 else ''}: {counts}; {len(ledger.gaps)} missing currents"
+    text = f"{ledger.board}: {_counted(fitted, 'budget')}: {counts}; {_counted(len(roots(ledger.gaps)), 'missing current')}"
     return f"{text}; {waived} findings waived" if waived else text
+
+
+def _counted(number: int, what: str) -> str:
+    return f"{number} {what}" if number == 1 else f"{number} {what}s"
 
 
 def _wrapped(text: str, width: int, indent: str = "      ") -> list[str]:

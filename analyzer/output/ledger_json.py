@@ -58,7 +58,7 @@ def summary(ledger: Ledger) -> dict[str, Any]:
     return {
         **{verdict.value: ledger.count(verdict) for verdict in Verdict},
         "not_fitted": sum(1 for entry in ledger.entries if not entry.fitted),
-        "gaps": len(ledger.gaps),
+        "gaps": sum(1 for gap in ledger.gaps if not gap.follows),
         "findings": len(ledger.findings),
         "worst_part": worst.ref if worst else None,
         "worst_margin_kelvin": worst.margin if worst else None,
@@ -201,6 +201,7 @@ def _gap(gap: Gap) -> dict[str, Any]:
         "sheet": gap.sheet,
         "why": gap.why,
         "suggestions": list(gap.suggestions),
+        "follows": gap.follows,
     }
 
 
