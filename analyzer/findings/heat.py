@@ -58,6 +58,12 @@ INPUT_OVER_RATING = FindingKind(
     "The highest input voltage exceeds the part's rating.",
     "Limit the input voltage, or take a part with a higher rating.",
 )
+INPUT_DOUBTFUL = FindingKind(
+    "input-rating-doubtful",
+    Weight.TIGHT,
+    "The nominal input is inside the part's rating; only the tolerance presumed for it reaches beyond.",
+    "State the supply's real voltage span in the settings.",
+)
 INPUT_OVER_POLICY = FindingKind(
     "input-over-policy",
     Weight.TIGHT,

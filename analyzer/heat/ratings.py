@@ -52,20 +52,22 @@ def electrical_findings(draft: Draft, policy: Policy) -> Iterator[Finding]:
 def _input(draft: Draft, one: ChannelCase, policy: Policy) -> Iterator[Finding]:
     part, figures = draft.part, one.wiring.channel.figures
     vin = one.vin.high
-    for key, word, value in (
-        ("input_max", "input voltage", vin),
-        ("input_absolute_max", "input voltage", vin),
-        ("differential_max", "input-output difference", vin - one.vout.low),
+    for key, word, value, middle in (
+        ("input_max", "input voltage", vin, one.vin.nominal),
+        ("input_absolute_max", "input voltage", vin, one.vin.nominal),
+        ("differential_max", "input-output difference", vin - one.vout.low, one.vin.nominal - one.vout.nominal),
     ):
         rating = figures.get(key)
         if rating is None:
             continue
         rated = abs(rating.span.low)
         shown = f"{word} up to {show(value, 'V')}, rated {show(rated, 'V')}"
-        if value > rated:
+        if value > rated and middle <= rated and _is_presumed(one):
+            yield kinds.INPUT_DOUBTFUL.found(part.ref, shown, rating.source, key=part.key)
+        elif value > rated:
             yield kinds.INPUT_OVER_RATING.found(part.ref, shown, rating.source, key=part.key)
             return
-        if key == "input_absolute_max" and value > rated * policy.input_fraction:
+        elif key == "input_absolute_max" and value > rated * policy.input_fraction:
             message = f"{shown}; policy {policy.name} allows {policy.input_fraction:.0%} of it"
             yield kinds.INPUT_OVER_POLICY.found(part.ref, message, policy.source, key=part.key)
 
@@ -99,15 +101,18 @@ def _dropout(draft: Draft, one: ChannelCase) -> Iterator[Finding]:
             message = f"{show(left, 'V')} are left between lowest input and highest output"
             yield kinds.DROPOUT_UNKNOWN.found(part.ref, message, key=part.key)
         return
-    doubtful = any(
-        evidence is not None and evidence.weakest is Grade.PRESUMED for evidence in (one.wiring.vin, one.wiring.vout)
-    )
-    kind = kinds.DROPOUT_DOUBTFUL if doubtful else kinds.DROPOUT_LOST
+    kind = kinds.DROPOUT_DOUBTFUL if _is_presumed(one) else kinds.DROPOUT_LOST
     message = (
         f"input {show(one.vin.low, 'V')} less output {show(one.vout.high, 'V')} leaves {show(left, 'V')}, "
         f"the part needs {show(needed, 'V')}"
     )
     yield kind.found(part.ref, message, key=part.key)
+
+
+def _is_presumed(one: ChannelCase) -> bool:
+    """Whether input or output voltage rests on a presumption anywhere along its trail."""
+    given = (one.wiring.vin, one.wiring.vout)
+    return any(evidence is not None and evidence.weakest is Grade.PRESUMED for evidence in given)
 
 
 def _needed(one: ChannelCase) -> float:

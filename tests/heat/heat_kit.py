@@ -55,6 +55,7 @@ class Bench:
     topology: Topology = Topology.LINEAR
     vin: Span | None = FIVE
     vout: Span | None = THREE
+    vin_grade: Grade = Grade.RULED
     draws: tuple[tuple[Span, Pulse | None], ...] = ((TENTH, None),)
     gaps: int = 0
     has_load: bool = True
@@ -123,7 +124,7 @@ class Bench:
             f"OUT_{self.ref}",
             f"OUT_{self.ref}",
             "GND",
-            vin=None if self.vin is None else number(self.vin, "V", "input voltage"),
+            vin=None if self.vin is None else number(self.vin, "V", "input voltage", self.vin_grade),
             vout=None if self.vout is None else number(self.vout, "V", "output voltage"),
             is_off=self.is_off,
             why_open=self.why_open,

@@ -98,6 +98,22 @@ def test_ratings(figures: dict[str, float | Span], finding: str | None, verdict:
         assert finding in names(entry)
 
 
+@pytest.mark.parametrize(
+    ("nominal", "rated", "grade", "verdict"),
+    [
+        (6.0, 6.2, Grade.STATED, Verdict.OVER),
+        (6.0, 6.2, Grade.PRESUMED, Verdict.TIGHT),
+        (6.0, 5.9, Grade.PRESUMED, Verdict.OVER),
+        (6.0, 6.3, Grade.PRESUMED, Verdict.CLEAR),
+    ],
+)
+def test_a_presumed_tolerance_alone_makes_no_fault(
+    nominal: float, rated: float, grade: Grade, verdict: Verdict
+) -> None:
+    bench = at_junction(60.0, vin=Span.around(nominal, 0.05), vin_grade=grade).with_figures(input_max=rated)
+    assert bench.entry().verdict is verdict
+
+
 def test_an_unfitted_part_has_no_verdict_of_its_own() -> None:
     entry = at_junction(200.0, fitted=False).entry()
     assert not entry.fitted
@@ -173,7 +189,7 @@ def test_no_formula_is_handed_out_where_the_worst_corner_moves_with_the_load() -
         "quiescent": 0.001,
         "junction_max": 125.0,
     }
-    bench = Bench(Topology.BUCK, Span(5.5, 12.0, 28.0), EXACT(5.0), ((EXACT(2.0), None),), figures=figures)
+    bench = Bench(Topology.BUCK, Span(5.5, 12.0, 28.0), EXACT(5.0), draws=((EXACT(2.0), None),), figures=figures)
     assert bench.entry().live["closed_form"] == 0.0
 
 
@@ -230,7 +246,7 @@ def test_remedies_carry_their_numbers() -> None:
 
 
 def test_an_efficiency_that_would_pass() -> None:
-    bench = Bench(Topology.BUCK, EXACT(12.0), EXACT(5.0), ((EXACT(2.0), None),))
+    bench = Bench(Topology.BUCK, EXACT(12.0), EXACT(5.0), draws=((EXACT(2.0), None),))
     entry = bench.but(figures={"efficiency": 0.8, "junction_max": 125.0}).entry()  # 2.5 W · 50 K/W = 125 K
     least = next(one.numbers["efficiency"] for one in entry.remedies if one.kind == "least efficiency")
     assert least == pytest.approx(10.0 / 11.5)
