@@ -170,7 +170,8 @@ def summary_line(ledger: Ledger, waived: int = 0) -> str:
     """The last line: how many parts have which verdict."""
     fitted = sum(1 for entry in ledger.entries if entry.fitted)
     counts = ", ".join(f"{ledger.count(verdict)} {verdict.value}" for verdict in Verdict)
-    text = f"{ledger.board}: {_counted(fitted, 'budget')}: {counts}; {_counted(len(roots(ledger.gaps)), 'missing current')}"
+    gaps = _counted(len(roots(ledger.gaps)), "missing current")
+    text = f"{ledger.board}: {_counted(fitted, 'budget')}: {counts}; {gaps}"
     return f"{text}; {waived} findings waived" if waived else text
 
 

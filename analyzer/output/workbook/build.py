@@ -53,7 +53,7 @@ def build(ledger: Ledger, settings: Settings, typed: Typed, name: str) -> bytes:
     settings_sheet.write(book, ledger, settings)
     regulators.write(book, ledger, rows)
     currents.write_rails(book, ledger, rows)
-    currents.write_currents(book, rows, typed.cells, typed.notes)
+    currents.write_currents(book, ledger, rows, typed.cells, typed.notes)
     lists.write_remedies(book, ledger)
     lists.write_evidence(book, ledger)
     lists.write_findings(book, ledger, typed.answers)

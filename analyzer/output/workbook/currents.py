@@ -101,6 +101,7 @@ def _room(entry: Entry | None) -> object:
 
 def write_currents(
     book: Book,
+    ledger: Ledger,
     plan: Plan,
     typed: Mapping[tuple[str, str], tuple[object, object, object]],
     notes: Mapping[tuple[str, str], str],
@@ -109,6 +110,7 @@ def write_currents(
 
     Args:
         book: The workbook.
+        ledger: The ledger.
         plan: Rows.
         typed: (identity, rail) → what was typed as low, nominal, high; carried over.
         notes: (identity, rail) → what was typed as a note.
@@ -117,8 +119,14 @@ def write_currents(
         "Type currents into the coloured cells: amperes as numbers, or text with a unit such as 120 mA or 80..150 mA."
     )
     sheet = book.sheet("Currents", "Currents", remark, CURRENT_COLUMNS, freeze=2)
+    rooms = {rail: _room(entry) for rail, entry in _feeders(ledger).items()}
     for number, line in enumerate(plan.lines):
-        _line(sheet, FIRST_ROW + number, line, plan, typed.get((line.key, line.rail)), notes.get((line.key, line.rail)))
+        row, where = FIRST_ROW + number, (line.key, line.rail)
+        _line(sheet, row, line, plan, typed.get(where), notes.get(where))
+        if line.rail in plan.rail_rows:
+            place = f"Rails!$H${plan.rail_rows[line.rail] + 1}"
+            formula = f'=IF(ISNUMBER({place}),{place},"")'
+            sheet.formula(row, CURRENT_PLACES["Rail headroom [A]"], formula, rooms.get(line.rail, ""))
     last = FIRST_ROW + len(plan.lines) - 1
     sheet.filter(last)
     first = CURRENT_PLACES["i0 [A]"]
@@ -147,10 +155,11 @@ def _line(
     sheet.put(row, CURRENT_PLACES["Suggestions from notes, or source"], words)
     sheet.put(row, CURRENT_PLACES["Sheet"], line.sheet)
     sheet.put(row, CURRENT_PLACES["Identity"], line.key)
-    below = next((o.rail for o in line.below.outputs if o.rail in plan.rail_rows), None) if line.below else None
-    if line.below and below:
-        for offset, key in enumerate(("i0", "i1", "i2")):
-            sheet.put(row, CURRENT_PLACES["i0 [A]"] + offset, line.below.live[key])
+    below = None
+    if line.follows and line.follows[0] in plan.rail_rows:
+        below, coefficients = line.follows
+        for offset, coefficient in enumerate(coefficients):
+            sheet.put(row, CURRENT_PLACES["i0 [A]"] + offset, coefficient)
     at = f"{row + 1}"
     below_load = f"Rails!$F${plan.rail_rows[below] + 1}" if below else "0"
     follows = f"$Q{at}+$R{at}*{below_load}+$S{at}*{below_load}^2"
@@ -161,9 +170,6 @@ def _line(
     sheet.formula(row, CURRENT_PLACES["Counts as [A]"], counts, span.high if span else 0.0)
     missing = f'=IF(OR($D{at}<>"gap",COUNTA($H{at}:$J{at})>0),0,1)'
     sheet.formula(row, CURRENT_PLACES["Missing"], missing, 1 if line.gap else 0)
-    if line.rail in plan.rail_rows:
-        place = f"Rails!$H${plan.rail_rows[line.rail] + 1}"
-        sheet.formula(row, CURRENT_PLACES["Rail headroom [A]"], f'=IF(ISNUMBER({place}),{place},"")', "")
 
 
 def _words(line: Line) -> str:

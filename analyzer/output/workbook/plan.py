@@ -22,7 +22,7 @@ class Line:
         kind: "stated", "ruled", "computed", "regulator", "gap", or "gone" for a part not there now.
         amps: The current as evidence, None for a gap.
         gap: The gap, None for a draw.
-        below: Entry whose input current this is, where it can be followed live.
+        follows: Where the current follows the load of a rail below: that rail, and i0 [A], i1 [A/A], i2 [A/A²].
     """
 
     rail: str
@@ -33,7 +33,7 @@ class Line:
     kind: str
     amps: Evidence | None
     gap: Gap | None
-    below: Entry | None = None
+    follows: tuple[str, tuple[float, float, float]] | None = None
 
 
 @dataclass(frozen=True)
@@ -52,14 +52,15 @@ def plan(ledger: Ledger, typed: Typed) -> Plan:
 
     What was typed for a part or rail that is gone gets a line of kind "gone" at the end: nothing typed is dropped.
     """
-    values = {entry.key: entry for entry in ledger.entries}
+    entries = {entry.key: entry for entry in ledger.entries}
+    passed = {feed.ref: rail.name for rail in ledger.rails for feed in rail.feeds if feed.kind == "passage"}
     lines: list[Line] = []
     blocks: dict[str, tuple[int, int]] = {}
     for rail in ledger.rails:
         load = ledger.loads.get(rail.name)
         mine = []
         if load is not None:
-            mine += [_draw_line(draw, values) for draw in load.draws]
+            mine += [_draw_line(draw, entries, passed, ledger) for draw in load.draws]
             mine += [_gap_line(gap) for gap in load.gaps]
         if mine:
             blocks[rail.name] = (FIRST_ROW + len(lines), FIRST_ROW + len(lines) + len(mine) - 1)
@@ -76,12 +77,29 @@ def plan(ledger: Ledger, typed: Typed) -> Plan:
     )
 
 
-def _draw_line(draw: Draw, entries: Mapping[str, Entry]) -> Line:
+def _draw_line(draw: Draw, entries: Mapping[str, Entry], passed: Mapping[str, str], ledger: Ledger) -> Line:
     entry = entries.get(draw.key) if draw.kind == "regulator" else None
-    followed = entry if entry is not None and "i1" in entry.live else None
     value = entry.value if entry else ""
     sheet = entry.sheet if entry else ""
-    return Line(draw.rail, draw.ref, draw.key, value, sheet, draw.kind, draw.amps, None, followed)
+    follows = None
+    if draw.kind == "regulator":
+        follows = _of_entry(entry) if entry else _of_passage(draw, passed.get(draw.ref), ledger)
+    return Line(draw.rail, draw.ref, draw.key, value, sheet, draw.kind, draw.amps, None, follows)
+
+
+def _of_entry(entry: Entry) -> tuple[str, tuple[float, float, float]] | None:
+    rail = next((output.rail for output in entry.outputs if output.rail), None)
+    if rail is None or "i1" not in entry.live:
+        return None
+    return rail, (entry.live["i0"], entry.live["i1"], entry.live["i2"])
+
+
+def _of_passage(draw: Draw, rail: str | None, ledger: Ledger) -> tuple[str, tuple[float, float, float]] | None:
+    """A diode or switch without a budget of its own takes what it passes on, if that is what the engine found."""
+    load = ledger.loads.get(rail or "")
+    if rail is None or load is None or load.known.high != draw.amps.span.high:
+        return None
+    return rail, (0.0, 1.0, 0.0)
 
 
 def _gap_line(gap: Gap) -> Line:

@@ -53,12 +53,27 @@ COLUMNS = (
     Column("Engine heat [W]", 9, "plain"),
     Column("Engine junction [°C]", 9, "plain"),
     Column("Engine load [A]", 9, "plain"),
+    Column("Rail load as audited [A]", 9, "plain"),
     Column("θ as audited [K/W]", 9, "plain"),
     Column("Identity", 12),
 )
 PLACES: Mapping[str, int] = {column.head: number for number, column in enumerate(COLUMNS)}
 
-_JUNCTION_KINDS = ("junction-over-rating", "junction-over-policy", "junction-tight", "budget-open")
+_FOLLOWED_KINDS = frozenset(
+    {
+        "junction-over-rating",
+        "junction-over-policy",
+        "junction-tight",
+        "current-over-rating",
+        "current-over-policy",
+        "budget-open",
+    }
+)
+"""Findings that the verdict's own formula works out; all others are taken as the audit found them."""
+
+
+RERUN = "re-run"
+"""What a row says in place of its verdict when something was edited that its formulas do not follow."""
 
 
 def write(book: Book, ledger: Ledger, plan: Plan) -> None:
@@ -69,7 +84,7 @@ def write(book: Book, ledger: Ledger, plan: Plan) -> None:
     sheet = book.sheet("Regulators", "Regulators", remark, COLUMNS)
     shares = {(feed.ref, rail.name): feed.share for rail in ledger.rails for feed in rail.feeds}
     for entry in ledger.entries:
-        _row(sheet, entry, plan, shares)
+        _row(sheet, entry, plan, shares, ledger)
     last = FIRST_ROW + len(ledger.entries) - 1
     sheet.filter(last)
     if ledger.entries:
@@ -85,7 +100,7 @@ def is_live(entry: Entry) -> bool:
     return entry.live.get("closed_form") == 1.0
 
 
-def _row(sheet: Sheet, entry: Entry, plan: Plan, shares: Mapping[tuple[str, str], float]) -> None:
+def _row(sheet: Sheet, entry: Entry, plan: Plan, shares: Mapping[tuple[str, str], float], ledger: Ledger) -> None:
     row = plan.entry_rows[entry.key]
     output = next((one for one in entry.outputs if one.rail), None)
     rail = output.rail if output else ""
@@ -98,7 +113,7 @@ def _row(sheet: Sheet, entry: Entry, plan: Plan, shares: Mapping[tuple[str, str]
     ends = [end for span in (volts_in, volts_out) for end in ((span.low, span.high) if span else (None, None))]
     sheet.row(row, (*identity, *ends))
     others = [missing for missing in entry.missing if not missing.startswith(f"load of {rail}:")]
-    weights = {finding.weight for finding in entry.findings if finding.name not in _JUNCTION_KINDS}
+    weights = {finding.weight for finding in entry.findings if finding.name not in _FOLLOWED_KINDS}
     other = "over" if Weight.OVER in weights else "tight" if Weight.TIGHT in weights else "none"
     load = live.get("load")
     static: dict[str, object] = {
@@ -121,6 +136,7 @@ def _row(sheet: Sheet, entry: Entry, plan: Plan, shares: Mapping[tuple[str, str]
         "Engine heat [W]": worst.watts if worst else None,
         "Engine junction [°C]": worst.junction if worst else None,
         "Engine load [A]": load,
+        "Rail load as audited [A]": ledger.loads[rail].known.high if rail in ledger.loads else None,
         "θ as audited [K/W]": live.get("theta_air") if closed else None,
         "Identity": entry.key,
     }
@@ -147,11 +163,15 @@ def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None) -> Non
     most = f"IF(ISNUMBER({rated}),MIN({rated},MAX(0,{root})),MAX(0,{root}))"
     static_missing = at["Missing besides the load"]
     missing = at["Missing in all"]
+    audited = at["Rail load as audited [A]"]
+    stale = f'AND({at["Model"]}="engine",OR(Edited>0,AND(ISNUMBER({audited}),ABS({rail_load}-N({audited}))>1E-12)))'
     verdict = (
-        f'=IF({at["Other findings"]}="not fitted","not fitted",'
-        f'IF(OR({at["Other findings"]}="over",AND(ISNUMBER({junction}),ISNUMBER({limit}),{junction}>{limit})),"over",'
+        f'=IF({at["Other findings"]}="not fitted","not fitted",IF({stale},"{RERUN}",'
+        f'IF(OR({at["Other findings"]}="over",AND(ISNUMBER({junction}),ISNUMBER({limit}),{junction}>{limit}),'
+        f'AND(ISNUMBER({rated}),N({load})>{rated})),"over",'
         f'IF({missing}>0,"open",'
-        f'IF(OR({at["Other findings"]}="tight",{junction}>{tight}),"tight","clear"))))'
+        f'IF(OR({at["Other findings"]}="tight",{junction}>{tight},'
+        f'AND(ISNUMBER({rated}),N({load})>{rated}*Policy_current)),"tight","clear")))))'
     )
     formulas: tuple[tuple[str, str, object], ...] = (
         (

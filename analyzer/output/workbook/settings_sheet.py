@@ -56,6 +56,8 @@ def inputs(settings: Settings) -> Iterator[Input]:
     yield Input("Margin_tight", "Tight above: rating less", policy.junction_tight, "K", source, grade)
     yield Input("Policy_factor", "Policy limit: fraction of rating", policy.junction_factor or 1.0, "1", source, grade)
     cap = policy.junction_cap if policy.junction_cap is not None else 1000.0
+    current = policy.current_fraction
+    yield Input("Policy_current", "Policy limit: fraction of rated current", current, "1", source, grade)
     yield Input("Policy_cap", "Policy limit: at most", cap, "°C", source, grade)
 
 
@@ -77,6 +79,13 @@ def write(book: Book, ledger: Ledger, settings: Settings) -> None:
     sheet.formula(row, 1, formula, factor)
     sheet.put(row, 6, "Thin_air")
     book.book.define_name("Thin_air", f"=Settings!$B${row + 1}")
+    row += 1
+    first, last = HEAD_ROW + 2, row - 1
+    edited = f"=SUMPRODUCT(--($B${first}:$B${last}<>$D${first}:$D${last}))"
+    sheet.row(row, ("Settings edited since the audit", None, "", None, "rows that no formula follows say re-run", ""))
+    sheet.formula(row, 1, edited, 0)
+    sheet.put(row, 6, "Edited")
+    book.book.define_name("Edited", f"=Settings!$B${row + 1}")
     row += 2
     for evidence in ledger.settings:
         sheet.row(row, (evidence.quantity, None, evidence.unit, None, evidence.source, evidence.grade.value))

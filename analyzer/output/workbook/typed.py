@@ -101,7 +101,7 @@ class Typed:
 
     def _policy(self, policy: Policy) -> Policy:
         new = self.settings
-        keys = {"Margin_over", "Margin_tight", "Policy_factor", "Policy_cap"} & set(new)
+        keys = {"Margin_over", "Margin_tight", "Policy_factor", "Policy_cap", "Policy_current"} & set(new)
         if not keys:
             return policy
         return replace(
@@ -110,6 +110,7 @@ class Typed:
             junction_tight=new.get("Margin_tight", policy.junction_tight),
             junction_factor=new.get("Policy_factor", policy.junction_factor),
             junction_cap=new.get("Policy_cap", policy.junction_cap),
+            current_fraction=new.get("Policy_current", policy.current_fraction),
             source=f"{policy.source}, edited in {self.file}",
         )
 
@@ -252,7 +253,7 @@ def _settings(path: Path, rows: list[Row], faults: list[Fault]) -> dict[str, flo
     found = {}
     for number, row in rows:
         name, value, before = _text(row.get("Name in formulas")), row.get("Value"), row.get("As audited")
-        if not name or name == "Thin_air" or value == before:
+        if not name or name in ("Thin_air", "Edited") or value == before:
             continue
         if isinstance(value, (int, float)) and not isinstance(value, bool):
             found[name] = float(value)
