@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import math
+import os
 from collections.abc import Callable, Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from analyzer.circuit import Circuit, InputFile, natural_key
@@ -19,6 +20,8 @@ from analyzer.rule import Rulebook
 from analyzer.settings import Settings
 
 SETTINGS_NAME = "heatledger.toml"
+TABLES = (".csv", ".tsv", ".xlsx")
+"""Endings by which a path is a parts table."""
 
 
 @dataclass(frozen=True)
@@ -47,7 +50,7 @@ def audit(
     """Audit one board.
 
     Args:
-        path: A `.kicad_sch`, a `.kicad_pro`, a folder with one project, or a netlist.
+        path: A `.kicad_sch`, a `.kicad_pro`, a folder with one project, a netlist, or a parts table.
         settings_file: Settings to use; None looks for `heatledger.toml` beside the project.
         rule_files: Rule files besides those the settings name.
         adjust: Changes the settings as read: what was typed into a workbook beats them.
@@ -62,30 +65,56 @@ def audit(
     from analyzer.recognise import load_rulebook
     from analyzer.settings_file import load_settings
 
-    found = settings_file or settings_beside(path)
-    settings = adjust(load_settings(found))
-    base = found.parent if found else path.parent
+    file = settings_file or settings_beside(path)
+    settings = adjust(load_settings(file))
+    base = file.parent if file else path.parent
     rulebook = load_rulebook([*(base / name for name in settings.rule_files), *rule_files])
+    if path.suffix.lower() in TABLES:
+        return _audit_table(path, rulebook, settings, chance_seed)
     circuit = read(path, settings=settings, variant=variant, allow_outside=allow_outside)
     return close(circuit, rulebook, settings, chance_seed)
+
+
+def _audit_table(path: Path, rulebook: Rulebook, settings: Settings, chance_seed: int | None) -> Audit:
+    """A parts table: one budget a row, without connectivity."""
+    from analyzer.reading.parts_table import read_table
+    from analyzer.table_audit import stages, unknown_rows
+
+    table = read_table(path)
+    circuit, parts, rails, loads, found = stages(path, table, rulebook)
+    result = _budget(circuit, parts, rails, loads, rulebook, settings, found, chance_seed)
+    return replace(result, ledger=replace(result.ledger, not_understood=tuple(unknown_rows(table, parts))))
 
 
 def close(circuit: Circuit, rulebook: Rulebook, settings: Settings, chance_seed: int | None = None) -> Audit:
     """The pure part of the job: from the circuit as read to the closed ledger."""
     from analyzer.draws import find_loads
-    from analyzer.heat import close_entries
-    from analyzer.heat.ratings import site_findings
     from analyzer.rails import find_rails
     from analyzer.recognise import recognise
 
     parts, recognition = recognise(circuit, rulebook, settings)
     rails = find_rails(circuit, parts, rulebook, settings)
     loads = find_loads(circuit, parts, rails, settings, rulebook)
+    return _budget(circuit, parts, rails, loads, rulebook, settings, recognition, chance_seed)
+
+
+def _budget(
+    circuit: Circuit,
+    parts: tuple[Part, ...],
+    rails: Rails,
+    loads: Loads,
+    rulebook: Rulebook,
+    settings: Settings,
+    recognition: Iterable[Finding],
+    chance_seed: int | None,
+) -> Audit:
+    from analyzer.heat import close_entries
+    from analyzer.heat.ratings import site_findings
+
     known = (*recognition, *rails.findings, *loads.findings)
     entries = close_entries(circuit, parts, rails, loads, rulebook, settings, known=known, chance_seed=chance_seed)
     of_entries = (finding for entry in entries for finding in entry.findings)
-    found = (*circuit.findings, *known, *site_findings(settings), *of_entries)
-    findings = dict.fromkeys(found)
+    findings = dict.fromkeys((*circuit.findings, *known, *site_findings(settings), *of_entries))
     ledger = Ledger(
         board=circuit.board,
         inputs=(
@@ -107,9 +136,10 @@ def close(circuit: Circuit, rulebook: Rulebook, settings: Settings, chance_seed:
 
 def settings_beside(path: Path) -> Path | None:
     """The settings file in the folder of the project, if there is one."""
-    folder = path if path.is_dir() else path.parent
+    # os.path answers False where Path raises, for names longer than the system allows
+    folder = path if os.path.isdir(path) else path.parent
     candidate = folder / SETTINGS_NAME
-    return candidate if candidate.is_file() else None
+    return candidate if os.path.isfile(candidate) else None
 
 
 def in_force(settings: Settings, circuit: Circuit) -> tuple[Evidence, ...]:

@@ -88,7 +88,7 @@ def run_on_cluster(jobs: Iterable[Job], address: str) -> Iterator[Outcome]:
         remedy = "Install the optional extra: pip install 'heatledger[cluster]'."
         raise UsageError(Fault("--cluster needs the package 'distributed'", remedy=remedy)) from error
     try:
-        client = Client(address, timeout="10s", set_as_default=False)
+        client = Client(address, timeout="10s")
     except (OSError, ValueError, TimeoutError) as error:
         raise InputError(Fault(f"no cluster answers ({error})", address, remedy="Check the address.")) from error
     with client:

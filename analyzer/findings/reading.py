@@ -181,3 +181,9 @@ SEVERAL_NAMES = FindingKind(
     "one net here. Where such a net also passes through sheet pins, KiCad's own netlist may keep parts of it apart.",
     "Keep one name, or join the two nets through a net tie.",
 )
+TABLE_CELL = FindingKind(
+    "table-cell",
+    Weight.OPEN,
+    "A cell of a parts table cannot be read, so its row lacks that figure.",
+    "Write a number with its unit, or a unit in the column's head.",
+)

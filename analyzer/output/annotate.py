@@ -12,7 +12,7 @@ from analyzer.errors import Fault, InputError
 from analyzer.findings.base import Verdict
 from analyzer.ledger import Entry, Ledger
 from analyzer.output.atomic import write_bytes
-from analyzer.reading.parts_table import SYNONYMS, decoded, spread_refs
+from analyzer.reading.parts_table import SYNONYMS, decoded, separator_of, spread_refs
 
 HEADS = ("Dissipation [W]", "Junction [°C]", "Margin [K]", "Verdict", "Missing current")
 _RISKY = ("=", "+", "-", "@", "\t", "\r")
@@ -82,8 +82,7 @@ def _write(cell: Any, value: object) -> None:
 
 def _csv(source: Path, results: Mapping[str, Entry], gaps: set[str]) -> bytes:
     text, encoding = decoded(source)
-    head_line = next((line for line in text.splitlines() if line.strip()), "")
-    separator = max(";\t,", key=head_line.count)
+    separator = separator_of(text)
     rows = list(csv.reader(io.StringIO(text, newline=""), delimiter=separator))
     place = _head(tuple(row) for row in rows[:20])
     if place is None:

@@ -91,8 +91,7 @@ def read_table(path: Path, heads: Mapping[str, str] | None = None) -> Table:
 
 def _csv(path: Path) -> tuple[list[list[str]], bool]:
     text, _ = decoded(path)
-    head = next((line for line in text.splitlines() if line.strip()), "")
-    separator = max(";\t,", key=head.count)
+    separator = separator_of(text)
     try:
         cells = [
             [cell.strip() for cell in row] for row in csv.reader(io.StringIO(text, newline=""), delimiter=separator)
@@ -101,6 +100,12 @@ def _csv(path: Path) -> tuple[list[list[str]], bool]:
         raise InputError(Fault(f"is no table of text ({error})", str(path))) from error
     # where the comma separates nothing, it is the decimal sign of many locales
     return cells, separator != ","
+
+
+def separator_of(text: str) -> str:
+    """The character that separates columns: the one that the first lines hold most of."""
+    head = "\n".join(text.splitlines()[:20])
+    return max(";\t,", key=head.count)
 
 
 def _xlsx(path: Path) -> tuple[list[list[str]], bool]:
