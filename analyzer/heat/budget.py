@@ -9,6 +9,7 @@ from analyzer.circuit import Circuit
 from analyzer.evidence import Evidence, Grade
 from analyzer.findings import heat as kinds
 from analyzer.findings.base import Finding, Verdict, Weight
+from analyzer.findings.currents import POSSIBLE_LOADS
 from analyzer.heat import coupling, ratings
 from analyzer.heat.case import Case, Worked, corner, nominal, worst
 from analyzer.heat.draft import Draft, by_part, draft
@@ -56,9 +57,11 @@ def close_entries(
         chance_seed: Seed of the Monte-Carlo estimate; None leaves it out.
     """
     wirings = by_part(rails.wirings)
+    known = tuple(known)
+    silent = {finding.subject: finding.message for finding in known if finding.name == POSSIBLE_LOADS.name}
     matters = [finding for finding in (*circuit.findings, *known) if finding.weight is Weight.OPEN]
     drafts = [
-        draft(part, wirings.get(part.key, ()), circuit, rails, loads, rulebook, settings, matters)
+        draft(part, wirings.get(part.key, ()), circuit, rails, loads, rulebook, settings, matters, silent)
         for part in parts
         if _has_entry(part)
     ]

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
+from types import MappingProxyType
 
 from analyzer.circuit import Circuit
 from analyzer.evidence import Evidence, Grade
@@ -62,6 +63,7 @@ def draft(
     rulebook: Rulebook,
     settings: Settings,
     known: Iterable[Finding],
+    silent: Mapping[str, str] = MappingProxyType({}),
 ) -> Draft:
     """Gather one part's case."""
     stated = settings.parts.get(part.ref, NOTHING_STATED)
@@ -76,7 +78,7 @@ def draft(
         rail_loads.append(load)
         if wiring.is_off:
             continue
-        channel, lacks, used, more = _channel(wiring, load, _share(rails, wiring))
+        channel, lacks, used, more = _channel(wiring, load, _share(rails, wiring), silent)
         missing += lacks
         evidence += used
         notes += more
@@ -148,7 +150,7 @@ def thin_air(site: Site) -> tuple[float, float]:
 
 
 def _channel(
-    wiring: Wiring, load: RailLoad | None, share: float
+    wiring: Wiring, load: RailLoad | None, share: float, silent: Mapping[str, str]
 ) -> tuple[ChannelCase | None, list[str], list[Evidence], list[str]]:
     model = model_of(wiring)
     name = f"channel {wiring.channel.name}: " if wiring.channel.name else ""
@@ -167,7 +169,7 @@ def _channel(
         lacks.append(f"{name}load: no output rail")
     else:
         amps = Span(*(max(0.0, corner * share) for corner in load.known.corners))
-        evidence.append(load_evidence(load, amps))
+        evidence.append(load_evidence(load, amps, silent.get(load.rail, "")))
         if not load.is_complete:
             lacks.append(f"{name}load of {load.rail}: {_gap_words(load)}")
     if model.missing or wiring.vin is None or wiring.vout is None:
@@ -176,12 +178,20 @@ def _channel(
     return channel, lacks, evidence, list(model.notes)
 
 
-def load_evidence(load: RailLoad, amps: Span) -> Evidence:
-    """The load of a rail as evidence, with the draws it was summed from."""
+def load_evidence(load: RailLoad, amps: Span, silent: str = "") -> Evidence:
+    """The load of a rail as evidence, with the draws it was summed from.
+
+    Args:
+        load: The rail's load.
+        amps: What of it this part carries [A].
+        silent: What hangs on the rail and was counted as taking none, "" if nothing: an assumption, so presumed.
+    """
     refs = ", ".join(dict.fromkeys(draw.ref or "off-board" for draw in load.draws)) or "nothing"
-    note = "" if load.is_complete else "a lower bound: some parts' currents are missing"
+    lower = "" if load.is_complete else "a lower bound: some parts' currents are missing"
+    note = "; ".join(text for text in (lower, silent) if text)
     parents = tuple(draw.amps for draw in load.draws)
-    return Evidence(f"load of {load.rail}", amps, "A", f"sum over {refs}", Grade.DERIVED, parents=parents, note=note)
+    grade = Grade.PRESUMED if silent else Grade.DERIVED
+    return Evidence(f"load of {load.rail}", amps, "A", f"sum over {refs}", grade, parents=parents, note=note)
 
 
 def _gap_words(load: RailLoad) -> str:
