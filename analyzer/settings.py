@@ -158,11 +158,18 @@ class Waiver:
 
 @dataclass(frozen=True, slots=True)
 class Coupling:
-    """Heat from a neighbour: kelvin at `ref` per watt in `by` [K/W], symmetric."""
+    """Heat from a neighbour, symmetric: a resistance that counts, or a distance that only informs.
+
+    Attributes:
+        ref, by: The two parts.
+        theta: Kelvin at one per watt in the other [K/W].
+        distance: Distance between them [m], for the published estimate of a copper plane; never in the budget.
+    """
 
     ref: str
     by: str
-    theta: Evidence
+    theta: Evidence | None = None
+    distance: Evidence | None = None
 
 
 @dataclass(frozen=True)

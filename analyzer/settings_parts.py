@@ -120,11 +120,12 @@ def coupling(entries: Iterable[Table]) -> tuple[Coupling, ...]:
     for entry in entries:
         ref, by = entry.required("ref"), entry.required("by")
         theta = entry.evidence("theta", "coupling resistance", _D.THERMAL_RESISTANCE, 0, 2000)
-        if "theta" not in entry:
-            entry.fault("theta", "is missing")
+        distance = entry.evidence("distance", "distance of neighbours", _D.LENGTH, 0.0015, 1)
+        if "theta" not in entry and "distance" not in entry:
+            entry.fault("theta", "is missing", "Give theta, which counts, or distance, which only informs.")
         if ref and ref == by:
             entry.fault("by", f"{ref} cannot be its own neighbour")
         entry.finish()
-        if ref and by and theta:
-            found.append(Coupling(ref, by, theta))
+        if ref and by and (theta or distance):
+            found.append(Coupling(ref, by, theta, distance))
     return tuple(found)

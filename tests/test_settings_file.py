@@ -162,6 +162,7 @@ def test_everything_that_can_be_stated(write):
     assert settings.unfitted_values == ("NA",)
     assert (settings.resistor_tolerance.span.high, settings.shunt_max) == (0.05, 0.5)
     (coupling,) = settings.coupling
+    assert coupling.theta is not None
     assert (coupling.ref, coupling.by, coupling.theta.span) == ("U1", "U2", Span.exact(8.0))
     (waiver,) = settings.waivers
     assert (waiver.finding, waiver.subject, waiver.expires) == ("draw-stated-twice", "U3", "2027-06-30")

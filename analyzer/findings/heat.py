@@ -148,3 +148,10 @@ OUT_OF_TABLE = FindingKind(
     "An operating point lies outside the table that a rule gives; published tables are not extrapolated.",
     "Extend the table from the data sheet.",
 )
+NEIGHBOUR_HEAT = FindingKind(
+    "neighbour-heat",
+    Weight.NOTE,
+    "A warm neighbour at a stated distance; the kelvin told are a published estimate for one copper plane and are not "
+    "in the budget.",
+    "Measure the coupling, or state it as theta in [[coupling]] to have it counted.",
+)

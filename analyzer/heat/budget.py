@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import replace
 
 from analyzer.circuit import Circuit
@@ -28,6 +28,7 @@ from analyzer.quantity import Span
 from analyzer.rail import Rails, Wiring
 from analyzer.rule import Rulebook, Topology
 from analyzer.settings import Settings
+from analyzer.wording import show
 
 _HEATING_FIGURES = ("on_resistance", "forward_drop")
 _SETTLING_ROUNDS = 20
@@ -65,10 +66,25 @@ def close_entries(
         for part in parts
         if _has_entry(part)
     ]
+    drafts = [replace(one, findings=(*one.findings, *_informed(one, drafts, settings))) for one in drafts]
     return tuple(
         _entry(one, extra, lost, circuit, rulebook, settings, chance_seed)
         for one, extra, lost in _with_neighbours(drafts, settings)
     )
+
+
+def _informed(one: Draft, drafts: list[Draft], settings: Settings) -> Iterator[Finding]:
+    """What a copper plane would bring over from neighbours of which only the distance is stated."""
+    near = coupling.by_distance(one.part.ref, settings.coupling)
+    for other in drafts if near else ():
+        distance, watts = near.get(other.part.ref), _heat(other, 0.0)
+        if distance is not None and watts is not None and other.part.component.fitted:
+            kelvin = coupling.plane_estimate(distance) * watts
+            message = (
+                f"{other.part.ref} makes {show(watts, 'W')} at {show(distance, 'm')}: one copper plane would warm "
+                f"{one.part.ref} by about {kelvin:.0f} K (information only)"
+            )
+            yield kinds.NEIGHBOUR_HEAT.found(one.part.ref, message, key=one.part.key)
 
 
 def _has_entry(part: Part) -> bool:

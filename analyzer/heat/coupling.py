@@ -16,9 +16,32 @@ def neighbours(ref: str, pairs: Iterable[Coupling]) -> dict[str, float]:
     found: dict[str, float] = {}
     for pair in pairs:
         other = pair.by if pair.ref == ref else pair.ref if pair.by == ref else None
-        if other is not None:
+        if other is not None and pair.theta is not None:
             found[other] = max(found.get(other, 0.0), pair.theta.span.high)
     return found
+
+
+def by_distance(ref: str, pairs: Iterable[Coupling]) -> dict[str, float]:
+    """Least distance [m] by neighbour of `ref` where only a distance is stated."""
+    found: dict[str, float] = {}
+    for pair in pairs:
+        other = pair.by if pair.ref == ref else pair.ref if pair.by == ref else None
+        if other is not None and pair.theta is None and pair.distance is not None:
+            found[other] = min(found.get(other, math.inf), pair.distance.span.low)
+    return found
+
+
+ONE_PLANE = 385.0 * 35e-6 + 0.3 * 1.5e-3
+"""kt [W/K] of one 35 µm copper plane on 1.5 mm of FR-4."""
+
+SOURCE_RADIUS = 1.5e-3
+BOTH_FACES = 20.0
+"""Heat transfer of both faces together [W/(m²·K)] that fits published board data."""
+
+
+def plane_estimate(distance: float) -> float:
+    """K/W at a distance [m] from a small part on a board with one copper plane: information only."""
+    return plate_spreading(max(distance, SOURCE_RADIUS), SOURCE_RADIUS, ONE_PLANE, BOTH_FACES)
 
 
 def rise(thetas: Mapping[str, float], watts: Mapping[str, float]) -> float:
