@@ -15,12 +15,14 @@ from analyzer.heat.path import ThermalPath
 from analyzer.ledger import ChannelPoint, Corner
 from analyzer.load import RailLoad
 from analyzer.losses.base import End, Loss, LossModel, Point
-from analyzer.losses.hot import HOPELESS_CELSIUS
 from analyzer.quantity import Span
 from analyzer.rail import Wiring
 
 _Choose = Callable[[float], tuple["Chosen", ...]]
 """What a corner takes at a junction temperature [°C]."""
+
+HOPELESS_CELSIUS = 1000.0
+"""Above this no semiconductor is left; a search that gets here has no solution that matters."""
 
 _PASSES = 200
 _SEARCHES = 24
