@@ -41,6 +41,8 @@ def write(book: Book, ledger: Ledger, plan: Plan) -> None:
                 moved = entry.worst.ambient - _own_rise(ledger) - entry.live.get("rise_extra", 0.0)
                 result = entry.margin + moved - ambient
             sheet.formula(row, 1 + number, f"={margin}+{air}-({extra})-$A${row + 1}", result)
+    # a chart cut by a page break cannot be read
+    sheet.raw.fit_to_pages(1, 1)
     if not shown:
         return
     rows = [plan.entry_rows[entry.key] for entry in shown]

@@ -35,7 +35,7 @@ WIDE = 66.0
 """Width taken for sheets without columns of their own."""
 
 FORMS: Mapping[str, Mapping[str, Any]] = {
-    "text": {"valign": "top"},
+    "text": {"valign": "top", "indent": 1},
     "wrap": {"valign": "top", "text_wrap": True},
     "number": {"num_format": "0.000", "valign": "top"},
     "volts": {"num_format": "0.000", "valign": "top"},
@@ -46,7 +46,7 @@ FORMS: Mapping[str, Mapping[str, Any]] = {
     "percent": {"num_format": "0.0%", "valign": "top"},
     "plain": {"num_format": "General", "valign": "top", "align": "left"},
     # the look of spreadsheets' own Input style, by which people know where to type
-    "input": {"bg_color": "#FFCC99", "font_color": "#3F3F76", "border": 1, "border_color": "#7F7F7F", "locked": False},
+    "input": {"bg_color": "#FFCC99", "font_color": "#3F3F76", "border": 1, "locked": False, "valign": "top"},
     "head": {"bold": True, "text_wrap": True, "valign": "top", "bottom": 2, "bg_color": "#E4E7EB"},
     "title": {"bold": True, "font_size": 14},
     "remark": {"italic": True, "font_color": "#444444"},
