@@ -1,0 +1,280 @@
+"""Every topology: corners that are worst, energy that balances, loads that heat, figures that are missing."""
+
+from __future__ import annotations
+
+import random
+from collections.abc import Callable, Iterator
+
+import pytest
+from losses_kit import curve, efficiency_map, evidence, model, wiring
+
+from analyzer.heat.case import Case, ChannelCase, worst
+from analyzer.heat.path.base import all_air
+from analyzer.losses.base import End, LossModel, Point
+from analyzer.losses.dispatch import MODELS, input_current, model_of
+from analyzer.quantity import Span
+from analyzer.rail import Outside
+from analyzer.rule import PASSAGES, SWITCHERS, Topology
+
+ENTRIES = 2000
+"""Random entries a topology."""
+
+Pick = random.Random
+Figures = dict[str, Span | float]
+
+
+def span(pick: Pick, low: float, high: float) -> Span:
+    """A random span inside two limits."""
+    ends = sorted(pick.uniform(low, high) for _ in range(3))
+    return Span(*ends)
+
+
+def terms(pick: Pick) -> Figures:
+    return {
+        "high_side_resistance": span(pick, 0.02, 0.3),
+        "low_side_resistance": span(pick, 0.01, 0.2),
+        "switching_frequency": span(pick, 1e5, 2e6),
+        "rise_time": span(pick, 1e-9, 3e-8),
+        "fall_time": span(pick, 1e-9, 3e-8),
+        "quiescent": span(pick, 1e-5, 5e-3),
+    }
+
+
+def figures_of(topology: Topology, pick: Pick) -> Figures:
+    """Random figures with which a channel of this topology can be worked out."""
+    match topology:
+        case Topology.LINEAR:
+            return {"ground_current": span(pick, 1e-5, 5e-3), "dropout": span(pick, 0.05, 1.5)}
+        case Topology.LINEAR_FLOATING:
+            return {"dropout": span(pick, 0.5, 2.0), "feedback_current": span(pick, 1e-5, 1e-4)}
+        case Topology.LINEAR_TWO_SUPPLY:
+            return {"control_ratio": span(pick, 30, 100), "dropout": span(pick, 0.05, 0.4)}
+        case Topology.BUCK | Topology.BOOST:
+            return terms(pick) if pick.random() < 0.6 else {"efficiency": span(pick, 0.6, 0.97)}
+        case Topology.CHARGE_PUMP:
+            return {"gain": 1.0, "quiescent": span(pick, 1e-4, 3e-3), "output_resistance": span(pick, 5, 60)}
+        case Topology.CONTROLLER:
+            return {"efficiency": span(pick, 0.7, 0.95), "quiescent": span(pick, 1e-3, 5e-3)}
+        case Topology.SHUNT:
+            return {"minimum_cathode_current": span(pick, 1e-4, 1e-3)}
+        case Topology.CHARGER:
+            return {"charge_current": span(pick, 0.05, 1.0), "battery_low": span(pick, 2.5, 3.2)}
+        case Topology.SERIES_DIODE:
+            return {"forward_drop": span(pick, 0.2, 1.0)}
+        case Topology.BUCK_BOOST | Topology.INVERTING | Topology.MODULE:
+            return {"efficiency": span(pick, 0.6, 0.97)}
+    return {"on_resistance": span(pick, 0.005, 0.3), "quiescent": span(pick, 1e-6, 1e-3)}
+
+
+def made(topology: Topology, pick: Pick) -> LossModel:
+    outside: tuple[Outside, ...] = ()
+    if topology is Topology.SHUNT:
+        outside = (Outside("R1", "resistor", evidence(span(pick, 100, 5000), "Ω")),)
+    figures = figures_of(topology, pick)
+    return model(topology, figures, vcontrol=span(pick, 10.5, 13.0), outside=outside)
+
+
+def volts(topology: Topology, pick: Pick) -> tuple[Span, Span]:
+    """Random input and output voltages that suit the topology."""
+    match topology:
+        case Topology.BOOST:
+            return span(pick, 2.5, 5.0), span(pick, 6.0, 15.0)
+        case Topology.CHARGER:
+            return span(pick, 4.4, 6.0), span(pick, 3.0, 4.2)
+        case Topology.CHARGE_PUMP:
+            return span(pick, 3.0, 5.5), span(pick, 1.0, 5.0)
+    if topology in PASSAGES:
+        vin = span(pick, 3.0, 24.0)
+        return vin, vin
+    return span(pick, 6.0, 10.0), span(pick, 1.0, 5.5)
+
+
+def entries(topology: Topology) -> Iterator[tuple[Pick, LossModel, Span, Span, Span]]:
+    pick = Pick(f"{topology} entries")
+    for _ in range(ENTRIES):
+        found = made(topology, pick)
+        assert found.missing == ()
+        vin, vout = volts(topology, pick)
+        load = found.own_load.span if found.own_load else span(pick, 0.0, 1.0)
+        yield pick, found, vin, vout, load
+
+
+def case_of(topology: Topology, found: LossModel, vin: Span, vout: Span, load: Span) -> Case:
+    channel = ChannelCase(wiring(topology, {}), found, vin, vout, load)
+    return Case((channel,), all_air(evidence(50.0, "K/W")), Span.exact(40.0), (1.0, 1.0))
+
+
+def hottest(topology: Topology, found: LossModel, vin: Span, vout: Span, load: Span) -> float:
+    return worst(case_of(topology, found, vin, vout, load)).watts
+
+
+def inside(pick: Pick, s: Span) -> float:
+    return pick.uniform(s.low, s.high)
+
+
+@pytest.mark.parametrize("topology", list(MODELS))
+def test_no_sampled_point_is_hotter_than_the_worst_corner(topology: Topology) -> None:
+    for pick, found, vin, vout, load in entries(topology):
+        try:
+            limit = hottest(topology, found, vin, vout, load)
+        except ValueError:
+            continue
+        for _ in range(3):
+            point = Point(inside(pick, vin), inside(pick, vout), inside(pick, load), 40.0)
+            try:
+                watts = max(found.at(point, end).watts for end in End)
+            except ValueError:
+                continue
+            # between the grid points of a search inside the input span a smooth curve may rise a little
+            assert watts <= limit * (1 + 2e-3) + 1e-9, (vin, vout, load, point)
+
+
+GETS_COOLER = {Topology.SHUNT, Topology.CHARGER}
+
+
+@pytest.mark.parametrize("topology", [one for one in MODELS if one not in GETS_COOLER])
+def test_more_load_never_makes_less_heat(topology: Topology) -> None:
+    for pick, found, vin, vout, _ in entries(topology):
+        light, heavy = sorted((pick.uniform(0, 1), pick.uniform(0, 1)))
+        try:
+            less, more = (found.at(Point(vin.high, vout.low, amps), End.SEVERE).watts for amps in (light, heavy))
+        except ValueError:
+            continue
+        assert more >= less - 1e-12
+
+
+@pytest.mark.parametrize("topology", list(MODELS))
+def test_a_wider_span_never_makes_a_cooler_worst_case(topology: Topology) -> None:
+    pick = Pick(f"{topology} wider")
+    for _ in range(ENTRIES // 4):
+        found = made(topology, pick)
+        vin, vout = volts(topology, pick)
+        load = found.own_load.span if found.own_load else span(pick, 0.0, 1.0)
+        narrow = Span(load.low, load.nominal, load.nominal)
+        try:
+            assert hottest(topology, found, vin, vout, load) >= hottest(topology, found, vin, vout, narrow) - 1e-12
+            middle = Span.exact(vin.nominal)
+            wide, point = hottest(topology, found, vin, vout, load), hottest(topology, found, middle, vout, load)
+        except ValueError:
+            continue
+        assert wide >= point * (1 - 2e-3) - 1e-12
+
+
+BALANCES: dict[Topology, Callable[[Point, float], float]] = {
+    # power handed on to the output, by what the model calls its output
+    **dict.fromkeys(
+        (Topology.BUCK, Topology.BUCK_BOOST, Topology.INVERTING, Topology.MODULE), lambda p, _: p.vout * p.iout
+    ),
+    Topology.BOOST: lambda p, _: p.vout * p.iout,
+    Topology.CONTROLLER: lambda p, _: p.vout * p.iout,
+    Topology.LINEAR: lambda p, _: p.vout * p.iout,
+    Topology.LINEAR_FLOATING: lambda p, _: p.vout * p.iout,
+    **dict.fromkeys(PASSAGES, lambda p, watts: p.vin * p.iout - watts),
+}
+"""Not here: two-supply parts (two inputs), shunts and chargers (their output power is not the point's), pumps."""
+
+
+@pytest.mark.parametrize("topology", list(BALANCES))
+def test_what_goes_in_comes_out_or_turns_to_heat(topology: Topology) -> None:
+    for _, found, vin, vout, load in entries(topology):
+        point = Point(vin.high, vout.low, load.high)
+        try:
+            loss = found.at(point, End.NOMINAL)
+        except ValueError:
+            continue
+        if not loss.regulating:
+            continue
+        own = sum(watts for name, watts in loss.terms if name == "quiescent") if topology in PASSAGES else 0.0
+        out = BALANCES[topology](point, loss.watts - own)
+        given = point.vin * loss.iin
+        assert given == pytest.approx(out + loss.watts + sum(watts for _, watts in loss.elsewhere), rel=1e-9)
+
+
+@pytest.mark.parametrize("topology", list(MODELS))
+def test_without_figures_a_model_says_what_it_lacks_and_gives_no_number(topology: Topology) -> None:
+    found = model(topology, {})
+    if topology is Topology.LINEAR_FLOATING:
+        # its bias flows to the load: a floating part needs no figure of its own
+        assert found.missing == ()
+        return
+    assert found.missing != ()
+    with pytest.raises(ValueError, match="missing"):
+        found.at(Point(5.0, 3.3, 0.1), End.SEVERE)
+    assert input_current(wiring(topology, {}), Span.exact(0.1)) is None
+
+
+@pytest.mark.parametrize("topology", list(MODELS))
+def test_each_figure_left_out_is_missed(topology: Topology) -> None:
+    pick = Pick("left out")
+    needed = {
+        Topology.LINEAR: {"ground_current"},
+        Topology.LINEAR_TWO_SUPPLY: {"control_ratio"},
+        Topology.CHARGE_PUMP: {"gain", "quiescent", "output_resistance"},
+        Topology.CONTROLLER: {"efficiency", "quiescent"},
+        Topology.CHARGER: {"charge_current", "battery_low"},
+        Topology.SERIES_DIODE: {"forward_drop"},
+    }
+    figures = terms(pick) if topology in (Topology.BUCK, Topology.BOOST) else figures_of(topology, pick)
+    for key in needed.get(topology, set(figures) if topology in (Topology.BUCK, Topology.BOOST) else set()):
+        if key == "low_side_resistance":
+            continue
+        rest = {name: value for name, value in figures.items() if name != key}
+        assert model(topology, rest, vcontrol=12.0).missing != (), key
+
+
+def test_every_topology_has_a_model() -> None:
+    assert set(MODELS) == set(Topology)
+
+
+def test_a_part_without_rule_or_figures_is_asked_for_both() -> None:
+    from dataclasses import replace
+
+    bare = wiring(Topology.LINEAR, {})
+    unruled = replace(bare, part=replace(bare.part, rule=None))
+    assert model_of(unruled).missing == ("a rule for this part, or its figures in the settings",)
+
+
+def test_an_efficiency_map_is_read_inside_its_grid_only() -> None:
+    grid = efficiency_map((0.1, 5.0, 0.80), (0.1, 12.0, 0.70), (1.0, 5.0, 0.90), (1.0, 12.0, 0.84))
+    buck = model(Topology.BUCK, {}, mapped=grid)
+    # a quarter of the way in load and half in voltage: 0.75 of 0.75 and 0.25 of 0.87
+    eta = 0.75 * 0.75 + 0.25 * 0.87
+    power = 3.3 * 0.325
+    assert buck.at(Point(8.5, 3.3, 0.325), End.NOMINAL).watts == pytest.approx(power * (1 / eta - 1))
+    assert buck.at(Point(5.0, 3.3, 0.01), End.NOMINAL).watts == pytest.approx(0.033 * (1 / 0.80 - 1))
+    for vin, load in ((4.9, 0.5), (12.1, 0.5), (8.0, 1.01)):
+        with pytest.raises(ValueError, match="does not cover"):
+            buck.at(Point(vin, 3.3, load), End.NOMINAL)
+
+
+def test_an_inverting_buck_takes_its_current_at_the_board_s_input() -> None:
+    # 12 V to -5 V: the part sees 17 V; 80 % efficient; 0.2 A out: 1 W, 0.25 W of loss, 1.25 W / 12 V in
+    inverter = model(Topology.BUCK, {"efficiency": 0.8}, inverts=True)
+    found = inverter.at(Point(17.0, 5.0, 0.2), End.NOMINAL)
+    assert found.watts == pytest.approx(0.25)
+    assert found.iin == pytest.approx(1.25 / 12.0)
+    assert found.regulating
+
+
+def test_losses_outside_are_taken_out_of_the_part_at_their_least() -> None:
+    coil = Outside("L1", "inductor", evidence(Span(0.04, 0.05, 0.06), "Ω"))
+    diode = Outside("D1", "diode", drop=evidence(Span(0.3, 0.4, 0.5), "V"))
+    buck = model(Topology.BUCK, {"efficiency": 0.8}, outside=(coil, diode))
+    found = buck.at(Point(10.0, 5.0, 1.0), End.SEVERE)
+    # total 5 · (1/0.8 − 1) = 1.25 W; L1 1² · 0.04 W; D1 half the time 0.3 V · 0.5 A
+    assert dict(found.elsewhere) == pytest.approx({"L1": 0.04, "D1": 0.15})
+    assert found.watts == pytest.approx(1.25 - 0.04 - 0.15)
+    unknown = model(Topology.BUCK, {"efficiency": 0.8}, outside=(Outside("L1", "inductor"),))
+    assert unknown.at(Point(10.0, 5.0, 1.0), End.SEVERE).watts == pytest.approx(1.25)
+    assert unknown.notes == ("loss of inductor L1 not known: left in the part",)
+
+
+def test_a_diode_that_warms_is_not_credited_for_it() -> None:
+    diode = model(Topology.SERIES_DIODE, {"forward_drop": 0.5, "forward_drop_tempco": -0.002})
+    assert diode.at(Point(5.0, 4.5, 1.0, 125.0), End.NOMINAL).watts == pytest.approx(0.5)
+
+
+def test_a_table_over_the_load_is_held_level_below_its_first_point() -> None:
+    found = model(Topology.LINEAR, {}, curves={"ground_current": curve((0.01, 0.001), (0.1, 0.003))})
+    assert found.at(Point(5.0, 3.0, 0.0), End.NOMINAL).watts == pytest.approx(0.005)
+    assert found.loads == (0.01, 0.1)
