@@ -98,12 +98,17 @@ def lacking(*missing: str, notes: tuple[str, ...] = ()) -> LossModel:
 
 def high(span: Span, end: End) -> float:
     """The value of a figure that makes the more heat the larger it is."""
-    return {End.MILD: span.low, End.NOMINAL: span.nominal, End.SEVERE: span.high}[end]
+    # asked for at every point of every corner: comparing is several times cheaper than a look-up by member
+    if end is End.SEVERE:
+        return span.high
+    return span.nominal if end is End.NOMINAL else span.low
 
 
 def low(span: Span, end: End) -> float:
     """The value of a figure that makes the more heat the smaller it is (efficiency)."""
-    return {End.MILD: span.high, End.NOMINAL: span.nominal, End.SEVERE: span.low}[end]
+    if end is End.SEVERE:
+        return span.low
+    return span.nominal if end is End.NOMINAL else span.high
 
 
 @dataclass(frozen=True, slots=True)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable
+from dataclasses import replace
 
 from analyzer.circuit import Circuit, Component, Net, Note, Pin, Place
 from analyzer.draws import find_loads
@@ -12,7 +13,7 @@ from analyzer.part import Channel, Package, Part
 from analyzer.quantity import Span
 from analyzer.rail import Feed, Rail, Rails, Wiring
 from analyzer.rule import Role, Rulebook, Topology
-from analyzer.settings import Settings
+from analyzer.settings import Settings, StatedDraw
 
 SHEET = Place("board.kicad_sch", "/", 0.0, 0.0)
 RULES = Rulebook((), (), (), ())
@@ -131,3 +132,20 @@ def loads(
 ) -> Loads:
     parts = tuple({wiring.part.key: wiring.part for wiring in known.wirings}.values())
     return find_loads(board, parts, known, settings or Settings(), rulebook, takes or linear())
+
+
+def names(found):
+    return [finding.name for finding in found.findings]
+
+
+def stated(ref, amps=None, rail="", watts=None, source="heatledger.toml [draws]"):
+    def known(value, unit):
+        return None if value is None else replace(evidence(value, unit), source=source)
+
+    return StatedDraw(ref, rail, known(amps, "A"), known(watts, "W"))
+
+
+def one_regulator(*more, volts=3.3, **figures):
+    """U1 makes +3V3 from +5V; further parts hang on the rails."""
+    u1 = vreg("U1", "+5V", "+3V3")
+    return circuit(u1, *more), rails({"+5V": 5.0, "+3V3": volts}, [wire(u1, "+5V", "+3V3", **figures)])

@@ -14,7 +14,7 @@ from analyzer.losses.base import End, LossModel, Point
 from analyzer.losses.dispatch import MODELS, input_current, model_of
 from analyzer.quantity import Span
 from analyzer.rail import Outside
-from analyzer.rule import PASSAGES, SWITCHERS, Topology
+from analyzer.rule import PASSAGES, Topology
 
 ENTRIES = 2000
 """Random entries a topology."""
