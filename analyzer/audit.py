@@ -130,6 +130,7 @@ def _budget(
         findings=tuple(sorted(findings, key=_finding_key)),
         not_understood=_not_understood(parts),
         complete=circuit.complete,
+        names={component.key: (component.value, component.place.sheet) for component in circuit.components},
     )
     return Audit(ledger, circuit, parts, rails, loads, rulebook, settings)
 

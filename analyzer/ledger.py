@@ -212,6 +212,7 @@ class Ledger:
         findings: All findings, heaviest first, entries' own included.
         not_understood: Findings' subjects that look like power parts but were not understood, one line each.
         complete: False when part of the drawing could not be read.
+        names: Identity of every part → its value and sheet, for lists that name parts.
     """
 
     board: str
@@ -224,6 +225,7 @@ class Ledger:
     findings: tuple[Finding, ...]
     not_understood: tuple[str, ...] = ()
     complete: bool = True
+    names: Mapping[str, tuple[str, str]] = field(default_factory=dict)
 
     def count(self, verdict: Verdict) -> int:
         """How many fitted parts carry this verdict."""

@@ -91,6 +91,13 @@ def write_findings(book: Book, ledger: Ledger, answers: Mapping[tuple[str, str, 
         sheet.row(row, (finding.weight.value, finding.subject, finding.name, *where, None, finding.key))
         sheet.put(row, 6, answers.get(answer_key(finding)), "input")
         row += 1
+    standing = {answer_key(finding) for finding in ledger.findings}
+    for (name, subject, key), answer in answers.items():
+        if (name, subject, key) not in standing:
+            # the matter was mended, but what somebody wrote about it stays
+            sheet.row(row, ("gone", subject, name, "found in an earlier run, not in this one", "", "", None, key))
+            sheet.put(row, 6, answer, "input")
+            row += 1
     sheet.filter(row - 1)
     sheet.raw.set_column(7, 7, 12, None, {"level": 1, "hidden": 1})
     sheet.raw.print_area(0, 0, max(row - 1, FIRST_ROW), 6)

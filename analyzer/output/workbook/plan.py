@@ -79,8 +79,7 @@ def plan(ledger: Ledger, typed: Typed) -> Plan:
 
 def _draw_line(draw: Draw, entries: Mapping[str, Entry], passed: Mapping[str, str], ledger: Ledger) -> Line:
     entry = entries.get(draw.key) if draw.kind == "regulator" else None
-    value = entry.value if entry else ""
-    sheet = entry.sheet if entry else ""
+    value, sheet = ledger.names.get(draw.key, ("", ""))
     follows = None
     if draw.kind == "regulator":
         follows = _of_entry(entry) if entry else _of_passage(draw, passed.get(draw.ref), ledger)

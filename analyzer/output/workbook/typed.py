@@ -189,7 +189,8 @@ def _currents(path: Path, rows: list[Row], faults: list[Fault]) -> Typed:
         except ValueError as error:
             faults.append(Fault(str(error), str(path), place))
             continue
-        source = f"{path.name} {place}"
+        # named by part and rail, for rows move from one workbook to the next
+        source = f"{path.name} Currents: {ref} on {rail}"
         evidence = Evidence("load current", span, "A", source, Grade.STATED, note=note)
         draws.append(StatedDraw("" if ref == "off-board" else ref, rail, evidence, pulse=pulse, key=key))
     return Typed(path.name, cells, parts, tuple(draws), notes)
