@@ -1,0 +1,50 @@
+"""How long a large workbook takes: 5,000 parts on 200 regulators.
+
+Run it by hand: python tests/benchmarks/workbook.py [OUT.xlsx]
+"""
+
+from __future__ import annotations
+
+import sys
+import time
+from dataclasses import replace
+from pathlib import Path
+
+from analyzer.audit import audit
+from analyzer.load import Draw, RailLoad
+from analyzer.output.workbook.build import build
+from analyzer.output.workbook.typed import NOTHING
+from analyzer.quantity import total
+from analyzer.rail import Feed
+
+ROOT = Path(__file__).resolve().parent.parent.parent
+REGULATORS, PARTS = 200, 5000
+
+
+def main() -> None:
+    result = audit(ROOT / "fixture_boards" / "seedling_bench")
+    entry = next(entry for entry in result.ledger.entries if entry.ref == "U2")
+    rail = next(rail for rail in result.ledger.rails if rail.name == "+3V3")
+    draw = result.ledger.loads["+3V3"].draws[0]
+    entries, rails, loads, names = [], [], {}, {}
+    for n in range(REGULATORS):
+        name = f"+R{n}"
+        outputs = tuple(replace(output, rail=name) for output in entry.outputs)
+        entries.append(replace(entry, key=f"/r{n}", ref=f"U{n + 1}", outputs=outputs))
+        rails.append(replace(rail, name=name, feeds=(Feed(f"U{n + 1}", "regulator"),)))
+        draws: list[Draw] = []
+        for k in range(PARTS // REGULATORS):
+            draws.append(replace(draw, ref=f"U{1000 + n * 25 + k}", key=f"/d{n}/{k}", rail=name))
+            names[draws[-1].key] = ("PART", "/")
+        loads[name] = RailLoad(name, tuple(draws), (), total([one.amps.span for one in draws]))
+    ledger = replace(result.ledger, entries=tuple(entries), rails=tuple(rails), loads=loads, names=names)
+    build(result.ledger, result.settings, NOTHING, "warm.xlsx")
+    start = time.perf_counter()
+    data = build(ledger, result.settings, NOTHING, "large.xlsx")
+    print(f"{PARTS} parts on {REGULATORS} regulators: {time.perf_counter() - start:.2f} s, {len(data) // 1024} kB")
+    if len(sys.argv) > 1:
+        Path(sys.argv[1]).write_bytes(data)
+
+
+if __name__ == "__main__":
+    main()
