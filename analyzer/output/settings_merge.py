@@ -45,7 +45,10 @@ def merged(text: str, draws: Mapping[str, str]) -> str:
     elif last is not None:
         lines[last + 1 : last + 1] = fresh
     result = newline.join(lines) + newline
-    found = tomllib.loads(result).get("draws", {})
+    try:
+        found = tomllib.loads(result).get("draws", {})
+    except tomllib.TOMLDecodeError:
+        found = {}
     if any(found.get(name) != value for name, value in draws.items()):
         raise ValueError("the [draws] table is written in a way that cannot be merged line by line")
     return result

@@ -5,10 +5,9 @@ from __future__ import annotations
 from typing import Any
 
 from analyzer.ledger import Ledger
-from analyzer.output.workbook.layout import FIRST_ROW, Book, Column
+from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, letter
 from analyzer.output.workbook.plan import Plan
 from analyzer.output.workbook.regulators import PLACES, is_live
-from analyzer.output.workbook.regulators import _letter as letter
 
 WORST = 5
 AMBIENTS = (0, 10, 20, 30, 40, 50, 60, 70, 85)

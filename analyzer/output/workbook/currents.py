@@ -8,10 +8,9 @@ from __future__ import annotations
 from collections.abc import Mapping
 
 from analyzer.ledger import Entry, Ledger
-from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, Sheet
+from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, Sheet, letter
 from analyzer.output.workbook.plan import Line, Plan
 from analyzer.output.workbook.regulators import PLACES as REGULATOR_PLACES
-from analyzer.output.workbook.regulators import _letter as letter
 
 RAIL_COLUMNS = (
     Column("Rail", 24, "wrap"),

@@ -163,10 +163,15 @@ def _visible(c: str) -> str:
     return chr(0x2400 + code) if code < 0x20 else "\ufffd"
 
 
-def cell(row: int, column: int) -> str:
-    """An absolute reference, $B$5."""
+def letter(column: int) -> str:
+    """The letters of a column as an absolute reference, $AB."""
     name, number = "", column + 1
     while number:
         number, rest = divmod(number - 1, 26)
         name = chr(65 + rest) + name
-    return f"${name}${row + 1}"
+    return "$" + name
+
+
+def cell(row: int, column: int) -> str:
+    """An absolute reference, $B$5."""
+    return f"{letter(column)}${row + 1}"

@@ -10,7 +10,7 @@ from collections.abc import Mapping
 
 from analyzer.findings.base import Weight
 from analyzer.ledger import Entry, Ledger
-from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, Sheet
+from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, Sheet, letter
 from analyzer.output.workbook.plan import Plan
 
 COLUMNS = (
@@ -149,7 +149,7 @@ def _row(sheet: Sheet, entry: Entry, plan: Plan, shares: Mapping[tuple[str, str]
 
 def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None) -> None:
     worst = entry.worst
-    at = {head: _letter(number) + str(row + 1) for head, number in PLACES.items()}
+    at = {head: letter(number) + str(row + 1) for head, number in PLACES.items()}
     rail_load = f"Rails!$F${rail_row + 1}" if rail_row is not None else "0"
     rail_gaps = f"Rails!$G${rail_row + 1}" if rail_row is not None else "0"
     live = f'{at["Model"]}="live"'
@@ -242,11 +242,3 @@ def _margin_colours(sheet: Sheet, last: int) -> None:
             "stop_if_true": True,
         }
         sheet.raw.conditional_format(FIRST_ROW, column, last, column, rule)
-
-
-def _letter(column: int) -> str:
-    name, number = "", column + 1
-    while number:
-        number, rest = divmod(number - 1, 26)
-        name = chr(65 + rest) + name
-    return "$" + name

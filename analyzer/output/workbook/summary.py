@@ -9,9 +9,8 @@ from analyzer.cli import CAUTION
 from analyzer.findings.base import Verdict
 from analyzer.ledger import Ledger
 from analyzer.output.ledger_json import summary
-from analyzer.output.workbook.layout import FIRST_ROW, SIGN_OFF, Book
+from analyzer.output.workbook.layout import FIRST_ROW, SIGN_OFF, Book, letter
 from analyzer.output.workbook.regulators import PLACES
-from analyzer.output.workbook.regulators import _letter as letter
 
 CAUTIONS = (
     CAUTION,
