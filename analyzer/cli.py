@@ -9,7 +9,7 @@ import argparse
 import importlib
 import os
 import sys
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from typing import NoReturn
 
 from analyzer.errors import Fault, HeatledgerError, UsageError
@@ -30,6 +30,8 @@ EXIT_STATUSES = """exit status:
   0  nothing to report          3  input unreadable or invalid
   1  bad arguments              4  output conflict
   2  internal fault             5  findings at or above the chosen level"""
+
+QUESTION = "Does every voltage regulator's junction stay below its rating, by what margin, on what evidence?"
 
 EXAMPLES = """examples:
   heatledger audit board.kicad_pro --workbook board.xlsx
@@ -83,13 +85,14 @@ def _run(arguments: list[str]) -> int:
     name = next((word for word in arguments if not word.startswith("-")), None)
     parser = _Parser(
         prog="heatledger",
-        description="Does every voltage regulator's junction stay below its rating, by what margin, on what evidence?",
-        epilog=f"{EXAMPLES}\n\n{EXIT_STATUSES}\n\n{CAUTION}",
+        description=f"{QUESTION}\n\n{EXAMPLES}",
+        epilog=f"{EXIT_STATUSES}\n\n{CAUTION}",
         formatter_class=argparse.RawDescriptionHelpFormatter,
         allow_abbrev=False,
     )
     parser.add_argument("--version", action="store_true", help="print the version and end")
     commands = parser.add_subparsers(dest="command", metavar="COMMAND", parser_class=_Parser)
+    options: list[str] = []
     for command, summary in COMMANDS.items():
         if name is None or command == name:
             sub = commands.add_parser(
@@ -101,13 +104,16 @@ def _run(arguments: list[str]) -> int:
             )
             if command == name:
                 importlib.import_module(f"analyzer.commands.{command}").options(sub)
+                # examples help more than a list of options: they come first
+                sub.description, sub.epilog = f"{sub.description}\n\n{sub.epilog}", None
+                options = [word for action in sub._actions for word in action.option_strings]
     if name is not None and name not in COMMANDS:
-        from difflib import get_close_matches
-
-        near = get_close_matches(name, COMMANDS, 1)
-        hint = f"Did you mean '{near[0]}'?" if near else f"Commands: {', '.join(COMMANDS)}."
+        hint = _near(name, COMMANDS) or f"Commands: {', '.join(COMMANDS)}."
         raise UsageError(Fault(f"there is no command '{name}'", remedy=hint))
-    parsed = parser.parse_args(arguments)
+    parsed, unknown = parser.parse_known_args(arguments)
+    if unknown:
+        hint = _near(unknown[0].partition("=")[0], options) or f"'heatledger {name or ''} --help' lists what there is."
+        raise UsageError(Fault(f"there is no option '{unknown[0]}'", remedy=hint))
     if parsed.version:
         from importlib.metadata import version
 
@@ -118,6 +124,13 @@ def _run(arguments: list[str]) -> int:
         return 1
     status: int = importlib.import_module(f"analyzer.commands.{parsed.command}").run(parsed)
     return status
+
+
+def _near(word: str, known: Iterable[str]) -> str:
+    from difflib import get_close_matches
+
+    near = get_close_matches(word, list(known), 1)
+    return f"Did you mean '{near[0]}'?" if near else ""
 
 
 if __name__ == "__main__":

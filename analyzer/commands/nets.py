@@ -18,7 +18,7 @@ EXAMPLES = """examples:
 
 exit status: 0 read completely, 5 read with parts of the drawing missing"""
 
-_INCOMPLETE = 5
+_INCOMPLETE = 3
 
 
 def options(parser: argparse.ArgumentParser) -> None:
@@ -36,7 +36,7 @@ def run(arguments: argparse.Namespace) -> int:
     """Print or write the netlist.
 
     Returns:
-        0, or 5 if the drawing could not be read completely.
+        0, or 3 if the drawing could not be read completely.
     """
     from analyzer.audit import settings_beside
     from analyzer.reading import read
