@@ -1,7 +1,7 @@
 """The ledger from KiCad's exported netlists equals the ledger from the schematic, but for what such files cannot hold.
 
 They hold no free texts (suggestions beside gaps), no positions, no sheets' own files (inputs, places in sources), no
-copper layers and no typed library data beyond the description; they name the part's sheet, value, fields, pins and nets.
+copper layers and no typed library data beyond the description; they name a part's sheet, value, fields, pins and nets.
 """
 
 from __future__ import annotations
