@@ -115,9 +115,9 @@ def _run(arguments: list[str]) -> int:
         hint = _near(unknown[0].partition("=")[0], options) or f"'heatledger {name or ''} --help' lists what there is."
         raise UsageError(Fault(f"there is no option '{unknown[0]}'", remedy=hint))
     if parsed.version:
-        from importlib.metadata import version
+        from analyzer import __version__
 
-        print(f"heatledger {version('heatledger')}")
+        print(f"heatledger {__version__}")
         return 0
     if parsed.command is None:
         parser.print_help()

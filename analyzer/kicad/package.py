@@ -11,9 +11,10 @@ import struct
 import sys
 import zipfile
 import zlib
-from importlib.metadata import version
 from pathlib import Path
 from typing import Any
+
+from analyzer import __version__
 
 IDENTIFIER = "org.heatledger.audit"
 SUMMARY = "Thermal budget of every voltage regulator on a board, as an annotated workbook"
@@ -38,7 +39,7 @@ def metadata() -> dict[str, Any]:
         "license": "Apache-2.0",
         "resources": {},
         "tags": ["thermal", "regulator", "bom"],
-        "versions": [{"version": version("heatledger"), "status": "testing", "kicad_version": "9.0", "runtime": "ipc"}],
+        "versions": [{"version": __version__, "status": "testing", "kicad_version": "9.0", "runtime": "ipc"}],
     }
 
 

@@ -8,6 +8,7 @@ from collections.abc import Iterable
 from pathlib import Path
 from typing import Any
 
+from analyzer import __version__
 from analyzer.evidence import Evidence
 from analyzer.findings.base import Finding, Verdict
 from analyzer.ledger import Corner, Entry, Headroom, Ledger, Remedy
@@ -22,7 +23,7 @@ def as_document(ledger: Ledger) -> dict[str, Any]:
     """The ledger as plain values, in a fixed order."""
     return {
         "schema": SCHEMA,
-        "version": _version(),
+        "version": __version__,
         "board": ledger.board,
         "complete": ledger.complete,
         "inputs": [{"path": file.path, "sha256": file.sha256} for file in ledger.inputs],
@@ -63,12 +64,6 @@ def summary(ledger: Ledger) -> dict[str, Any]:
         "worst_part": worst.ref if worst else None,
         "worst_margin_kelvin": worst.margin if worst else None,
     }
-
-
-def _version() -> str:
-    from importlib.metadata import version
-
-    return version("heatledger")
 
 
 def _entry(entry: Entry) -> dict[str, Any]:

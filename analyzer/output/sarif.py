@@ -33,7 +33,7 @@ def write_sarif(file: Path, ledger: Ledger, gate: Gate) -> None:
 
 def as_sarif(ledger: Ledger, gate: Gate) -> dict[str, Any]:
     """The findings as a SARIF log with one run."""
-    from importlib.metadata import version
+    from analyzer import __version__
 
     sheet_of = {entry.key: (entry.sheet, entry.ref) for entry in ledger.entries}
     results = [_result(finding, ledger, sheet_of, ()) for finding in gate.standing]
@@ -49,7 +49,7 @@ def as_sarif(ledger: Ledger, gate: Gate) -> dict[str, Any]:
         for kind in every_kind()
         if kind.name in used
     ]
-    driver = {"name": "heatledger", "version": version("heatledger"), "rules": rules}
+    driver = {"name": "heatledger", "version": __version__, "rules": rules}
     run: dict[str, Any] = {
         "tool": {"driver": driver},
         "artifacts": [

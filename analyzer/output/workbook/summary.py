@@ -3,8 +3,8 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from importlib.metadata import version
 
+from analyzer import __version__
 from analyzer.cli import CAUTION
 from analyzer.findings.base import Verdict
 from analyzer.ledger import Ledger
@@ -64,7 +64,7 @@ def write(book: Book, ledger: Ledger, sign_off: Mapping[str, str]) -> None:
         "" if margin is None else f"margin {margin:+.1f} K as audited",
     )
     put("Missing currents", facts["gaps"])
-    put("heatledger", version("heatledger"))
+    put("heatledger", __version__)
     row += 1
     for caution in CAUTIONS:
         put("Caution", "", caution)
