@@ -46,7 +46,8 @@ class Change:
     after: Standing | None
 
     def __str__(self) -> str:
-        return f"{self.how}: {self.board} {self.part}: {_show(self.before)} → {_show(self.after)}"
+        whose = f"{self.board} {self.part}".strip()
+        return f"{self.how}: {whose}: {_show(self.before)} → {_show(self.after)}"
 
 
 def standings_of(document: Mapping[str, Any], board: str) -> dict[tuple[str, str], Standing]:
