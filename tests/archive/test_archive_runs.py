@@ -5,8 +5,10 @@ from __future__ import annotations
 import json
 import os
 import shutil
+import signal
 import subprocess
 import sys
+import zipfile
 from pathlib import Path
 
 import openpyxl
@@ -152,3 +154,30 @@ def test_a_cluster_of_two_workers_gives_the_same_ledgers(tmp_path: Path) -> None
     for board in BOARDS:
         place = Path(board) / board / "ledger.json"
         assert (tmp_path / "here" / place).read_bytes() == (tmp_path / "there" / place).read_bytes()
+
+
+def test_ctrl_c_ends_in_one_line_and_leaves_finished_results_whole(tmp_path: Path) -> None:
+    archive(tmp_path / "in", copies=8)
+    command = [sys.executable, "-m", "analyzer.cli", "audit", "in", "--out", "out", "--workers", "2"]
+    environment = {**os.environ, "PYTHONPATH": str(ROOT)}
+    # its own session, so that the key reaches parent and workers alike, as in a terminal
+    with subprocess.Popen(
+        command, cwd=tmp_path, env=environment, stderr=subprocess.PIPE, encoding="utf-8", start_new_session=True
+    ) as process:
+        assert process.stderr is not None
+        first = [process.stderr.readline() for _ in range(3)]
+        os.killpg(process.pid, signal.SIGINT)
+        rest = process.stderr.read()
+        assert process.wait(timeout=30) == 130
+    assert [line.partition("]")[0] for line in first] == ["[1/24", "[2/24", "[3/24"]
+    assert rest.splitlines()[-1] == "heatledger: interrupted; what was finished is whole"
+    assert "Traceback" not in rest
+    finished = sorted((tmp_path / "out").rglob("ledger.*"))
+    assert 6 <= len(finished) < 48
+    for file in finished:
+        if file.suffix == ".json":
+            assert json.loads(file.read_text(encoding="utf-8"))["schema"].startswith("heatledger/")
+        else:
+            assert zipfile.ZipFile(file).testzip() is None
+    assert not list((tmp_path / "out").rglob("*.tmp*"))
+    assert not (tmp_path / "out" / "archive.json").exists()

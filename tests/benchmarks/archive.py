@@ -31,10 +31,8 @@ print(status, resource.getrusage(resource.RUSAGE_SELF).ru_maxrss)
 def sources() -> list[Path]:
     """Project folders to copy from."""
     found = [path.parent for path in sorted((ROOT / "fixture_boards").glob("*/*.kicad_pro"))]
-    for path in sorted(SHARED.glob("boards/*/project")):
-        if sum(file.stat().st_size for file in path.glob("*.kicad_sch")) < LARGEST:
-            found.append(path)
-    return found
+    shared = sorted(SHARED.glob("boards/*/project"))
+    return found + [one for one in shared if sum(file.stat().st_size for file in one.glob("*.kicad_sch")) < LARGEST]
 
 
 def fill(folder: Path, count: int) -> None:
