@@ -10,6 +10,7 @@ import sys
 from collections.abc import Mapping
 from pathlib import Path
 
+import openpyxl
 import pytest
 from conftest import ROOT
 
@@ -269,3 +270,44 @@ def test_json_to_standard_output_is_json_and_nothing_else(board: Path) -> None:
 
     done = heatledger("audit", str(board), "--json", "-")
     assert json.loads(done.stdout)["schema"] == "heatledger/ledger-1"
+
+
+def test_currents_typed_into_the_workbook_are_adopted_and_close_the_budgets(tmp_path: Path) -> None:
+    board = Path(shutil.copytree(BOARDS / "tide_logger", tmp_path / "tide_logger"))
+    heatledger("audit", ".", "--workbook", "tide.xlsx", cwd=board)
+    file, settings = board / "tide.xlsx", board / "heatledger.toml"
+    book = openpyxl.load_workbook(file)
+    sheet = book["Currents"]
+    heads = {str(cell.value): cell.column - 1 for cell in sheet[4]}
+    typed = {("U4", "+5V"): "2.5 mA", ("U4", "-5V"): 0.002, ("U5", "+5V"): "1/4/30 mA"}
+    for row in sheet.iter_rows(min_row=5):
+        key = (str(row[heads["Part"]].value), str(row[heads["Rail"]].value))
+        if key in typed:
+            row[heads["Type nominal [A]"]].value = typed.pop(key)
+    assert typed == {}
+    book.save(file)
+    before = settings.read_text(encoding="utf-8")
+    added = '\n[draws]\n"U4@+5V" = "2.5 mA"\n"U5@+5V" = "1/4/30 mA"\n"U4@-5V" = "0.002 A"\n'
+    shown = heatledger("adopt", "tide.xlsx", ".", "--dry-run", cwd=board)
+    assert shown.returncode == 0
+    assert sorted(shown.stdout.splitlines()) == sorted((before + added).splitlines())
+    assert settings.read_text(encoding="utf-8") == before
+    done = heatledger("adopt", "tide.xlsx", "tide_logger.kicad_pro", cwd=board)
+    assert (done.returncode, done.stderr) == (0, "")
+    assert settings.read_text(encoding="utf-8") == shown.stdout
+    assert heatledger("gaps", ".", cwd=board).stdout == "no current is missing\n"
+    # a second time changes nothing
+    heatledger("adopt", "tide.xlsx", ".", cwd=board)
+    assert settings.read_text(encoding="utf-8") == shown.stdout
+
+
+def test_a_parts_table_of_ones_own_is_annotated_beside_it(board: Path) -> None:
+    (board / "parts.csv").write_text("Ref;Price\nU5;0,40\n", encoding="utf-8")
+    done = heatledger("audit", ".", "--annotate", "parts.csv", cwd=board)
+    assert done.returncode == 5
+    assert "written: parts.heat.csv" in done.stdout
+    assert (board / "parts.csv").read_text(encoding="utf-8") == "Ref;Price\nU5;0,40\n"
+    head, row = (board / "parts.heat.csv").read_text(encoding="utf-8").splitlines()
+    assert head == "Ref;Price;Dissipation [W];Junction [°C];Margin [K];Verdict;Missing current"
+    # by hand in EXPECTED.md: 1.371413 W, 209.626 °C, margin −94.626 K; with the table's own decimal sign
+    assert row == "U5;0,40;1,371;209,6;-94,63;over;"

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import csv
 import io
+import re
 from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
@@ -17,6 +18,8 @@ from analyzer.reading.parts_table import SYNONYMS, decoded, separator_of, spread
 HEADS = ("Dissipation [W]", "Junction [°C]", "Margin [K]", "Verdict", "Missing current")
 _RISKY = ("=", "+", "-", "@", "\t", "\r")
 """First characters that spreadsheets take for a formula in CSV files (OWASP)."""
+
+_COMMA, _POINT = re.compile(r"-?\d+,\d+"), re.compile(r"-?\d+\.\d+")
 
 
 def annotate(source: Path, ledger: Ledger) -> Path:
@@ -88,21 +91,32 @@ def _csv(source: Path, results: Mapping[str, Entry], gaps: set[str]) -> bytes:
     if place is None:
         raise _no_refs(source)
     head, column = place
+    width = max(map(len, rows))
+    comma = separator != "," and _has_decimal_commas(rows)
     for number, row in enumerate(rows):
-        if number == head:
-            row += HEADS
-        elif number > head and any(row):
-            refs = spread_refs(row[column] if column < len(row) else "")
-            row += ["" if value is None else _csv_cell(value) for value in _result(refs, results, gaps)]
+        if number < head or not any(row):
+            continue
+        # programs leave out empty cells at the end of a row
+        row += [""] * (width - len(row))
+        refs = spread_refs(row[column])
+        results_here = _result(refs, results, gaps)
+        row += HEADS if number == head else ["" if one is None else _csv_cell(one, comma=comma) for one in results_here]
     buffer = io.StringIO()
     ending = "\r\n" if "\r\n" in text else "\n"
     csv.writer(buffer, delimiter=separator, lineterminator=ending).writerows(rows)
     return buffer.getvalue().encode(encoding, errors="replace")
 
 
-def _csv_cell(value: object) -> str:
+def _has_decimal_commas(rows: list[list[str]]) -> bool:
+    """Whether the table's own numbers have decimal commas: a spreadsheet that wrote them reads 1.371 as 1371."""
+    cells = [cell.strip() for row in rows for cell in row]
+    return any(map(_COMMA.fullmatch, cells)) and not any(map(_POINT.fullmatch, cells))
+
+
+def _csv_cell(value: object, *, comma: bool) -> str:
     if isinstance(value, float):
-        return f"{value:.4g}"
+        number = f"{value:.4g}"
+        return number.replace(".", ",") if comma else number
     text = str(value)
     return "'" + text if text.startswith(_RISKY) else text
 

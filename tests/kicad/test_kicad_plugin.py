@@ -4,11 +4,14 @@ from __future__ import annotations
 
 import json
 import os
+import shutil
 import subprocess
 import sys
 from pathlib import Path
 
+import openpyxl
 import pytest
+from conftest import ROOT
 
 import analyzer.kicad_plugin as plugin
 
@@ -79,3 +82,39 @@ def test_wrong_arguments_give_the_usage(tmp_path: Path) -> None:
     done, record = start(tmp_path, "a.xml")
     assert (done.returncode, done.stderr) == (1, plugin.USAGE + "\n")
     assert not record.exists()
+
+
+def test_started_as_kicad_starts_it_the_real_tool_writes_the_workbook(tmp_path: Path) -> None:
+    tool = Path(sys.executable).parent / "heatledger"
+    assert tool.is_file(), "the project must be installed beside the Python that runs the tests"
+    project = tmp_path / "Wärme & Licht (v2)"
+    shutil.copytree(ROOT / "fixture_boards" / "lane_lamp", project)
+    # %I is what the host has just exported, %O the same without its ending
+    netlist, out = project / "lane_lamp.xml", str(project / "lane_lamp")
+    netlist.write_text("<export/>", encoding="utf-8")
+    elsewhere = tmp_path / "elsewhere"
+    elsewhere.mkdir()
+    environment = {"PATH": f"{tool.parent}{os.pathsep}{os.defpath}", "HOME": str(tmp_path), "PYTHONHOME": ""}
+    done = subprocess.run(
+        [sys.executable, "-I", "-S", str(SCRIPT), str(netlist), out + ".xlsx"],
+        cwd=elsewhere,
+        env=environment,
+        capture_output=True,
+        encoding="utf-8",
+        check=False,
+    )
+    assert (done.returncode, done.stderr) == (0, "")
+    lines = done.stdout.splitlines()
+    # short output for the message pane: three parts, the caution and the summary
+    assert len(lines) <= 16
+    assert lines[-1] == f"written: {out}.xlsx"
+    assert max(map(len, lines[:-1])) <= 80
+    assert [line.split()[:2] for line in lines if line.startswith(("open ", "tight "))] == [
+        ["open", "U1"],
+        ["tight", "U101"],
+        ["tight", "U201"],
+    ]
+    book = openpyxl.load_workbook(out + ".xlsx", read_only=True)
+    assert {"Summary", "Regulators", "Currents"} <= set(book.sheetnames)
+    book.close()
+    assert list(elsewhere.iterdir()) == []

@@ -141,6 +141,14 @@ def test_a_users_csv_keeps_its_separator_and_encoding(
     assert rows[2][:2] == ["R9", "=cmd"]
 
 
+def test_short_rows_of_a_csv_are_filled_before_the_results(ledger: Ledger, tmp_path: Path) -> None:
+    source = tmp_path / "parts.csv"
+    source.write_text("our parts\nRef,Value,Note\nU101\n\nU2,x\n", encoding="utf-8")
+    lines = annotate(source, ledger).read_text(encoding="utf-8").splitlines()
+    assert lines[0] == "our parts"
+    assert [line.split(",")[6:] for line in lines[2:]] == [["tight", ""], [], ["", "U2"]]
+
+
 def test_a_table_without_references_is_refused(ledger: Ledger, tmp_path: Path) -> None:
     source = tmp_path / "parts.csv"
     source.write_text("Name,Price\nx,1\n", encoding="utf-8")
