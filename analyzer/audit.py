@@ -68,7 +68,8 @@ def audit(
     file = settings_file or settings_beside(path)
     settings = adjust(load_settings(file))
     base = file.parent if file else path.parent
-    rulebook = load_rulebook([*(base / name for name in settings.rule_files), *rule_files])
+    own_rules = [*(base / name for name in settings.rule_files), *rule_files]
+    rulebook = load_rulebook(own_rules, beside=path if os.path.isdir(path) else path.parent)
     if path.suffix.lower() in TABLES:
         return _audit_table(path, rulebook, settings, chance_seed)
     circuit = read(path, settings=settings, variant=variant, allow_outside=allow_outside)

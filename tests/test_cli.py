@@ -272,6 +272,13 @@ def test_json_to_standard_output_is_json_and_nothing_else(board: Path) -> None:
     assert json.loads(done.stdout)["schema"] == "heatledger/ledger-1"
 
 
+def test_the_ledger_is_the_same_wherever_the_tool_was_started(board: Path) -> None:
+    inside = heatledger("audit", ".", "--json", "-", cwd=board).stdout
+    assert heatledger("audit", "seedling_bench", "--json", "-", cwd=board.parent).stdout == inside
+    assert heatledger("audit", str(board / "seedling_bench.kicad_pro"), "--json", "-", cwd=ROOT).stdout == inside
+    assert '"path": "rules.toml"' in inside
+
+
 def test_currents_typed_into_the_workbook_are_adopted_and_close_the_budgets(tmp_path: Path) -> None:
     board = Path(shutil.copytree(BOARDS / "tide_logger", tmp_path / "tide_logger"))
     heatledger("audit", ".", "--workbook", "tide.xlsx", cwd=board)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import hashlib
+import os
 from collections.abc import Iterable
 from pathlib import Path
 
@@ -14,8 +15,13 @@ from analyzer.shipped import rules_folder
 from analyzer.toml_table import Table, read_toml
 
 
-def load_rulebook(files: Iterable[Path] = ()) -> Rulebook:
+def load_rulebook(files: Iterable[Path] = (), beside: Path | None = None) -> Rulebook:
     """All rules in force: those of `files` first, then the shipped ones.
+
+    Args:
+        files: The user's own files.
+        beside: Folder that the ledger names these files from, so that it is the same wherever the tool was
+            started; None keeps their paths as given.
 
     Raises:
         InputError: With every fault of every file.
@@ -37,7 +43,8 @@ def load_rulebook(files: Iterable[Path] = ()) -> Rulebook:
             faults += error.faults
             continue
         shown = file if is_user else Path("rules") / file.relative_to(shipped)
-        hashes.append((shown.as_posix(), hashlib.sha256(file.read_bytes()).hexdigest()))
+        listed = Path(os.path.relpath(file, beside)) if is_user and beside else shown
+        hashes.append((listed.as_posix(), hashlib.sha256(file.read_bytes()).hexdigest()))
         top = Table(shown, "", data, faults)
         name = shown.name
         rules += [rule(table, name, is_user) for table in top.tables("rule")]
