@@ -9,7 +9,6 @@ coefficients are taken from the engine's own losses at the worst corner and chec
     i0, i1, i2     coefficients of the current taken from the input rail, [A], [A/A], [A/A²]
     theta_solid    part of θ that altitude does not touch [K/W]
     theta_air      part that it does, at sea level [K/W]
-    exponent_free  1 if the entry's own surroundings are the board's (no neighbour, no measured spot)
     rise_extra     kelvin of neighbours on top of ambient and enclosure rise
 """
 

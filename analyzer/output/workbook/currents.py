@@ -41,7 +41,7 @@ CURRENT_COLUMNS = (
     Column("Your note", 24, "wrap"),
     Column("Counts as [A]", 10, "amps"),
     Column("Missing", 8, "count"),
-    Column("Rail headroom [A]", 10, "amps"),
+    Column("Rail headroom [A]", 14, "amps"),
     Column("Suggestions from notes, or source", 44, "wrap"),
     Column("Sheet", 14, "wrap"),
     Column("i0 [A]", 8, "plain"),
