@@ -9,9 +9,11 @@ import subprocess
 import sys
 from pathlib import Path
 
+import jsonschema
 import pytest
 import yaml
 from conftest import ROOT, need
+from schema_store import published
 
 TOOLS = Path(sys.executable).parent
 
@@ -29,6 +31,11 @@ def environment(home: Path) -> dict[str, str]:
 def project(folder: Path, board: str) -> Path:
     shutil.copytree(ROOT / "fixture_boards" / board, folder)
     return folder
+
+
+def test_the_hook_fits_the_published_schema_of_such_files() -> None:
+    hook = yaml.safe_load((ROOT / ".ci" / "pre-commit-config.yaml").read_text(encoding="utf-8"))
+    jsonschema.Draft7Validator(published("JSON schema for .pre-commit-config.yaml")).validate(hook)
 
 
 @pytest.mark.parametrize(("board", "status", "line"), [("lane_lamp", 0, "Passed"), ("seedling_bench", 1, "over  U5")])
