@@ -6,10 +6,16 @@ import os
 import shutil
 from pathlib import Path
 
+import hypothesis
 import pytest
 
 ROOT = Path(__file__).resolve().parent.parent
 REQUIRED = os.environ.get("HEATLEDGER_REQUIRE_OUTSIDE") == "1"
+
+# where a failure blocks others the examples are the same every time; at a desk each run looks somewhere new
+hypothesis.settings.register_profile("same", derandomize=True)
+if REQUIRED:
+    hypothesis.settings.load_profile("same")
 
 
 def need(what: str | Path) -> Path:

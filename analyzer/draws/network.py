@@ -1,7 +1,9 @@
-"""Node voltages of a network of resistors: nodal analysis by elimination on sparse rows."""
+"""Node voltages of a network of resistors: free nodes are eliminated one by one."""
 
 from __future__ import annotations
 
+import itertools
+import math
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 
@@ -19,22 +21,20 @@ class Branch:
 def solve(branches: Iterable[Branch], fixed: Mapping[str, float]) -> dict[str, float]:
     """Voltage of every node [V], given the fixed ones; nodes without a path to a fixed one are left out.
 
-    Kirchhoff's current law at each free node: Σ (V − Vj) / Rj = 0.
+    Free nodes are eliminated one by one by the star-mesh transform (A. Rosen, J. IEE 62, 1924): its neighbours i and
+    j get the conductance gi·gj / Σg between them. Nothing is ever subtracted, so no digit is lost between a milliohm
+    and a megohm, and no voltage lies outside those of the sources.
     """
-    rows: dict[str, dict[str, float]] = {}
-    known: dict[str, float] = {}
+    mesh: dict[str, dict[str, float]] = {}
     for branch in _reached(list(branches), fixed):
-        conductance = 1.0 / branch.ohms
-        for node, other in ((branch.a, branch.b), (branch.b, branch.a)):
-            if node in fixed:
-                continue
-            row = rows.setdefault(node, {})
-            row[node] = row.get(node, 0.0) + conductance
-            if other in fixed:
-                known[node] = known.get(node, 0.0) + conductance * fixed[other]
-            else:
-                row[other] = row.get(other, 0.0) - conductance
-    return dict(fixed) | _eliminated(rows, known)
+        if branch.a != branch.b:
+            _join(mesh, branch.a, branch.b, 1.0 / branch.ohms)
+    stars = _eliminated(mesh, fixed)
+    volts = dict(fixed)
+    for node, star in reversed(stars):
+        total = math.fsum(star.values())
+        volts[node] = math.fsum(conductance / total * volts[other] for other, conductance in star.items())
+    return volts
 
 
 def current(branch: Branch, volts: Mapping[str, float]) -> float:
@@ -61,24 +61,24 @@ def _reached(branches: list[Branch], fixed: Mapping[str, float]) -> list[Branch]
     return [branch for branch in branches if branch.a in reached]
 
 
-def _eliminated(rows: dict[str, dict[str, float]], known: dict[str, float]) -> dict[str, float]:
-    """Solution of the symmetric system, the node with fewest neighbours first, which keeps the rows sparse."""
-    order: list[tuple[str, dict[str, float], float]] = []
-    while rows:
-        node = min(rows, key=lambda name: (len(rows[name]), name))
-        row = rows.pop(node)
-        pivot = row.pop(node)
-        right = known.get(node, 0.0)
-        order.append((node, {other: value / pivot for other, value in row.items()}, right / pivot))
-        for other, value in row.items():
-            factor = value / pivot
-            target = rows[other]
-            target.pop(node, None)
-            for third, coefficient in row.items():
-                target[third] = target.get(third, 0.0) - factor * coefficient
-            if node in known:
-                known[other] = known.get(other, 0.0) - factor * right
-    volts: dict[str, float] = {}
-    for node, row, right in reversed(order):
-        volts[node] = right - sum(value * volts[other] for other, value in row.items())
-    return volts
+def _eliminated(mesh: dict[str, dict[str, float]], fixed: Mapping[str, float]) -> list[tuple[str, dict[str, float]]]:
+    """Each free node and its star of conductances [S] when it went, the one with fewest neighbours first."""
+    free = {node for node in mesh if node not in fixed}
+    stars = []
+    while free:
+        node = min(free, key=lambda name: (len(mesh[name]), name))
+        free.remove(node)
+        star = mesh.pop(node)
+        total = math.fsum(star.values())
+        stars.append((node, star))
+        for other in star:
+            del mesh[other][node]
+        for one, other in itertools.combinations(star, 2):
+            _join(mesh, one, other, star[one] * star[other] / total)
+    return stars
+
+
+def _join(mesh: dict[str, dict[str, float]], one: str, other: str, conductance: float) -> None:
+    for node, neighbour in ((one, other), (other, one)):
+        star = mesh.setdefault(node, {})
+        star[neighbour] = star.get(neighbour, 0.0) + conductance

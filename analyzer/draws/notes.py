@@ -37,13 +37,19 @@ class Hint:
 
     Attributes:
         text: The lines with a current, and where the note stands.
+        words: The words of these lines.
         rails: Rails it names.
         place: Where it stands.
     """
 
     text: str
+    words: frozenset[str]
     rails: tuple[str, ...]
     place: Place
+
+    def may_be_on(self, rail: str) -> bool:
+        """Whether it names no other rail than this."""
+        return not self.rails or rail in self.rails
 
 
 def with_suggestions(board: Board, gaps: Iterable[Gap]) -> list[Gap]:
@@ -55,6 +61,11 @@ def with_suggestions(board: Board, gaps: Iterable[Gap]) -> list[Gap]:
     for_rail: dict[str, list[str]] = defaultdict(list)
     for_part: dict[tuple[str, str], list[str]] = defaultdict(list)
     for hint in hints:
+        addressed = [gap for gap in waiting if not gap.follows and gap.ref in hint.words and hint.may_be_on(gap.rail)]
+        if addressed:
+            for gap in addressed:
+                for_part[gap.key, gap.rail].append(hint.text)
+            continue  # a note that names its part is about nothing else
         parts, apart = _nearest_gaps(board, hint, waiting)
         outputs, from_regulator = _nearest_outputs(board, hint.place)
         for gap in parts:
@@ -72,7 +83,14 @@ def find_hints(board: Board, note: Note) -> list[Hint]:
     for line in note.text.splitlines():
         if _CURRENT.search(_CAPACITY.sub("", line)):
             by_rails.setdefault(_named_rails(board, line), []).append(" ".join(line.split()))
-    return [Hint(f'"{_shortened(lines)}" ({note.place})', rails, note.place) for rails, lines in by_rails.items()]
+    return [
+        Hint(f'"{_shortened(lines)}" ({note.place})', _words(lines), rails, note.place)
+        for rails, lines in by_rails.items()
+    ]
+
+
+def _words(lines: Iterable[str]) -> frozenset[str]:
+    return frozenset(word.strip(".,-/") for line in lines for word in _WORD.findall(line))
 
 
 def _extended(gap: Gap, for_part: Mapping[tuple[str, str], list[str]], for_rail: Mapping[str, list[str]]) -> Gap:
@@ -123,7 +141,7 @@ def _nearest_gaps(board: Board, hint: Hint, gaps: Iterable[Gap]) -> tuple[list[G
     near = [
         (apart, gap)
         for gap in gaps
-        if (not hint.rails or gap.rail in hint.rails)
+        if hint.may_be_on(gap.rail)
         and (component := board.circuit.by_key.get(gap.key))
         and (apart := _apart(hint.place, component.place)) <= NEAR_PART_MM
     ]

@@ -25,7 +25,7 @@ def test_currents_at_free_nodes_cancel(listed, fixed):
 @given(branches, st.dictionaries(st.sampled_from(["n0", "n1", "n2"]), st.floats(-48, 48), min_size=1))
 def test_no_node_lies_outside_the_sources(listed, fixed):
     volts = solve(listed, fixed)
-    assert all(min(fixed.values()) - 1e-6 <= v <= max(fixed.values()) + 1e-6 for v in volts.values())
+    assert all(min(fixed.values()) - 1e-12 <= v <= max(fixed.values()) + 1e-12 for v in volts.values())
 
 
 @given(branches, st.dictionaries(st.sampled_from(["n0", "n1", "n2"]), st.floats(-48, 48), min_size=1), st.randoms())
@@ -35,6 +35,13 @@ def test_order_of_branches_does_not_matter(listed, fixed, shuffle):
     first, second = solve(listed, fixed), solve(turned, fixed)
     assert first.keys() == second.keys()
     assert all(second[node] == pytest.approx(volts, abs=1e-9) for node, volts in first.items())
+
+
+def test_six_decades_of_resistance_cost_no_digit():
+    # four nodes on one source: all at its voltage, whatever the order
+    rows = [("n0", "n1", 747483.0), ("n0", "n2", 1.0), ("n0", "n2", 397856.0), ("n0", "n3", 1.0)]
+    volts = solve([Branch(f"r{n}", *row) for n, row in enumerate(rows)], {"n1": 4.0})
+    assert volts == pytest.approx(dict.fromkeys(("n0", "n1", "n2", "n3"), 4.0), rel=1e-15)
 
 
 def test_bridge_by_hand():

@@ -45,6 +45,14 @@ class TestNotes:
     def test_no_current(self, text):
         assert self.suggestions(text if text != "see page 3 A" else "page A 3")["U2"] == ()
 
+    def test_a_part_named_by_its_reference_is_the_only_one_meant(self):
+        # beside U1, from which a note without a name would be for all of +3V3
+        text = "U3: up to 30 mA asleep"
+        found = self.suggestions(text)
+        assert found == {"U2": (), "U3": (f'"{text}" (board.kicad_sch sheet / at (10, 0) mm)',)}
+        # of its rails only the one the note names
+        assert self.suggestions("U3 on 3V3: 30 mA")["U3"] == ()
+
     def test_too_far_or_on_another_sheet(self):
         assert self.suggestions("200 mA", x=150.0)["U2"] == ()
         assert self.suggestions("200 mA", sheet="/other/")["U2"] == ()
