@@ -272,6 +272,15 @@ def test_json_to_standard_output_is_json_and_nothing_else(board: Path) -> None:
     assert json.loads(done.stdout)["schema"] == "heatledger/ledger-1"
 
 
+@pytest.mark.parametrize("name", ["board.xls", "board"])
+def test_a_workbook_of_another_ending_is_refused_before_any_work(board: Path, name: str) -> None:
+    done = heatledger("audit", ".", "--workbook", name, cwd=board)
+    remedy = "Spreadsheet programs go by the ending: name it board.xlsx."
+    assert (done.returncode, done.stdout) == (1, "")
+    assert done.stderr == f"heatledger: {name}: --workbook writes .xlsx files only. {remedy}\n"
+    assert not (board / name).exists()
+
+
 def test_the_ledger_is_the_same_wherever_the_tool_was_started(board: Path) -> None:
     inside = heatledger("audit", ".", "--json", "-", cwd=board).stdout
     assert heatledger("audit", "seedling_bench", "--json", "-", cwd=board.parent).stdout == inside

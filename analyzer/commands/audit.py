@@ -56,6 +56,9 @@ def run(arguments: argparse.Namespace) -> int:
     """
     from analyzer.archive.discover import find_projects, is_archive
 
+    if arguments.workbook is not None and arguments.workbook.suffix.lower() != ".xlsx":
+        remedy = f"Spreadsheet programs go by the ending: name it {arguments.workbook.stem}.xlsx."
+        raise UsageError(Fault("--workbook writes .xlsx files only", str(arguments.workbook), remedy=remedy))
     if is_archive(arguments.paths):
         from analyzer.archive.command import run_archive
 
