@@ -16,7 +16,8 @@ from pathlib import Path
 import pytest
 from conftest import ROOT, need
 
-pytestmark = pytest.mark.outside
+# one worker at a time: all of them would put the tool into the same folder
+pytestmark = [pytest.mark.outside, pytest.mark.xdist_group("jobset")]
 
 KICAD9 = Path("/opt/kicad9")
 PACKAGES = (

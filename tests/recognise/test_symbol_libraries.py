@@ -19,7 +19,8 @@ from analyzer.recognise import load_rulebook, recognise
 from analyzer.rule import Topology
 from analyzer.settings import Settings
 
-pytestmark = [pytest.mark.outside, pytest.mark.boards]
+# one worker reads the libraries for all
+pytestmark = [pytest.mark.outside, pytest.mark.boards, pytest.mark.xdist_group("libraries")]
 
 LINEAR = ("linear", "ldo", "linear_neg")
 SWITCHING = ("buck", "boost")
