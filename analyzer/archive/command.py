@@ -12,6 +12,9 @@ from analyzer.archive.pool import run, run_on_cluster
 from analyzer.archive.work import INTERNAL_FAULT, Job, Outcome
 from analyzer.errors import Fault, InputError, UsageError
 
+ONE_BOARD = ("workbook", "json", "sarif", "page", "annotate", "currents", "variant", "chance", "allow_outside")
+"""Options that mean one board: of many they would be taken for done."""
+
 
 def run_archive(projects: tuple[Path, ...], arguments: argparse.Namespace) -> int:
     """Audit all `projects` and write one folder of results.
@@ -26,6 +29,10 @@ def run_archive(projects: tuple[Path, ...], arguments: argparse.Namespace) -> in
     """
     from analyzer.archive.combined import finish
 
+    alone = [f"--{name.replace('_', '-')}" for name in ONE_BOARD if getattr(arguments, name) not in (None, False)]
+    if alone:
+        remedy = "Leave it out, or audit that board by itself."
+        raise UsageError(Fault(f"{alone[0]} goes with a single board, not with several projects", remedy=remedy))
     if arguments.out is None:
         remedy = "Name a folder for their results: --out DIR."
         raise UsageError(Fault("several projects give several results", remedy=remedy))

@@ -6,7 +6,7 @@ import argparse
 import copy
 from pathlib import Path
 
-from analyzer.errors import Fault, InputError
+from analyzer.errors import Fault, InputError, UsageError
 
 
 def run_variants(arguments: argparse.Namespace) -> int:
@@ -16,6 +16,7 @@ def run_variants(arguments: argparse.Namespace) -> int:
         The worst exit status among them.
 
     Raises:
+        UsageError: If an earlier result is to be compared too.
         InputError: If the project has no variants.
     """
     from analyzer.archive.since import Standings, changes, standings_of
@@ -23,6 +24,9 @@ def run_variants(arguments: argparse.Namespace) -> int:
     from analyzer.output.ledger_json import as_document
     from analyzer.reading import variants
 
+    if arguments.since is not None:
+        remedy = "Name one variant to compare with an earlier result."
+        raise UsageError(Fault("--variant all compares with the base design, not with --since", remedy=remedy))
     (path,) = arguments.paths
     names = variants(path)
     if not names:

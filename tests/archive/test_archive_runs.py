@@ -107,6 +107,17 @@ def test_several_projects_without_a_folder_for_results_are_a_usage_error(tmp_pat
     )
 
 
+@pytest.mark.parametrize(
+    "option", [("--workbook", "a.xlsx"), ("--currents", "a.xlsx"), ("--variant", "all"), ("--allow-outside",)]
+)
+def test_what_means_one_board_is_refused_for_many_and_not_left_undone(tmp_path: Path, option: tuple[str, ...]) -> None:
+    archive(tmp_path / "in")
+    done = heatledger("audit", "in", "--out", "out", *option, cwd=tmp_path)
+    said = f"heatledger: {option[0]} goes with a single board, not with several projects."
+    assert (done.returncode, done.stderr) == (1, f"{said} Leave it out, or audit that board by itself.\n")
+    assert not (tmp_path / "out").exists()
+
+
 def test_a_folder_without_projects_is_an_input_error(tmp_path: Path) -> None:
     (tmp_path / "in").mkdir()
     done = heatledger("audit", "in", "--out", "out", cwd=tmp_path)
