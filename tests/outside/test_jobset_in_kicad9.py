@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import importlib.util
 import json
+import os
 import shutil
 import subprocess
 from collections.abc import Iterator
@@ -16,8 +17,7 @@ from pathlib import Path
 import pytest
 from conftest import ROOT, need
 
-# one worker at a time: all of them would put the tool into the same folder
-pytestmark = [pytest.mark.outside, pytest.mark.xdist_group("jobset")]
+pytestmark = pytest.mark.outside
 
 KICAD9 = Path("/opt/kicad9")
 PACKAGES = (
@@ -32,12 +32,13 @@ PYTHONDONTWRITEBYTECODE=1 PYTHONPATH="{tool}" exec /usr/bin/python3 -m analyzer.
 
 
 @pytest.fixture(scope="module")
-def tool() -> Iterator[Path]:
-    """The tool installed inside KiCad's folder, on the path of what KiCad starts."""
+def tool() -> Iterator[str]:
+    """The tool installed inside KiCad's folder; gives its path as seen from there."""
     need(KICAD9 / "usr" / "bin" / "kicad-cli")
-    folder, start = KICAD9 / "opt" / "heatledger", KICAD9 / "usr" / "local" / "bin" / "heatledger"
-    shutil.rmtree(folder, ignore_errors=True)
-    folder.mkdir(parents=True)
+    # a folder of its own for each process that runs tests
+    folder = KICAD9 / "opt" / f"heatledger-{os.getpid()}"
+    inside, start = f"/{folder.relative_to(KICAD9)}", folder / "bin" / "heatledger"
+    start.parent.mkdir(parents=True)
     for name in PACKAGES:
         spec = importlib.util.find_spec(name)
         assert spec is not None, name
@@ -48,30 +49,35 @@ def tool() -> Iterator[Path]:
             shutil.copy(source, folder / source.name)
     for name in ("analyzer", "rules"):
         shutil.copytree(ROOT / name, folder / name, ignore=shutil.ignore_patterns("__pycache__"))
-    start.write_text(START.format(tool="/opt/heatledger"), encoding="utf-8")
+    start.write_text(START.format(tool=inside), encoding="utf-8")
     start.chmod(0o755)
-    yield folder
+    yield inside
     shutil.rmtree(folder)
-    start.unlink()
 
 
-def run_jobset(board: str, folder: str) -> tuple[subprocess.CompletedProcess[str], Path]:
+def run_jobset(tool: str, board: str, folder: str) -> tuple[subprocess.CompletedProcess[str], Path]:
     """Run the shipped jobset on a copy of a fixture board; gives the outcome and the job's output folder."""
     work = KICAD9 / "tmp" / folder
     shutil.rmtree(work, ignore_errors=True)
     shutil.copytree(ROOT / "fixture_boards" / board, work)
     shutil.copy(ROOT / "analyzer" / "kicad" / "heatledger.kicad_jobset", work)
     command = [str(ROOT / ".ci" / "kicad9"), "cli", "jobset", "run", "-f", f"/tmp/{folder}/heatledger.kicad_jobset"]
+    environment = {**os.environ, "PATH": f"{tool}/bin{os.pathsep}{os.environ['PATH']}"}
     # started from elsewhere, as a release machine would
     done = subprocess.run(
-        [*command, f"/tmp/{folder}/{board}.kicad_pro"], cwd="/", capture_output=True, encoding="utf-8", check=False
+        [*command, f"/tmp/{folder}/{board}.kicad_pro"],
+        cwd="/",
+        env=environment,
+        capture_output=True,
+        encoding="utf-8",
+        check=False,
     )
     return done, work / "heatledger"
 
 
 @pytest.mark.parametrize("folder", ["heatledger-job", "heatledger job Wärme"])
-def test_the_jobset_delivers_netlist_workbook_and_ledger(tool: Path, folder: str) -> None:
-    done, out = run_jobset("lane_lamp", folder)
+def test_the_jobset_delivers_netlist_workbook_and_ledger(tool: str, folder: str) -> None:
+    done, out = run_jobset(tool, "lane_lamp", folder)
     assert done.returncode == 0, done.stdout + done.stderr
     ledger = json.loads((out / "lane_lamp.json").read_text(encoding="utf-8"))
     # the verdicts of the board's hand-made EXPECTED.md
@@ -85,8 +91,8 @@ def test_the_jobset_delivers_netlist_workbook_and_ledger(tool: Path, folder: str
     shutil.rmtree(out.parent)
 
 
-def test_a_part_over_its_limit_fails_the_run_and_still_delivers(tool: Path) -> None:
-    done, out = run_jobset("seedling_bench", "heatledger-over")
+def test_a_part_over_its_limit_fails_the_run_and_still_delivers(tool: str) -> None:
+    done, out = run_jobset(tool, "seedling_bench", "heatledger-over")
     assert done.returncode == 6, done.stdout + done.stderr
     ledger = json.loads((out / "seedling_bench.json").read_text(encoding="utf-8"))
     assert [entry["ref"] for entry in ledger["entries"] if entry["verdict"] == "over"] == ["U5"]

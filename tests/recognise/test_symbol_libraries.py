@@ -19,8 +19,7 @@ from analyzer.recognise import load_rulebook, recognise
 from analyzer.rule import Topology
 from analyzer.settings import Settings
 
-# one worker reads the libraries for all
-pytestmark = [pytest.mark.outside, pytest.mark.boards, pytest.mark.xdist_group("libraries")]
+pytestmark = [pytest.mark.outside, pytest.mark.boards]
 
 LINEAR = ("linear", "ldo", "linear_neg")
 SWITCHING = ("buck", "boost")
