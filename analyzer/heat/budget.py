@@ -209,7 +209,7 @@ def _entry(
         findings=tuple(findings),
         evidence=tuple(unique(one.evidence)),
         steps=steps(one, case, corners, grade),
-        remedies=remedies(one, case, hottest, greatest, packages, board) if hottest else (),
+        remedies=remedies(one, case, hottest, greatest, packages, board, settings.policy) if hottest else (),
         sensitivity=sensitivity(case, hottest.junction) if hottest and hottest.junction is not None else (),
         chance=chance(case, chance_seed) if chance_seed is not None and complete else None,
         live=live_numbers(case, hottest, extra, steady=not pulses) if hottest else {},

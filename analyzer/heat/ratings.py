@@ -40,6 +40,25 @@ def junction_findings(draft: Draft, worst: Worked, policy: Policy) -> Iterator[F
         yield kinds.JUNCTION_TIGHT.found(part.ref, message, policy.source, key=part.key)
 
 
+def rated_current(one: ChannelCase, policy: Policy) -> float | None:
+    """Greatest load [A] inside the rated output current and the policy's fraction of it; None without a rating."""
+    rating = one.wiring.channel.figures.get("output_current_max")
+    return None if rating is None else rating.span.low * policy.current_fraction
+
+
+def rated_input(one: ChannelCase, policy: Policy) -> float | None:
+    """Greatest magnitude of the input voltage [V] inside every rating of the channel; None without any."""
+    figures = one.wiring.channel.figures
+    ends = []
+    if "input_max" in figures:
+        ends.append(abs(figures["input_max"].span.low))
+    if "input_absolute_max" in figures:
+        ends.append(abs(figures["input_absolute_max"].span.low) * policy.input_fraction)
+    if "differential_max" in figures:
+        ends.append(abs(figures["differential_max"].span.low) + one.vout.low)
+    return min(ends, default=None)
+
+
 def electrical_findings(draft: Draft, policy: Policy) -> Iterator[Finding]:
     """Input voltage, output current, dropout, power and short circuit of every channel."""
     for one in draft.case.channels:

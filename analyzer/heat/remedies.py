@@ -8,9 +8,11 @@ from dataclasses import replace
 from analyzer.heat.case import Case, ChannelCase, Worked, worst
 from analyzer.heat.draft import Draft
 from analyzer.heat.path.sink import needed_sink
+from analyzer.heat.ratings import rated_current, rated_input
 from analyzer.ledger import Remedy
 from analyzer.quantity import ZERO, Span
 from analyzer.rule import LINEARS, SWITCHERS, BoardClass, PackageRule
+from analyzer.settings import Policy
 from analyzer.wording import show
 
 SINK_CONTACT = 1.0
@@ -34,36 +36,51 @@ def remedies(
     greatest: float | None,
     packages: Mapping[str, PackageRule],
     board: BoardClass,
+    policy: Policy,
 ) -> tuple[Remedy, ...]:
-    """Remedies of a worked case: what still passes, and what would make it pass where it does not."""
+    """Remedies of a worked case: how far it may go as it is, and what would bring it inside where it is not."""
     if case.limit is None or case.path is None or hottest.junction is None or not case.channels:
         return ()
-    found = [*_what_passes(case, hottest, greatest)]
+    found = [*_how_far(draft, case, hottest, greatest, policy)]
     if case.tight_above is not None and hottest.junction > case.tight_above:
         found += _what_helps(draft, case, hottest, packages, board)
     return tuple(found)
 
 
-def _what_passes(case: Case, hottest: Worked, greatest: float | None) -> Iterator[Remedy]:
+def _how_far(draft: Draft, case: Case, hottest: Worked, greatest: float | None, policy: Policy) -> Iterator[Remedy]:
+    """Greatest load, ambient, θ and input: where the junction meets its limit, or a rating ends before it."""
     limit, junction = case.limit, hottest.junction
     if limit is None or junction is None:
         return
     if greatest is not None:
-        text = f"passes up to a load of {show(greatest, 'A')}"
-        yield Remedy("greatest load", text, {"amps": greatest})
+        rated = rated_current(case.channels[0], policy) if len(case.channels) == 1 else None
+        text, amps = _ends(greatest, rated, "A", "rated current")
+        yield Remedy("greatest load", text, {"amps": amps})
+    known = "" if draft.is_complete else " (with the known currents alone)"
     if case.path is not None and case.path.measured is None:
         ambient = _greatest_ambient(case, hottest)
         if ambient is not None:
-            yield Remedy(
-                "greatest ambient", f"passes up to {show(ambient, '°C')} around the part", {"celsius": ambient}
-            )
+            text = f"the junction meets its limit at {show(ambient, '°C')} around the part{known}"
+            yield Remedy("greatest ambient", text, {"celsius": ambient})
         if hottest.watts > NO_HEAT:
             theta = (limit - hottest.ambient) / hottest.watts
-            words = f"passes with up to {show(theta, 'K/W')} from junction to air" if theta > 0 else "no θ would pass"
+            text = f"{show(theta, 'K/W')} from junction to air or less keep the junction inside its limit{known}"
+            words = text if theta > 0 else "no θ would do: the air alone is hotter than the limit"
             yield Remedy("θ needed", words, {"k_per_w": max(theta, 0.0)})
     volts = _greatest_input(case)
     if volts is not None:
-        yield Remedy("greatest input", f"passes up to {show(volts, 'V')} at the input", {"volts": volts})
+        text, volts = _ends(volts, rated_input(case.channels[0], policy), "V", "input rating")
+        yield Remedy("greatest input", f"{text}{known}", {"volts": volts})
+
+
+def _ends(by_junction: float, rated: float | None, unit: str, rating: str) -> tuple[str, float]:
+    """Where load or input end, in words and as the number: at the rating or at the junction's limit."""
+    allowed = show(by_junction, unit)
+    if rated is None:
+        return f"up to {allowed}, where the junction meets its limit; no {rating} is known", by_junction
+    if rated < by_junction:
+        return f"up to {show(rated, unit)}, where the {rating} under the policy ends before the junction does", rated
+    return f"up to {allowed}, where the junction meets its limit", by_junction
 
 
 def _greatest_ambient(case: Case, hottest: Worked) -> float | None:

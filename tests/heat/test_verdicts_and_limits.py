@@ -8,6 +8,7 @@ from pathlib import Path
 import pytest
 from heat_kit import Bench, close, names, number
 
+from analyzer.audit import audit
 from analyzer.evidence import Grade
 from analyzer.findings.base import Verdict
 from analyzer.heat.ratings import site_findings
@@ -293,3 +294,15 @@ def test_a_case_without_a_path_has_no_chance() -> None:
     from analyzer.heat.case import Case
 
     assert chance(Case((), None, EXACT(40.0), (1.0, 1.0)), 1) is None
+
+
+def test_how_far_a_part_may_go_ends_at_its_ratings_too() -> None:
+    entries = {one.ref: one for one in audit(ROOT / "fixture_boards" / "tide_logger").ledger.entries}
+    said = {(ref, remedy.kind): remedy for ref, one in entries.items() for remedy in one.remedies}
+    # by the junction alone hundreds of volts: recommended up to 20 V, absolute maximum 24 V less a tenth by policy
+    far = said["U2", "greatest input"]
+    assert far.numbers == {"volts": 20.0}
+    ends = "where the input rating under the policy ends before the junction does"
+    assert far.text == f"up to 20.0 V, {ends} (with the known currents alone)"
+    # 60 mA rated, nine tenths of it by policy
+    assert said["U3", "greatest load"].numbers == {"amps": pytest.approx(0.054)}
