@@ -147,7 +147,7 @@ class Entry:
             worst; known even where the load is not [A].
         rated_load: The part's own rating [A].
         verdict: The word.
-        missing: What is missing for closing the budget, one line each; empty unless the verdict is open.
+        missing: What is missing for closing the budget, one line each; what is known may be over all the same.
         grade: Worst grade of all evidence used.
         findings: What to look at.
         evidence: Every number used.
@@ -195,6 +195,11 @@ class Entry:
         if self.limit is None or self.worst is None or self.worst.junction is None:
             return None
         return self.limit - self.worst.junction
+
+    @property
+    def is_bound(self) -> bool:
+        """Whether heat and junction are lower bounds, and the margin an upper one, for something is missing."""
+        return bool(self.missing)
 
 
 @dataclass(frozen=True)

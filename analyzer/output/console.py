@@ -92,23 +92,24 @@ def entry_lines(entry: Entry, width: int) -> list[str]:
 def _figures(entry: Entry) -> str:
     worst = entry.worst
     if worst is None or worst.junction is None:
-        carries = ""
-        if entry.greatest_load is not None:
-            carries = f"may carry {show(entry.greatest_load, 'A')}"
-            if entry.rated_load is not None:
-                carries += f", rated {show(entry.rated_load, 'A')}"
-        return carries or "not budgeted"
-    at_least = "at least " if entry.verdict is Verdict.OPEN else ""
-    text = f"{at_least}{show(worst.watts, 'W')}, junction {at_least}{show(worst.junction, '°C')}"
+        return _allowed(entry) or "not budgeted"
+    least, most = ("at least ", "at most ") if entry.is_bound else ("", "")
+    text = f"{least}{show(worst.watts, 'W')}, junction {least}{show(worst.junction, '°C')}"
     if entry.limit is not None and entry.margin is not None:
-        text += f" of {show(entry.limit, '°C')}, margin {entry.margin:+.1f} K"
+        text += f" of {show(entry.limit, '°C')}, margin {most}{entry.margin:+.1f} K"
     if entry.headroom is not None and entry.verdict is not Verdict.OPEN:
         text += f", headroom {show(entry.headroom.over, 'A')}"
-    elif entry.greatest_load is not None:
-        text += f"; may carry {show(entry.greatest_load, 'A')}"
-        if entry.rated_load is not None:
-            text += f", rated {show(entry.rated_load, 'A')}"
+    elif allowed := _allowed(entry):
+        text += f"; {allowed}"
     return f"{text} [{entry.grade.value}]"
+
+
+def _allowed(entry: Entry) -> str:
+    """What the junction alone allows as load, against the part's own rating."""
+    if entry.greatest_load is None:
+        return ""
+    rated = f", rated {show(entry.rated_load, 'A')}" if entry.rated_load is not None else ""
+    return f"junction allows {show(entry.greatest_load, 'A')}{rated}"
 
 
 def _finding_lines(findings: Iterable[Finding], width: int) -> Iterator[str]:

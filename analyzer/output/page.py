@@ -53,10 +53,11 @@ def page(ledger: Ledger, gate: Gate) -> Iterator[str]:
 def _row(entry: Entry) -> str:
     worst = entry.worst
     rail = ", ".join(dict.fromkeys(output.rail for output in entry.outputs if output.rail))
-    heat = show(worst.watts, "W") if worst else ""
-    junction = show(worst.junction, "°C") if worst and worst.junction is not None else ""
+    least, most = ("≥ ", "≤ ") if entry.is_bound else ("", "")
+    heat = least + show(worst.watts, "W") if worst else ""
+    junction = least + show(worst.junction, "°C") if worst and worst.junction is not None else ""
     limit = show(entry.limit, "°C") if entry.limit is not None else ""
-    margin = f"{entry.margin:+.1f} K" if entry.margin is not None else ""
+    margin = f"{most}{entry.margin:+.1f} K" if entry.margin is not None else ""
     name = f"{entry.ref} {entry.part}"
     cells = (entry.verdict.value, name, rail, heat, junction, limit, margin, entry.grade.value)
     return "| " + " | ".join(_escaped(cell) for cell in cells) + " |"

@@ -27,7 +27,7 @@ def test_no_line_is_wider_than_the_terminal(ledger: Ledger, width: int) -> None:
 
 
 def test_worst_come_first_and_the_summary_last(ledger: Ledger) -> None:
-    heads = [line.split()[:2] for line in report(ledger, 200, brief=True)]
+    heads = [line.split()[:2] for line in report(ledger, 300, brief=True)]
     assert heads == [["open", "U1"], ["tight", "U101"], ["tight", "U201"], ["lane_lamp:", "3"]]
 
 
