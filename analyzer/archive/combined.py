@@ -71,6 +71,7 @@ def _json(ranked: list[Outcome], standings: dict[tuple[str, str], Standing], fou
                 "counts": dict(outcome.counts),
                 "worst_margin_kelvin": outcome.worst_margin,
                 "worst_part": outcome.worst_part,
+                "worst_is_bound": outcome.worst_is_bound,
                 "gaps": outcome.gaps,
                 "fault": outcome.fault,
             }
@@ -90,9 +91,12 @@ def _lines(ranked: list[Outcome]) -> Iterator[str]:
         if outcome.fault:
             yield f"failed  {outcome.label}: {outcome.fault}"
             continue
-        margin = "no margin" if outcome.worst_margin is None else f"{outcome.worst_margin:+.1f} K {outcome.worst_part}"
+        most = "at most " if outcome.worst_is_bound else ""
+        margin = "no margin"
+        if outcome.worst_margin is not None:
+            margin = f"{most}{outcome.worst_margin:+.1f} K {outcome.worst_part}"
         words = ", ".join(f"{count} {verdict}" for verdict, count in outcome.counts if count) or "no regulators"
-        yield f"{margin:>16}  {outcome.label}: {words}, {outcome.gaps} gaps"
+        yield f"{margin:>22}  {outcome.label}: {words}, {outcome.gaps} gaps"
     totals = {verdict.value: 0 for verdict in Verdict}
     for outcome in ranked:
         for verdict, count in outcome.counts:

@@ -46,8 +46,9 @@ class Outcome:
         label: The job's label.
         status: Exit status this board alone would have given.
         counts: Fitted parts by verdict word.
-        worst_margin: Smallest known margin [K]; None when no budget could be closed.
+        worst_margin: Smallest margin of a part with a junction temperature [K]; None when there is none.
         worst_part: Reference of that part.
+        worst_is_bound: True where something of that part is missing, so that its margin is at most this.
         gaps: Number of missing currents.
         ledger_file: Path of its JSON; "" if the board failed.
         workbook_file: Path of its workbook; "" if the board failed.
@@ -59,6 +60,7 @@ class Outcome:
     counts: tuple[tuple[str, int], ...] = ()
     worst_margin: float | None = None
     worst_part: str = ""
+    worst_is_bound: bool = False
     gaps: int = 0
     ledger_file: str = ""
     workbook_file: str = ""
@@ -97,6 +99,7 @@ def _work(job: Job) -> Outcome:
         tuple((verdict.value, ledger.count(verdict)) for verdict in Verdict),
         worst.margin if worst else None,
         worst.ref if worst else "",
+        worst is not None and worst.is_bound,
         sum(1 for gap in ledger.gaps if not gap.follows),
         str(ledger_file),
         str(workbook_file),

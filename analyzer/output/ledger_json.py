@@ -63,6 +63,7 @@ def summary(ledger: Ledger) -> dict[str, Any]:
         "findings": len(ledger.findings),
         "worst_part": worst.ref if worst else None,
         "worst_margin_kelvin": worst.margin if worst else None,
+        "worst_is_bound": worst is not None and worst.is_bound,
     }
 
 

@@ -13,7 +13,7 @@ from typing import Any
 from analyzer.archive.work import Outcome
 from analyzer.output.atomic import write_bytes
 
-BOARDS = ("Board", "Worst margin [K]", "Part", "Over", "Open", "Tight", "Clear", "Gaps", "Status", "Fault")
+BOARDS = ("Board", "Worst margin [K]", "Is", "Part", "Over", "Open", "Tight", "Clear", "Gaps", "Status", "Fault")
 ENTRIES = (
     "Board",
     "Part",
@@ -76,7 +76,14 @@ def write_combined(
         counts = dict(outcome.counts)
         words = [counts.get(word, 0) for word in ("over", "open", "tight", "clear")]
         sheets["Boards"].row(
-            outcome.label, outcome.worst_margin, outcome.worst_part, *words, outcome.gaps, outcome.status, outcome.fault
+            outcome.label,
+            outcome.worst_margin,
+            "at most" if outcome.worst_is_bound else "",
+            outcome.worst_part,
+            *words,
+            outcome.gaps,
+            outcome.status,
+            outcome.fault,
         )
     for outcome, document in ledgers:
         for entry in document["entries"]:

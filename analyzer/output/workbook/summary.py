@@ -58,10 +58,11 @@ def write(book: Book, ledger: Ledger, sign_off: Mapping[str, str]) -> None:
     sheet.verdict_colours(first_count, row - 1, 0)
     facts = summary(ledger)
     margin = facts["worst_margin_kelvin"]
+    most = "at most " if facts["worst_is_bound"] else ""
     put(
         "Worst part",
         facts["worst_part"] or "none known",
-        "" if margin is None else f"margin {margin:+.1f} K as audited",
+        "" if margin is None else f"margin {most}{margin:+.1f} K as audited",
     )
     put("Missing currents", facts["gaps"])
     put("heatledger", __version__)
