@@ -19,6 +19,7 @@ from analyzer.errors import InputError
 from analyzer.output.ledger_json import as_document
 from analyzer.output.workbook import write_workbook
 from analyzer.output.workbook.typed import Typed, read_typed
+from analyzer.rule import BoardClass
 
 BOARD = ROOT / "fixture_boards" / "tide_logger"
 
@@ -229,6 +230,17 @@ def test_a_bomb_is_refused_by_its_directory(tmp_path: Path) -> None:
         for number in range(1001):
             archive.writestr(f"p{number}", "")
     with pytest.raises(InputError, match="holds 1001 parts"):
+        read_typed(file)
+
+
+def test_an_edited_board_class_is_taken_over_and_chooses_other_figures(result: Audit, tmp_path: Path) -> None:
+    file = fresh(result, tmp_path)
+    assert result.settings.board.board_class is BoardClass.LOW
+    type_in(file, "Settings", "Value", "2s2p", Setting="Board class")
+    settings = read_typed(file).applied_to(result.settings)
+    assert (settings.board.board_class, settings.board.source) == (BoardClass.HIGH, "board.xlsx Settings sheet")
+    type_in(file, "Settings", "Value", "four layers", Setting="Board class")
+    with pytest.raises(InputError, match=r"'four layers' is no board class\. Type one of 1s, 1s\+pour, 2s2p\."):
         read_typed(file)
 
 

@@ -155,3 +155,11 @@ def test_edits_recalculate_to_what_a_fresh_engine_run_gives(board: str, tmp_path
         if name in {rail.name for rail in fresh.rails if not rail.is_ground}:
             shown = theirs["Rails", place(file, "Rails", "Known load high [A]", Rail=name)]
             assert shown == pytest.approx(load.known.high, rel=CLOSE), name
+
+
+def test_another_board_class_makes_every_verdict_a_matter_of_a_re_run(tmp_path: Path) -> None:
+    file = written("seedling_bench", tmp_path)
+    cell = place(file, "Settings", "Value", **{"Name in formulas": "Board_class"})
+    theirs = values(recalculated(edited(file, {("Settings", cell): "2s2p"}), tmp_path))
+    for part in ("U1", "U2", "U5"):
+        assert theirs["Regulators", place(file, "Regulators", "Verdict", Part=part)] == "re-run"

@@ -164,7 +164,8 @@ def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None) -> Non
     static_missing = at["Missing besides the load"]
     missing = at["Missing in all"]
     audited = at["Rail load as audited [A]"]
-    stale = f'AND({at["Model"]}="engine",OR(Edited>0,AND(ISNUMBER({audited}),ABS({rail_load}-N({audited}))>1E-12)))'
+    moved = f"OR(Edited>0,AND(ISNUMBER({audited}),ABS({rail_load}-N({audited}))>1E-12))"
+    stale = f'OR(Class_edited>0,AND({at["Model"]}="engine",{moved}))'
     verdict = (
         f'=IF({at["Other findings"]}="not fitted","not fitted",IF({stale},"{RERUN}",'
         f'IF(OR({at["Other findings"]}="over",AND(ISNUMBER({junction}),ISNUMBER({limit}),{junction}>{limit}),'

@@ -7,7 +7,8 @@ from dataclasses import dataclass
 
 from analyzer.heat.altitude import EXPONENTS, multiplier
 from analyzer.ledger import Ledger
-from analyzer.output.workbook.layout import HEAD_ROW, Book, Column
+from analyzer.output.workbook.layout import HEAD_ROW, Book, Column, Sheet
+from analyzer.rule import BoardClass
 from analyzer.settings import Settings
 from analyzer.wording import show_span
 
@@ -61,6 +62,20 @@ def inputs(settings: Settings) -> Iterator[Input]:
     yield Input("Policy_cap", "Policy limit: at most", cap, "°C", source, grade)
 
 
+def _write_class(book: Book, sheet: Sheet, row: int, settings: Settings) -> None:
+    """The board class: another one means other figures of θ, which only a re-run chooses."""
+    stated = settings.board.board_class.value if settings.board.board_class is not None else None
+    names = ", ".join(one.value for one in BoardClass)
+    source = f"{names}; blank: by copper layers, else the poorest"
+    sheet.row(row, ("Board class", None, "class", stated, source, "stated" if stated else "presumed", "Board_class"))
+    sheet.put(row, 1, stated, "input")
+    book.book.define_name("Board_class", f"=Settings!$B${row + 1}")
+    words = ("Board class edited since the audit", None, "", None, "every row says re-run", "", "Class_edited")
+    sheet.row(row + 1, words)
+    sheet.formula(row + 1, 1, f"=IF(B{row + 1}=D{row + 1},0,1)", 0)
+    book.book.define_name("Class_edited", f"=Settings!$B${row + 2}")
+
+
 def write(book: Book, ledger: Ledger, settings: Settings) -> None:
     """Write the sheet and define its names."""
     remark = "Coloured cells may be edited: dissipation, junction, margin and verdict follow. A re-run takes them over."
@@ -86,7 +101,9 @@ def write(book: Book, ledger: Ledger, settings: Settings) -> None:
     sheet.formula(row, 1, edited, 0)
     sheet.put(row, 6, "Edited")
     book.book.define_name("Edited", f"=Settings!$B${row + 1}")
-    row += 2
+    row += 1
+    _write_class(book, sheet, row, settings)
+    row += 3
     for evidence in ledger.settings:
         sheet.row(row, (evidence.quantity, None, evidence.unit, None, evidence.source, evidence.grade.value))
         sheet.put(row, 1, show_span(evidence.span, evidence.unit), "text")

@@ -19,7 +19,8 @@ from analyzer.load import Pulse
 from analyzer.output.workbook.archive_check import check_archive
 from analyzer.output.workbook.layout import HEAD_ROW, SIGN_OFF
 from analyzer.quantity import Dimension, Span
-from analyzer.settings import PartStatement, Policy, Settings, Site, StatedDraw
+from analyzer.rule import BoardClass
+from analyzer.settings import Board, PartStatement, Policy, Settings, Site, StatedDraw
 
 Cells = tuple[object, object, object]
 _TYPE_HEADS = ("Type low [A]", "Type nominal [A]", "Type high [A]")
@@ -39,6 +40,7 @@ class Typed:
         sign_off: Label → text.
         settings: Name of an edited setting → its new value.
         thetas: Reference → edited θJA [K/W] at sea level.
+        board_class: Edited class of the board.
     """
 
     file: str = ""
@@ -50,6 +52,7 @@ class Typed:
     sign_off: Mapping[str, str] = field(default_factory=dict)
     settings: Mapping[str, float] = field(default_factory=dict)
     thetas: Mapping[str, float] = field(default_factory=dict)
+    board_class: BoardClass | None = None
 
     def applied_to(self, settings: Settings) -> Settings:
         """Settings with what was typed in place of what they said."""
@@ -66,6 +69,7 @@ class Typed:
             parts=parts,
             site=self._site(settings.site),
             policy=self._policy(settings.policy),
+            board=self._board(settings.board),
         )
 
     def _stated(self, quantity: str, value: float, unit: str, where: str) -> Evidence:
@@ -98,6 +102,11 @@ class Typed:
             altitude=changed.get("altitude", site.altitude),
             altitude_exponent=exponent,
         )
+
+    def _board(self, board: Board) -> Board:
+        if self.board_class is None:
+            return board
+        return replace(board, board_class=self.board_class, source=f"{self.file} Settings sheet")
 
     def _policy(self, policy: Policy) -> Policy:
         new = self.settings
@@ -141,12 +150,13 @@ def read_typed(path: Path) -> Typed:
         answers = _answers(list(_rows(book["Findings"])))
         sign_off = _sign_off(book["Summary"])
         settings = _settings(path, list(_rows(book["Settings"])), faults)
+        board_class = _board_class(path, list(_rows(book["Settings"])), faults)
         thetas = _thetas(path, list(_rows(book["Regulators"])), faults) if "Regulators" in book.sheetnames else {}
     finally:
         book.close()
     if faults:
         raise InputError(faults)
-    return replace(typed, answers=answers, sign_off=sign_off, settings=settings, thetas=thetas)
+    return replace(typed, answers=answers, sign_off=sign_off, settings=settings, thetas=thetas, board_class=board_class)
 
 
 Row = tuple[int, Mapping[str, Any]]
@@ -250,11 +260,27 @@ def _sign_off(sheet: Any) -> dict[str, str]:
     return found
 
 
+_NO_NUMBERS = frozenset({"Thin_air", "Edited", "Board_class", "Class_edited"})
+
+
+def _board_class(path: Path, rows: list[Row], faults: list[Fault]) -> BoardClass | None:
+    for number, row in rows:
+        text = _text(row.get("Value"))
+        if _text(row.get("Name in formulas")) != "Board_class" or text == _text(row.get("As audited")):
+            continue
+        known = [one.value for one in BoardClass]
+        if text in known:
+            return BoardClass(text)
+        remedy = f"Type one of {', '.join(known)}."
+        faults.append(Fault(f"'{text}' is no board class", str(path), f"Settings!B{number}", remedy))
+    return None
+
+
 def _settings(path: Path, rows: list[Row], faults: list[Fault]) -> dict[str, float]:
     found = {}
     for number, row in rows:
         name, value, before = _text(row.get("Name in formulas")), row.get("Value"), row.get("As audited")
-        if not name or name in ("Thin_air", "Edited") or value == before:
+        if not name or name in _NO_NUMBERS or value == before:
             continue
         if isinstance(value, (int, float)) and not isinstance(value, bool):
             found[name] = float(value)
