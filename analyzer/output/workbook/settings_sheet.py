@@ -14,7 +14,7 @@ from analyzer.wording import show_span
 
 COLUMNS = (
     Column("Setting", 34),
-    Column("Value", 12, "plain"),
+    Column("Value", 20, "plain"),
     Column("Unit", 9),
     Column("As audited", 12, "plain"),
     Column("Source", 44, "wrap"),
