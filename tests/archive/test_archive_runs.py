@@ -11,6 +11,7 @@ import sys
 import zipfile
 from pathlib import Path
 
+import jsonschema
 import openpyxl
 import pytest
 from conftest import ROOT
@@ -42,6 +43,8 @@ def test_boards_are_ranked_by_worst_margin_whatever_the_workers(tmp_path: Path, 
     done = heatledger("audit", "in", "--out", "out", "--workers", workers, cwd=tmp_path)
     assert done.returncode == 5
     result = json.loads((tmp_path / "out" / "archive.json").read_text(encoding="utf-8"))
+    schema = json.loads((ROOT / "analyzer" / "output" / "schema" / "archive-1.json").read_text(encoding="utf-8"))
+    jsonschema.validators.validator_for(schema)(schema).validate(result)
     assert [(board["board"], board["worst_part"], board["gaps"]) for board in result["boards"]] == [
         ("seedling_bench/seedling_bench", "U5", 0),
         ("lane_lamp/lane_lamp", "U101", 1),
