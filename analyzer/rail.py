@@ -92,7 +92,8 @@ class Wiring:
         vout: Output voltage relative to board ground, None if unknown.
         is_off: True when the channel is strapped off and supplies nothing.
         through: References between the output net and the rail's named net.
-        outside: Inductor, diode and transistors of its power path.
+        outside: Inductor, diode and transistors of its power path; the series resistors of a shunt regulator.
+        has_other_feed: Whether something else feeds its output rail too, so that it may have to block.
         why_open: What is unknown and why, one line each.
     """
 
@@ -110,6 +111,7 @@ class Wiring:
     is_off: bool = False
     through: tuple[str, ...] = ()
     outside: tuple[Outside, ...] = ()
+    has_other_feed: bool = False
     why_open: tuple[str, ...] = ()
 
 

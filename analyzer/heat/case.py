@@ -226,10 +226,14 @@ def _candidates(one: ChannelCase, junction: float) -> Iterator[Point]:
     vouts = {vout.low, vout.high}
     loads = {load.low, load.high, *(x for x in one.model.loads if load.low < x < load.high)}
     if not vin.is_exact:
-        vins |= set(one.model.interior(vin.low, vin.high, vout.nominal, load.high))
+        for b, c in itertools.product(sorted(vouts), sorted(loads)):
+            vins.update(one.model.interior(vin.low, vin.high, b, c))
         table = one.wiring.channel.efficiency_map
         knots = {y for _, y, _ in table.points} if table else set()
         vins |= {edge for edge in vouts | knots if vin.low < edge < vin.high}
+    if not vout.is_exact:
+        for a, c in itertools.product(sorted(vins), sorted(loads)):
+            vouts.update(one.model.interior_outputs(vout.low, vout.high, a, c))
     for a in sorted(vins):
         for b in sorted(vouts):
             for c in sorted(loads):

@@ -69,7 +69,9 @@ class LossModel:
         used: Evidence of every figure it uses.
         missing: Figures it lacks, in words; while there are any, `at` must not be called.
         notes: Assumptions it makes, each on the safe side.
-        interior: Input voltages inside (low, high) where the heat may have an extremum, besides the ends.
+        interior: (low, high, vout, iout) → input voltages inside (low, high) where the heat may have an extremum,
+            besides the ends.
+        interior_outputs: (low, high, vin, iout) → output voltages inside (low, high) where it may have one.
         loads: Loads inside (low, high) where a table has its knots.
         own_load: Load the part itself sets (chargers); None where the rail's draws do.
         iin_needs_voltages: False where the input current follows from the load alone.
@@ -81,6 +83,9 @@ class LossModel:
     missing: tuple[str, ...] = ()
     notes: tuple[str, ...] = ()
     interior: Callable[[float, float, float, float], tuple[float, ...]] = field(default=lambda _a, _b, _c, _d: ())
+    interior_outputs: Callable[[float, float, float, float], tuple[float, ...]] = field(
+        default=lambda _a, _b, _c, _d: ()
+    )
     loads: tuple[float, ...] = ()
     own_load: Evidence | None = None
     iin_needs_voltages: bool = True

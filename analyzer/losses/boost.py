@@ -1,13 +1,19 @@
 """Step-up converters, synchronous or with an external rectifier.
 
-Source: TI LM2735 data sheet section 10.3.4.1: Iin = Pout/(η·Vin), Pcond = Iin²·D·Rds, Psw = ½·Vout·Iin·f·(tr+tf).
+Source: TI LM2735 data sheet section 10.3.4.1: Iin = Pout/(η·Vin), D = 1 − η·Vin/Vout = 1 − Iout/Iin,
+Pcond = Iin²·D·Rds, Psw = ½·Vout·Iin·f·(tr+tf).
+
+Where the input is above the output, the switch rests, and coil and rectifier pass the input on to the output.
 """
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 from analyzer.losses import efficiency, terms
-from analyzer.losses.base import End, Figures, Loss, LossModel, Point, lacking, outside
+from analyzer.losses.base import End, Figures, Loss, LossModel, Point, high, lacking, outside
 from analyzer.losses.buck import interior_voltages
+from analyzer.losses.elsewhere import OPPOSITE, Outsides, outside_notes, outsides
 from analyzer.rail import Wiring
 from analyzer.wording import show
 
@@ -22,6 +28,13 @@ def boost_input_current(power_out: float, efficiency_there: float, vin: float) -
         raise ValueError("a boost needs a positive input voltage")
     efficiency.total_loss(power_out, efficiency_there)  # checks their ranges
     return power_out / (efficiency_there * vin)
+
+
+def passed_on(point: Point) -> tuple[Point, bool]:
+    """The point as the output really is, and whether it is regulated: never below the input."""
+    if point.vin <= 0:
+        raise ValueError("a boost needs a positive input voltage")
+    return (point, True) if point.vin <= point.vout else (replace(point, vout=point.vin), False)
 
 
 def build(wiring: Wiring) -> LossModel:
@@ -39,55 +52,58 @@ def build(wiring: Wiring) -> LossModel:
 
 
 def _from_efficiency(wiring: Wiring) -> LossModel:
+    others = outsides(wiring, from_rule=False)
+
     def at(point: Point, end: End) -> Loss:
         found = efficiency.at_point(wiring.channel, point, end)
-        if point.vin <= 0:
-            raise ValueError("a boost needs a positive input voltage")
+        point, regulating = passed_on(point)
         iin = boost_input_current(point.vout * point.iout, found, point.vin)
-        parts = efficiency.shares(wiring, end, iin, point.iout)
-        return efficiency.loss_from_efficiency(point, found, point.vin, parts)
+        parts = others.shares(end, iin, point.iout)
+        loss = efficiency.loss_from_efficiency(wiring.channel, point, end, found, point.vin, parts)
+        return loss if regulating else replace(loss, regulating=False)
 
-    table = wiring.channel.efficiency_map
-    knots = {x for x, _, _ in table.points} if table else set()
     return LossModel(
         at,
-        efficiency.evidence(wiring.channel),
-        notes=efficiency.outside_notes(wiring),
+        (*efficiency.evidence(wiring.channel), *others.used),
+        notes=outside_notes(wiring, others, from_rule=False),
         interior=interior_voltages,
-        loads=tuple(sorted({*knots, *Figures(wiring.channel).knots("efficiency")})),
+        loads=efficiency.load_knots(wiring.channel),
         heats=Figures(wiring.channel).has("efficiency_hot_loss"),
     )
 
 
 def _from_terms(wiring: Wiring, figures: Figures) -> LossModel:
+    others = outsides(wiring, from_rule=True)
+
     def at(point: Point, end: End) -> Loss:
         """The input current is the one at which input power is output power and all losses."""
-        if point.vin <= 0:
-            raise ValueError("a boost needs a positive input voltage")
+        point, regulating = passed_on(point)
         iin = point.vout * point.iout / point.vin
         for _ in range(_PASSES):
-            found = _at_current(wiring, figures, point, end, iin)
+            found = _at_current(wiring, figures, others, point, end, iin)
             if abs(found.iin - iin) <= _AGREEMENT * max(iin, 1e-9):
-                return found
+                return found if regulating else replace(found, regulating=False)
             if found.iin > 100 * (point.iout + 1):
                 break
             iin = found.iin
         raise ValueError(f"no input current carries {show(point.iout, 'A')} at {show(point.vin, 'V')} in")
 
-    keys = (*_NEEDED, "low_side_resistance", "diode_drop", "inductor_resistance", "resistance_tempco")
-    used = (*figures.used(*keys), *(e for part in wiring.outside for e in (part.resistance, part.drop) if e))
-    notes = efficiency.outside_notes(wiring)
+    used = tuple(dict.fromkeys((*figures.used(*_NEEDED, "low_side_resistance", "resistance_tempco"), *others.used)))
+    notes = outside_notes(wiring, others, from_rule=True)
     return LossModel(at, used, notes=notes, interior=interior_voltages, heats=figures.has("resistance_tempco"))
 
 
-def _at_current(wiring: Wiring, figures: Figures, point: Point, end: End, iin: float) -> Loss:
+def _at_current(wiring: Wiring, figures: Figures, others: Outsides, point: Point, end: End, iin: float) -> Loss:
     hot = figures.hot(end, point.junction)
     synchronous = figures.has("low_side_resistance")
     drops = [drop for _, _, drop, _ in outside(wiring, "diode") if drop is not None]
     drop = 0.0
     if not synchronous:
-        drop = drops[0].nominal if drops else figures.high("diode_drop", end)
-    duty = terms.boost_duty(point.vin, point.vout, drop)
+        drop = max(high(drop, end) for drop in drops) if drops else figures.high("diode_drop", end)
+    # every loss on the way lengthens the switch's share of the time
+    duty = max(terms.boost_duty(point.vin, point.vout, drop), 1.0 - point.iout / iin if iin > 0 else 0.0)
+    if point.vin >= point.vout:
+        duty = 0.0
     frequency = figures.high("switching_frequency", end)
     rise, fall = figures.high("rise_time", end), figures.high("fall_time", end)
     inside = [
@@ -95,18 +111,14 @@ def _at_current(wiring: Wiring, figures: Figures, point: Point, end: End, iin: f
         ("switching", terms.switching(point.vout, iin, frequency, rise, fall)),
         ("quiescent", point.vin * figures.high("quiescent", end)),
     ]
-    elsewhere = list(efficiency.shares(wiring, end, iin, point.iout).items)
+    elsewhere = others.shares(OPPOSITE[end], iin, point.iout)
     if synchronous:
         rectifier = figures.high("low_side_resistance", end) * hot
         inside.append(("rectifier", terms.conduction(iin, rectifier, 1 - duty)))
-    elif not drops:
-        elsewhere.append(("rectifier", terms.saturation(point.iout, drop)))
-    if figures.has("inductor_resistance"):
-        elsewhere.append(("inductor", terms.conduction(iin, figures.high("inductor_resistance", end))))
     watts = sum(value for _, value in inside)
-    power = point.vout * point.iout + watts + sum(value for _, value in elsewhere)
+    power = point.vout * point.iout + watts + elsewhere.watts
 
     def formula() -> str:
         return " + ".join(f"{name} {show(value, 'W')}" for name, value in inside) + f" at D {duty:.3f}"
 
-    return Loss(watts, power / point.vin, tuple(elsewhere), tuple(inside), formula)
+    return Loss(watts, power / point.vin, elsewhere.items, tuple(inside), formula)

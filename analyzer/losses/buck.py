@@ -3,7 +3,8 @@
 from __future__ import annotations
 
 from analyzer.losses import efficiency, terms
-from analyzer.losses.base import End, Figures, Loss, LossModel, Point, lacking, outside
+from analyzer.losses.base import End, Figures, Loss, LossModel, Point, high, lacking, outside
+from analyzer.losses.elsewhere import OPPOSITE, Outsides, outside_notes, outsides
 from analyzer.rail import Wiring
 from analyzer.wording import show
 
@@ -22,7 +23,6 @@ _KEYS = (
     "boost_current",
     "boost_voltage",
     "diode_drop",
-    "inductor_resistance",
 )
 
 
@@ -61,6 +61,7 @@ def _diodes(wiring: Wiring, figures: Figures) -> bool:
 
 def _from_efficiency(wiring: Wiring) -> LossModel:
     inverts = is_inverting(wiring)
+    others = outsides(wiring, from_rule=False)
 
     def at(point: Point, end: End) -> Loss:
         supply = point.vin - point.vout if inverts else point.vin
@@ -69,16 +70,16 @@ def _from_efficiency(wiring: Wiring) -> LossModel:
             return _below(point, found)
         duty = terms.buck_duty(point.vin, point.vout)
         coil = point.iout / (1 - duty) if inverts else point.iout
-        rectifier = point.iout if inverts else point.iout * (1 - duty)
-        parts = efficiency.shares(wiring, end, coil, rectifier)
-        return efficiency.loss_from_efficiency(point, found, supply, parts)
+        rectifier = point.iout if inverts else point.iout * least_off_time(point.vin, point.vout, found)
+        parts = others.shares(end, coil, rectifier)
+        return efficiency.loss_from_efficiency(wiring.channel, point, end, found, supply, parts)
 
     return LossModel(
         at,
-        efficiency.evidence(wiring.channel),
-        notes=efficiency.outside_notes(wiring),
+        (*efficiency.evidence(wiring.channel), *others.used),
+        notes=outside_notes(wiring, others, from_rule=False),
         interior=interior_voltages,
-        loads=_load_knots(wiring),
+        loads=efficiency.load_knots(wiring.channel),
         heats=Figures(wiring.channel).has("efficiency_hot_loss"),
     )
 
@@ -91,10 +92,15 @@ def _below(point: Point, found: float) -> Loss:
     return Loss(total, iin, formula=lambda: f"{show(power, 'W')} · (1/{found:.3f} − 1)", regulating=False)
 
 
-def _load_knots(wiring: Wiring) -> tuple[float, ...]:
-    table = wiring.channel.efficiency_map
-    mapped = {x for x, _, _ in table.points} if table else set()
-    return tuple(sorted({*mapped, *Figures(wiring.channel).knots("efficiency")}))
+def least_off_time(vin: float, vout: float, efficiency_there: float) -> float:
+    """Smallest fraction of the time in which a buck's rectifier can conduct: 1 − Vout/(η·Vin), at least 0.
+
+    While the switch is on, the input carries the inductor's current, so D ≤ Iin/Iout = Vout/(η·Vin) (charge balance).
+    The ideal duty Vout/Vin would find the rectifier too much of the loss, and the part too little.
+    """
+    if vin <= 0 or not 0 < efficiency_there <= 1:
+        raise ValueError(f"needs Vin > 0 and 0 < η ≤ 1, not {vin:g} and {efficiency_there:g}")
+    return max(0.0, 1.0 - vout / (efficiency_there * vin))
 
 
 def interior_voltages(low: float, high: float, _vout: float, _iout: float) -> tuple[float, ...]:
@@ -109,32 +115,39 @@ def interior_voltages(low: float, high: float, _vout: float, _iout: float) -> tu
 def _from_terms(wiring: Wiring) -> LossModel:
     figures = Figures(wiring.channel)
     inverts = is_inverting(wiring)
+    others = outsides(wiring, from_rule=True)
 
     def at(point: Point, end: End) -> Loss:
-        return _terms_at(wiring, figures, point, end, inverts)
+        return _terms_at(wiring, figures, others, point, end, inverts)
 
     return LossModel(
         at,
-        (*figures.used(*_KEYS), *(e for part in wiring.outside for e in (part.resistance, part.drop) if e)),
-        notes=efficiency.outside_notes(wiring),
+        tuple(dict.fromkeys((*figures.used(*_KEYS), *others.used))),
+        notes=outside_notes(wiring, others, from_rule=True),
         interior=interior_voltages,
         heats=figures.has("resistance_tempco"),
     )
 
 
-def _terms_at(wiring: Wiring, figures: Figures, point: Point, end: End, inverts: bool) -> Loss:
+def _terms_at(wiring: Wiring, figures: Figures, others: Outsides, point: Point, end: End, inverts: bool) -> Loss:
     vin, load = point.vin, point.iout
     hot = figures.hot(end, point.junction)
     synchronous = figures.has("low_side_resistance")
     drop = 0.0 if synchronous else _rectifier_drop(wiring, figures, end)
-    switch_drop = figures.high("saturation_voltage", end, default=0.0)
+    saturation = figures.high("saturation_voltage", end, default=0.0)
+    resistance = figures.high("high_side_resistance", end, default=0.0) * hot
+    switch_drop = saturation
+    if not synchronous:
+        # published sums take the switch's own drop into the duty where a diode rectifies, and leave it out elsewhere
+        ideal = terms.buck_duty(vin, point.vout)
+        switch_drop += resistance * (load / (1 - ideal) if inverts and ideal < 1 else load)
     duty = terms.buck_duty(vin, point.vout, drop, min(switch_drop, vin))
     coil = load / (1 - duty) if inverts and duty < 1 else load
     frequency = figures.high("switching_frequency", end)
     rise, fall = figures.high("rise_time", end), figures.high("fall_time", end)
     found = [
-        ("high side", terms.conduction(coil, figures.high("high_side_resistance", end, default=0.0) * hot, duty)),
-        ("saturation", terms.saturation(coil, switch_drop, duty)),
+        ("high side", terms.conduction(coil, resistance, duty)),
+        ("saturation", terms.saturation(coil, saturation, duty)),
         ("low side", terms.conduction(coil, figures.high("low_side_resistance", end, default=0.0) * hot, 1 - duty)),
         ("switching", terms.switching(vin, coil, frequency, rise, fall)),
         ("quiescent", vin * figures.high("quiescent", end)),
@@ -148,18 +161,14 @@ def _terms_at(wiring: Wiring, figures: Figures, point: Point, end: End, inverts:
     if figures.has("boost_current", "boost_voltage"):
         found.append(("bootstrap", figures.high("boost_current", end) * figures.high("boost_voltage", end)))
     inside = [(name, watts) for name, watts in found if watts]
-    elsewhere = list(efficiency.shares(wiring, End.MILD if end is End.SEVERE else end, coil, coil * (1 - duty)).items)
-    if figures.has("inductor_resistance"):
-        elsewhere.append(("inductor", terms.conduction(coil, figures.high("inductor_resistance", end))))
-    if figures.has("diode_drop") and not synchronous and not outside(wiring, "diode"):
-        elsewhere.append(("rectifier", terms.saturation(coil, drop, 1 - duty)))
+    elsewhere = others.shares(OPPOSITE[end], coil, coil * (1 - duty))
     watts = sum(value for _, value in inside)
     supply = vin - point.vout if inverts else vin
-    power = point.vout * load + watts + sum(value for _, value in elsewhere)
+    power = point.vout * load + watts + elsewhere.watts
     return Loss(
         watts,
         power / supply if supply > 0 else 0.0,
-        tuple(elsewhere),
+        elsewhere.items,
         tuple(inside),
         lambda: " + ".join(f"{name} {show(value, 'W')}" for name, value in inside) + f" at D {duty:.3f}",
         regulating=supply > 0 and (inverts or vin > point.vout),
@@ -169,5 +178,5 @@ def _terms_at(wiring: Wiring, figures: Figures, point: Point, end: End, inverts:
 def _rectifier_drop(wiring: Wiring, figures: Figures, end: End) -> float:
     drops = [drop for _, _, drop, _ in outside(wiring, "diode") if drop is not None]
     if drops:
-        return drops[0].high if end is End.SEVERE else drops[0].nominal
+        return max(high(drop, end) for drop in drops)
     return figures.high("diode_drop", end)

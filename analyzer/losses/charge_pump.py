@@ -31,7 +31,8 @@ def build(wiring: Wiring) -> LossModel:
     if not figures.has("quiescent") and not figures.has("drive_fraction"):
         lacks.append("quiescent current")
     channel = wiring.channel
-    if channel.volts is None and channel.reference is None and not figures.has("output_resistance"):
+    regulates = channel.volts is not None or channel.reference is not None
+    if not regulates and not figures.has("output_resistance"):
         # its no-load output would hide all of its transfer loss
         lacks.append("output resistance (the pump does not regulate)")
     if lacks:
@@ -51,7 +52,7 @@ def build(wiring: Wiring) -> LossModel:
                 f"({gain:g} · {volts(point.vin)} − {volts(vout)}) · {amps(point.iout)}"
                 f" + {volts(point.vin)} · {amps(own)}"
             ),
-            regulating=gain * point.vin >= point.vout,
+            regulating=not regulates or gain * point.vin - sag >= point.vout,
         )
 
     return LossModel(

@@ -60,8 +60,10 @@ def input_current(wiring: Wiring, load: Span) -> Evidence | None:
     vouts = _magnitudes(wiring.vout) if wiring.vout else (0.0, 0.0, 0.0)
     # where the current does not follow from the voltages, an input with ample room stands for an unknown one
     vins = _magnitudes(wiring.vin) if wiring.vin else (vouts[2] + 100.0,) * 3
+    table = wiring.channel.efficiency_map
+    knots = [y for y in sorted({y for _, y, _ in table.points}) if vins[0] < y < vins[2]] if table else []
     try:
-        span = _over_corners(model, vins, vouts, load)
+        span = _over_corners(model, vins, knots, vouts, load)
     except ValueError:
         return None
     source = f"{wiring.part.ref} {wiring.channel.topology} input for {show_span(load, 'A')} of load"
@@ -70,12 +72,17 @@ def input_current(wiring: Wiring, load: Span) -> Evidence | None:
 
 
 def _over_corners(
-    model: LossModel, vins: tuple[float, float, float], vouts: tuple[float, float, float], load: Span
+    model: LossModel,
+    vins: tuple[float, float, float],
+    knots: list[float],
+    vouts: tuple[float, float, float],
+    load: Span,
 ) -> Span:
+    # between two knots of a map, η · Vin and so the current have no extremum
     inside = [x for x in model.loads if load.low < x < load.high]
     found = [
         model.at(Point(vin, vout, iout, HOT_CELSIUS if end is End.SEVERE else 25.0), end).iin
-        for vin in (vins[0], vins[2])
+        for vin in (vins[0], *knots, vins[2])
         for vout in (vouts[0], vouts[2])
         for iout in (load.low, load.high, *inside)
         for end in (End.MILD, End.SEVERE)

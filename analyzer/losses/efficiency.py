@@ -10,13 +10,12 @@ from __future__ import annotations
 
 from bisect import bisect_right
 from collections.abc import Callable
-from dataclasses import dataclass
 
 from analyzer.evidence import Evidence
-from analyzer.losses.base import REFERENCE_CELSIUS, End, Figures, Loss, Point, low, outside
+from analyzer.losses.base import REFERENCE_CELSIUS, End, Figures, Loss, Point, amps, low, volts
+from analyzer.losses.elsewhere import Shares
 from analyzer.part import Channel
 from analyzer.quantity import Span
-from analyzer.rail import Wiring
 from analyzer.rule import EfficiencyMap
 from analyzer.wording import show
 
@@ -50,7 +49,13 @@ def is_given(channel: Channel) -> bool:
 def evidence(channel: Channel) -> tuple[Evidence, ...]:
     """Evidence of the efficiency figures."""
     mapped = (channel.efficiency_map.evidence,) if channel.efficiency_map else ()
-    return (*mapped, *Figures(channel).used(*KEYS))
+    return (*mapped, *Figures(channel).used(*KEYS, "quiescent"))
+
+
+def load_knots(channel: Channel) -> tuple[float, ...]:
+    """Loads [A] at which a map or table of the efficiency has its points."""
+    mapped = {x for x, _, _ in channel.efficiency_map.points} if channel.efficiency_map else set()
+    return tuple(sorted({*mapped, *Figures(channel).knots("efficiency")}))
 
 
 def at_point(channel: Channel, point: Point, end: End) -> float:
@@ -102,67 +107,66 @@ def _between(knots: list[float], x: float) -> tuple[float, float, float]:
     return low_knot, high_knot, 0.0 if high_knot == low_knot else (x - low_knot) / (high_knot - low_knot)
 
 
-@dataclass(frozen=True, slots=True)
-class Shares:
-    """What of the total loss is outside the part: (who, watts) by the current that flows there."""
+def left_inside(total: float, outside_parts: Shares) -> tuple[float, tuple[tuple[str, float], ...]]:
+    """What of a converter's whole loss [W] stays in the part, and what is taken out of it: (who, watts).
 
-    items: tuple[tuple[str, float], ...]
-
-    @property
-    def watts(self) -> float:
-        """Sum of them [W]."""
-        return sum(watts for _, watts in self.items)
-
-
-def shares(wiring: Wiring, end: End, inductor: float, diode: float) -> Shares:
-    """Losses in inductors and external rectifiers whose figures are known.
-
-    Args:
-        wiring: The channel.
-        end: The part keeps most heat when the parts outside take least, so `End.SEVERE` takes their small end.
-        inductor: Current through the inductor [A].
-        diode: Average current through the rectifier [A].
+    The inductor's loss rises with the square of the load, the loss by a given efficiency only with the load itself:
+    from where the inductor would take half of what the rectifier leaves, the part would get cooler with more load.
+    The efficiency was then measured with a better inductor, and no more than that half is taken out.
     """
-    items: list[tuple[str, float]] = []
-    for ref, resistance, _, _ in outside(wiring, "inductor"):
-        if resistance is not None:
-            items.append((ref, inductor * inductor * low(resistance, end)))
-    for ref, _, drop, _ in outside(wiring, "diode"):
-        if drop is not None:
-            items.append((ref, diode * low(drop, end)))
-    return Shares(tuple(items))
+    rest, taken = total, []
+    if outside_parts.diode is not None:
+        who, watts = outside_parts.diode
+        taken.append((who, min(watts, rest)))
+        rest -= taken[-1][1]
+    if outside_parts.inductor is not None:
+        who, watts = outside_parts.inductor
+        taken.insert(0, (who, min(watts, rest / 2)))
+        rest -= taken[0][1]
+    return rest, tuple(taken)
 
 
-def outside_notes(wiring: Wiring) -> tuple[str, ...]:
-    """What is not known of the parts outside, and so is left in the part."""
-    return tuple(
-        f"loss of {part.role} {part.ref} not known: left in the part"
-        for part in wiring.outside
-        if part.role in ("inductor", "diode") and part.resistance is None and part.drop is None
-    )
-
-
-def loss_from_efficiency(point: Point, efficiency: float, supply: float, outside_parts: Shares) -> Loss:
+def loss_from_efficiency(
+    channel: Channel, point: Point, end: End, efficiency: float, supply: float, outside_parts: Shares
+) -> Loss:
     """The losses of a converter known by its efficiency.
 
+    They are never less than what the part takes without a load, Vin · Iq: an efficiency says nothing of an idle board.
+
     Args:
+        channel: For its quiescent current.
         point: Operating point.
+        end: End of the quiescent current's span.
         efficiency: Efficiency there.
         supply: Input voltage against board ground [V], which the input current is counted at.
         outside_parts: Losses outside the part.
+
+    Raises:
+        ValueError: If even at the severe end the rectifier alone makes more than the whole loss.
     """
     power = point.vout * point.iout
+    own = Figures(channel).high("quiescent", end, default=0.0)
+    idle = point.vin * own
     total = total_loss(power, efficiency)
-    inside = max(0.0, total - outside_parts.watts)
+    if end is End.SEVERE and outside_parts.diode is not None and outside_parts.diode[1] > total:
+        who, watts = outside_parts.diode
+        raise ValueError(
+            f"{who} alone loses {show(watts, 'W')}, the efficiency {efficiency:.3f} leaves {show(total, 'W')}"
+        )
+    rest, taken = left_inside(total, outside_parts)
+    inside = max(idle, rest)
 
     def formula() -> str:
-        taken = "".join(f" − {show(watts, 'W')} in {who}" for who, watts in outside_parts.items)
-        return f"{show(power, 'W')} · (1/{efficiency:.3f} − 1){taken}"
+        if inside > rest:
+            return f"{volts(point.vin)} · {amps(own)} without a load"
+        less = "".join(f" − {show(watts, 'W')} in {who}" for who, watts in taken)
+        return f"{show(power, 'W')} · (1/{efficiency:.3f} − 1){less}"
 
-    return Loss(
-        inside,
-        power / efficiency / supply,
-        outside_parts.items,
-        (("converter loss", total), *((f"less {who}", -watts) for who, watts in outside_parts.items)),
-        formula,
-    )
+    terms: tuple[tuple[str, float], ...] = (("quiescent", idle),)
+    if inside == rest:
+        terms = (("converter loss", total), *((f"less {who}", -watts) for who, watts in taken))
+    taken_in = power / efficiency
+    if inside > rest or taken != outside_parts.items:
+        # what was not taken out of the part is lost outside all the same, and comes from the input as well
+        taken_in = power + inside + outside_parts.watts
+    return Loss(inside, taken_in / supply, outside_parts.items, terms, formula)

@@ -5,6 +5,9 @@ from __future__ import annotations
 from analyzer.losses.base import End, Figures, Loss, LossModel, Point, amps, lacking, volts
 from analyzer.rail import Wiring
 
+_JUST_BELOW = 1 - 1e-9
+"""Factor on the voltage at which regulation is lost, so that it is."""
+
 
 def pass_heat(vin: float, vout: float, iout: float, ground: float) -> float:
     """Heat [W] of a linear regulator: (Vin − Vout) · Iout + Vin · Ignd.
@@ -64,9 +67,14 @@ def build(wiring: Wiring) -> LossModel:
             regulating=regulating,
         )
 
+    def interior(least: float, most: float, vout: float, iout: float) -> tuple[float, ...]:
+        # where the ground current jumps, the heat is greatest just as regulation is lost
+        edge = (vout + figures.high("dropout", End.SEVERE, iout, default=0.0)) * _JUST_BELOW
+        return (edge,) if least < edge < most and figures.has("ground_current_dropout") else ()
+
     used = figures.used(key, "dropout", "ground_current_dropout")
     loads = figures.knots(key, "dropout")
-    return LossModel(at, used, loads=loads, iin_needs_voltages=False)
+    return LossModel(at, used, interior=interior, loads=loads, iin_needs_voltages=False)
 
 
 def build_floating(wiring: Wiring) -> LossModel:

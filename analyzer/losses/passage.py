@@ -9,6 +9,7 @@ import math
 
 from analyzer.losses.base import REFERENCE_CELSIUS, End, Figures, Loss, LossModel, Point, amps, lacking, volts
 from analyzer.rail import Wiring
+from analyzer.rule import Topology
 from analyzer.wording import show
 
 
@@ -26,6 +27,7 @@ def build_switch(wiring: Wiring) -> LossModel:
         return build_diode(wiring)
     if not figures.has("on_resistance"):
         return lacking("on-resistance or forward drop")
+    is_pass_element = stands_apart(wiring)
 
     def at(point: Point, end: End) -> Loss:
         resistance = figures.high("on_resistance", end) * figures.hot(end, point.junction)
@@ -33,6 +35,18 @@ def build_switch(wiring: Wiring) -> LossModel:
         own = figures.high("quiescent", end, default=0.0)
         passed = switch_heat(point.iout, resistance, channels)
         shared = f" / {channels:g}" if channels != 1 else ""
+        drop = figures.high("forward_drop", end, point.iout, default=0.0)
+        if is_pass_element:
+            drop = max(drop, point.vin - point.vout)
+        if drop * point.iout > passed:
+            # an ideal diode holds its drop at light load; a pass transistor takes what input and output differ by
+            passed = drop * point.iout
+            return Loss(
+                passed + point.vin * own,
+                point.iout + own,
+                terms=(("drop", passed), ("quiescent", point.vin * own)),
+                formula=lambda: f"{volts(drop)} · {amps(point.iout)} + {volts(point.vin)} · {amps(own)}",
+            )
         return Loss(
             passed + point.vin * own,
             point.iout + own,
@@ -42,13 +56,31 @@ def build_switch(wiring: Wiring) -> LossModel:
             ),
         )
 
-    used = figures.used("on_resistance", "resistance_tempco", "pass_channels", "quiescent")
+    used = figures.used("on_resistance", "resistance_tempco", "pass_channels", "quiescent", "forward_drop")
     notes = () if figures.has("quiescent") else ("quiescent current not given: taken as nothing beside the load",)
-    return LossModel(at, used, notes=notes, iin_needs_voltages=False, heats=figures.has("resistance_tempco"))
+    return LossModel(
+        at,
+        used,
+        notes=notes,
+        loads=figures.knots("forward_drop"),
+        iin_needs_voltages=False,
+        heats=figures.has("resistance_tempco"),
+    )
+
+
+def stands_apart(wiring: Wiring) -> bool:
+    """Whether a series transistor works as a pass element: its output voltage is not its input's at any corner."""
+    if wiring.channel.topology is not Topology.SERIES_TRANSISTOR or wiring.vin is None or wiring.vout is None:
+        return False
+    return not wiring.vin.span.overlaps(wiring.vout.span)
 
 
 def build_diode(wiring: Wiring) -> LossModel:
-    """Model of a series diode: Vf · I. A drop that falls with temperature is not credited above 25 °C."""
+    """Model of a series diode: Vf · I. A drop that falls with temperature is not credited above 25 °C.
+
+    Where another source can feed its output, it may have to block that whole voltage: with a leakage given, the
+    heat of that counts where it is the greater, and may run away.
+    """
     figures = Figures(wiring.channel)
     if not figures.has("forward_drop"):
         return lacking("forward drop")
@@ -57,16 +89,35 @@ def build_diode(wiring: Wiring) -> LossModel:
         tempco = figures.high("forward_drop_tempco", end, default=0.0)
         hot = max(1.0, 1.0 + tempco * (point.junction - REFERENCE_CELSIUS))
         drop = figures.high("forward_drop", end, point.iout) * hot
+        own = figures.high("quiescent", end, default=0.0)
+        found = Loss(
+            drop * point.iout + point.vin * own,
+            point.iout + own,
+            terms=(("forward drop", drop * point.iout), ("quiescent", point.vin * own)),
+            formula=lambda: (
+                f"{volts(drop)} · {amps(point.iout)}" + (f" + {volts(point.vin)} · {amps(own)}" * (own > 0))
+            ),
+        )
+        if not blocks:
+            return found
+        leakage = figures.high("reverse_leakage", end)
+        blocked = leakage_heat(point.vout, leakage, point.junction)
+        if blocked <= found.watts:
+            return found
         return Loss(
-            drop * point.iout,
-            point.iout,
-            terms=(("forward drop", drop * point.iout),),
-            formula=lambda: f"{volts(drop)} · {amps(point.iout)}",
+            blocked,
+            found.iin,
+            terms=(("reverse leakage", blocked),),
+            formula=lambda: (
+                f"{volts(point.vout)} · {amps(leakage)} · 2^(({point.junction:.1f} − 25)/10) while it blocks"
+            ),
         )
 
-    used = figures.used("forward_drop", "forward_drop_tempco")
-    knots = figures.knots("forward_drop")
-    return LossModel(at, used, loads=knots, iin_needs_voltages=False, heats=figures.has("forward_drop_tempco"))
+    blocks = wiring.has_other_feed and figures.has("reverse_leakage")
+    used = figures.used("forward_drop", "forward_drop_tempco", "quiescent", *(["reverse_leakage"] if blocks else []))
+    notes = ("another source can feed its output: leakage is taken to double every 10 K (from memory)",) * blocks
+    heats = blocks or figures.has("forward_drop_tempco")
+    return LossModel(at, used, notes=notes, loads=figures.knots("forward_drop"), iin_needs_voltages=False, heats=heats)
 
 
 def leakage_heat(reverse: float, leakage_cold: float, junction: float, doubling: float = 10.0) -> float:

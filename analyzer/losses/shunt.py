@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from analyzer.losses.base import End, Figures, Loss, LossModel, Point, amps, lacking, low, outside, volts
+from analyzer.losses.base import End, Figures, Loss, LossModel, Point, amps, high, lacking, low, outside, volts
+from analyzer.quantity import Span
 from analyzer.rail import Wiring
 from analyzer.wording import show
 
@@ -33,26 +34,36 @@ def resistor_heat(vin: float, vout: float, resistance: float) -> float:
 def build(wiring: Wiring) -> LossModel:
     """Model of a shunt element with its series resistor."""
     figures = Figures(wiring.channel)
-    resistors = [(ref, r, found) for ref, r, _, found in outside(wiring, "resistor") if r is not None]
-    if not resistors:
+    resistors = [(ref, r, found) for ref, r, _, found in outside(wiring, "resistor")]
+    known = [r for _, r, _ in resistors if r is not None]
+    if not known or len(known) < len(resistors):
         return lacking("series resistor of the shunt regulator")
-    ref, resistance, evidence = resistors[0]
+    ref = ", ".join(ref for ref, _, _ in resistors)
+    evidence = tuple(one for _, _, found in resistors for one in found)
+    resistance = Span(*(1 / sum(1 / value for value in ends) for ends in zip(*(r.corners for r in known), strict=True)))
 
     def at(point: Point, end: End) -> Loss:
         ohms = low(resistance, end)
         watts = shunt_heat(point.vin, point.vout, ohms, point.iout)
         supplied = max(0.0, (point.vin - point.vout) / ohms)
         least = figures.high("minimum_cathode_current", end, default=0.0)
+        # what heats most, a small resistor, is not what starves the element: a large one
+        spare = min(supplied, max(0.0, (point.vin - point.vout) / high(resistance, end)))
         return Loss(
             watts,
-            max(supplied, 0.0),
+            supplied,
             ((ref, resistor_heat(point.vin, point.vout, ohms)),),
             (("shunt current", watts),),
             lambda: (
                 f"{volts(point.vout)} · (({volts(point.vin)} − {volts(point.vout)}) / {show(ohms, 'Ω')}"
                 f" − {amps(point.iout)})"
             ),
-            regulating=supplied >= point.iout + least,
+            regulating=spare >= point.iout + least,
         )
 
-    return LossModel(at, (*evidence, *figures.used("minimum_cathode_current")))
+    def interior_outputs(least: float, most: float, vin: float, iout: float) -> tuple[float, ...]:
+        """Vz · ((Vin − Vz)/R − I) is greatest at Vz = (Vin − I · R)/2."""
+        peak = (vin - iout * resistance.low) / 2
+        return (peak,) if least < peak < most else ()
+
+    return LossModel(at, (*evidence, *figures.used("minimum_cathode_current")), interior_outputs=interior_outputs)

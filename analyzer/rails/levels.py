@@ -67,6 +67,10 @@ class Levels:
         """Links of the group of a net."""
         return self._links.get(self.power.mesh.groups.of(net), [])
 
+    def feeds_of(self, group: str) -> tuple[Edge, ...]:
+        """What feeds a group."""
+        return tuple(self._incoming.get(group, ()))
+
     def why(self, group: str) -> str:
         """Why a group's voltage is not known."""
         return self._why.get(group, "nothing states its voltage")

@@ -42,6 +42,7 @@ def wiring(
         is_off=one.is_off,
         through=through,
         outside=one.outside,
+        has_other_feed=any(edge.ref != one.part.ref for edge in levels.feeds_of(output_group or "")),
         why_open=tuple(dict.fromkeys((*one.trouble, *why_in, *why_out))),
     )
 

@@ -37,7 +37,7 @@ ASKED: Mapping[Topology, tuple[str, ...]] = {
     Topology.INVERTING: (*_SWITCHING, *_RATINGS),
     Topology.MODULE: ("output_tolerance", "reference", "efficiency", *_RATINGS),
     Topology.CONTROLLER: ("reference", "quiescent", "efficiency", "switching_frequency", "gate_charge", "gate_voltage"),
-    Topology.CHARGE_PUMP: ("output_tolerance", "gain", "quiescent", "efficiency", *_RATINGS),
+    Topology.CHARGE_PUMP: ("output_tolerance", "gain", "quiescent", "output_resistance", *_RATINGS),
     Topology.CHARGER: ("charge_current", "charge_gain", "battery_low", "quiescent", *_RATINGS),
     Topology.SHUNT: ("output_tolerance", "reference", "minimum_cathode_current", "junction_max", "power_max"),
 }

@@ -3,18 +3,18 @@
 from __future__ import annotations
 
 import random
-from collections.abc import Callable, Iterator
+from collections.abc import Iterator
 
 import pytest
 from losses_kit import curve, efficiency_map, evidence, model, wiring
 
 from analyzer.heat.case import Case, ChannelCase, worst
 from analyzer.heat.path.base import all_air
-from analyzer.losses.base import End, LossModel, Point
+from analyzer.losses.base import End, Loss, LossModel, Point
 from analyzer.losses.dispatch import MODELS, input_current, model_of
 from analyzer.quantity import Span
 from analyzer.rail import Outside
-from analyzer.rule import PASSAGES, Topology
+from analyzer.rule import PASSAGES, SWITCHERS, Topology
 
 ENTRIES = 2000
 """Random entries a topology."""
@@ -44,7 +44,8 @@ def figures_of(topology: Topology, pick: Pick) -> Figures:
     """Random figures with which a channel of this topology can be worked out."""
     match topology:
         case Topology.LINEAR:
-            return {"ground_current": span(pick, 1e-5, 5e-3), "dropout": span(pick, 0.05, 1.5)}
+            jump: Figures = {"ground_current_dropout": span(pick, 5e-3, 0.2)} if pick.random() < 0.5 else {}
+            return {"ground_current": span(pick, 1e-5, 5e-3), "dropout": span(pick, 0.05, 1.5), **jump}
         case Topology.LINEAR_FLOATING:
             return {"dropout": span(pick, 0.5, 2.0), "feedback_current": span(pick, 1e-5, 1e-4)}
         case Topology.LINEAR_TWO_SUPPLY:
@@ -54,7 +55,12 @@ def figures_of(topology: Topology, pick: Pick) -> Figures:
         case Topology.CHARGE_PUMP:
             return {"gain": 1.0, "quiescent": span(pick, 1e-4, 3e-3), "output_resistance": span(pick, 5, 60)}
         case Topology.CONTROLLER:
-            return {"efficiency": span(pick, 0.7, 0.95), "quiescent": span(pick, 1e-3, 5e-3)}
+            return {
+                "efficiency": span(pick, 0.7, 0.95),
+                "quiescent": span(pick, 1e-3, 5e-3),
+                "gate_charge": span(pick, 1e-8, 1e-7),
+                "switching_frequency": span(pick, 1e5, 1e6),
+            }
         case Topology.SHUNT:
             return {"minimum_cathode_current": span(pick, 1e-4, 1e-3)}
         case Topology.CHARGER:
@@ -62,7 +68,8 @@ def figures_of(topology: Topology, pick: Pick) -> Figures:
         case Topology.SERIES_DIODE:
             return {"forward_drop": span(pick, 0.2, 1.0)}
         case Topology.BUCK_BOOST | Topology.INVERTING | Topology.MODULE:
-            return {"efficiency": span(pick, 0.6, 0.97)}
+            own: Figures = {"quiescent": span(pick, 1e-5, 5e-3)} if pick.random() < 0.5 else {}
+            return {"efficiency": span(pick, 0.6, 0.97), **own}
     return {"on_resistance": span(pick, 0.005, 0.3), "quiescent": span(pick, 1e-6, 1e-3)}
 
 
@@ -70,6 +77,9 @@ def made(topology: Topology, pick: Pick) -> LossModel:
     outside: tuple[Outside, ...] = ()
     if topology is Topology.SHUNT:
         outside = (Outside("R1", "resistor", evidence(span(pick, 100, 5000), "Ω")),)
+    if topology in SWITCHERS and pick.random() < 0.5:
+        coil = Outside("L1", "inductor", evidence(span(pick, 0.005, 0.1), "Ω"))
+        outside = (coil, Outside("D1", "diode", drop=evidence(span(pick, 0.2, 0.6), "V")))
     figures = figures_of(topology, pick)
     return model(topology, figures, vcontrol=span(pick, 10.5, 13.0), outside=outside)
 
@@ -83,6 +93,11 @@ def volts(topology: Topology, pick: Pick) -> tuple[Span, Span]:
             return span(pick, 4.4, 6.0), span(pick, 3.0, 4.2)
         case Topology.CHARGE_PUMP:
             return span(pick, 3.0, 5.5), span(pick, 1.0, 5.0)
+        case Topology.SHUNT:
+            return span(pick, 6.0, 14.0), span(pick, 1.0, 5.5)
+        case Topology.LINEAR:
+            # down to where some of them lose regulation
+            return span(pick, 5.0, 10.0), span(pick, 1.0, 5.0)
     if topology in PASSAGES:
         vin = span(pick, 3.0, 24.0)
         return vin, vin
@@ -95,7 +110,8 @@ def entries(topology: Topology) -> Iterator[tuple[Pick, LossModel, Span, Span, S
         found = made(topology, pick)
         assert found.missing == ()
         vin, vout = volts(topology, pick)
-        load = found.own_load.span if found.own_load else span(pick, 0.0, 1.0)
+        most = {Topology.SHUNT: 0.02, Topology.BOOST: 0.25}.get(topology, 1.0)
+        load = found.own_load.span if found.own_load else span(pick, 0.0, most)
         yield pick, found, vin, vout, load
 
 
@@ -114,6 +130,7 @@ def inside(pick: Pick, s: Span) -> float:
 
 @pytest.mark.parametrize("topology", list(MODELS))
 def test_no_sampled_point_is_hotter_than_the_worst_corner(topology: Topology) -> None:
+    tried = 0
     for pick, found, vin, vout, load in entries(topology):
         try:
             limit = hottest(topology, found, vin, vout, load)
@@ -125,8 +142,9 @@ def test_no_sampled_point_is_hotter_than_the_worst_corner(topology: Topology) ->
                 watts = max(found.at(point, end).watts for end in End)
             except ValueError:
                 continue
-            # between the grid points of a search inside the input span a smooth curve may rise a little
-            assert watts <= limit * (1 + 2e-3) + 1e-9, (vin, vout, load, point)
+            tried += 1
+            assert watts <= limit * (1 + 1e-6) + 1e-9, (vin, vout, load, point)
+    assert tried > 2 * ENTRIES
 
 
 GETS_COOLER = {Topology.SHUNT, Topology.CHARGER}
@@ -160,34 +178,44 @@ def test_a_wider_span_never_makes_a_cooler_worst_case(topology: Topology) -> Non
         assert wide >= point * (1 - 2e-3) - 1e-12
 
 
-BALANCES: dict[Topology, Callable[[Point, float], float]] = {
-    # power handed on to the output, by what the model calls its output
-    **dict.fromkeys(
-        (Topology.BUCK, Topology.BUCK_BOOST, Topology.INVERTING, Topology.MODULE), lambda p, _: p.vout * p.iout
-    ),
-    Topology.BOOST: lambda p, _: p.vout * p.iout,
-    Topology.CONTROLLER: lambda p, _: p.vout * p.iout,
-    Topology.LINEAR: lambda p, _: p.vout * p.iout,
-    Topology.LINEAR_FLOATING: lambda p, _: p.vout * p.iout,
-    **dict.fromkeys(PASSAGES, lambda p, watts: p.vin * p.iout - watts),
-}
-"""Not here: two-supply parts (two inputs), shunts and chargers (their output power is not the point's), pumps."""
+def handed_on(topology: Topology, point: Point, loss: Loss) -> float:
+    """Power [W] that a channel hands on, worked out from the circuit and not from its losses."""
+    parts = dict(loss.terms)
+    match topology:
+        case Topology.CHARGE_PUMP:
+            # what the transfer leaves of n · Vin, here n = 1
+            return point.vin * point.iout - parts["transfer"]
+        case Topology.CHARGER:
+            return point.vin * point.iout - parts["charging"]
+    if topology in PASSAGES:
+        return point.vin * point.iout - sum(watts for name, watts in parts.items() if name != "quiescent")
+    return point.vout * point.iout
 
 
-@pytest.mark.parametrize("topology", list(BALANCES))
+@pytest.mark.parametrize("topology", [one for one in MODELS if one is not Topology.LINEAR_TWO_SUPPLY])
 def test_what_goes_in_comes_out_or_turns_to_heat(topology: Topology) -> None:
+    tried = 0
     for _, found, vin, vout, load in entries(topology):
-        point = Point(vin.high, vout.low, load.high)
-        try:
-            loss = found.at(point, End.NOMINAL)
-        except ValueError:
-            continue
-        if not loss.regulating:
-            continue
-        own = sum(watts for name, watts in loss.terms if name == "quiescent") if topology in PASSAGES else 0.0
-        out = BALANCES[topology](point, loss.watts - own)
-        given = point.vin * loss.iin
-        assert given == pytest.approx(out + loss.watts + sum(watts for _, watts in loss.elsewhere), rel=1e-9)
+        for end in End:
+            point = Point(vin.high, vout.low, load.high)
+            try:
+                loss = found.at(point, end)
+            except ValueError:
+                continue
+            if not loss.regulating:
+                continue
+            tried += 1
+            out = handed_on(topology, point, loss)
+            given = point.vin * loss.iin
+            assert given == pytest.approx(out + loss.watts + sum(watts for _, watts in loss.elsewhere), rel=1e-9)
+    assert tried > (100 if topology is Topology.SHUNT else ENTRIES)
+
+
+def test_both_supplies_of_a_two_supply_part_feed_its_output() -> None:
+    # 1.8 V and 3.3 V into 1.2 V, 1 A and 20 mA: the control current goes to the output as well
+    part = model(Topology.LINEAR_TWO_SUPPLY, {"control_ratio": 50.0}, vcontrol=3.3)
+    found = part.at(Point(1.8, 1.2, 1.0), End.SEVERE)
+    assert found.watts + 1.2 * (1.0 + 0.02) == pytest.approx(1.8 * found.iin + 3.3 * 0.02)
 
 
 @pytest.mark.parametrize("topology", list(MODELS))
@@ -210,7 +238,7 @@ def test_each_figure_left_out_is_missed(topology: Topology) -> None:
         Topology.LINEAR: {"ground_current"},
         Topology.LINEAR_TWO_SUPPLY: {"control_ratio"},
         Topology.CHARGE_PUMP: {"gain", "quiescent", "output_resistance"},
-        Topology.CONTROLLER: {"efficiency", "quiescent"},
+        Topology.CONTROLLER: {"efficiency", "quiescent", "gate_charge", "switching_frequency"},
         Topology.CHARGER: {"charge_current", "battery_low"},
         Topology.SERIES_DIODE: {"forward_drop"},
     }
@@ -261,9 +289,10 @@ def test_losses_outside_are_taken_out_of_the_part_at_their_least() -> None:
     diode = Outside("D1", "diode", drop=evidence(Span(0.3, 0.4, 0.5), "V"))
     buck = model(Topology.BUCK, {"efficiency": 0.8}, outside=(coil, diode))
     found = buck.at(Point(10.0, 5.0, 1.0), End.SEVERE)
-    # total 5 · (1/0.8 − 1) = 1.25 W; L1 1² · 0.04 W; D1 half the time 0.3 V · 0.5 A
-    assert dict(found.elsewhere) == pytest.approx({"L1": 0.04, "D1": 0.15})
-    assert found.watts == pytest.approx(1.25 - 0.04 - 0.15)
+    # total 5 · (1/0.8 − 1) = 1.25 W; L1 1² · 0.04 W; the input's 0.625 A are the coil's 1 A for at most 0.625 of the
+    # time, so D1 has 0.3 V · 1 A for 0.375 of it at least
+    assert dict(found.elsewhere) == pytest.approx({"L1": 0.04, "D1": 0.1125})
+    assert found.watts == pytest.approx(1.25 - 0.04 - 0.1125)
     unknown = model(Topology.BUCK, {"efficiency": 0.8}, outside=(Outside("L1", "inductor"),))
     assert unknown.at(Point(10.0, 5.0, 1.0), End.SEVERE).watts == pytest.approx(1.25)
     assert unknown.notes == ("loss of inductor L1 not known: left in the part",)
