@@ -92,8 +92,10 @@ def close(circuit: Circuit, rulebook: Rulebook, settings: Settings, chance_seed:
     from analyzer.draws import find_loads
     from analyzer.rails import find_rails
     from analyzer.recognise import recognise
+    from analyzer.settings_unused import unused_statements
 
     parts, recognition = recognise(circuit, rulebook, settings)
+    recognition = (*recognition, *unused_statements(circuit, parts, settings))
     rails = find_rails(circuit, parts, rulebook, settings)
     loads = find_loads(circuit, parts, rails, settings, rulebook)
     return _budget(circuit, parts, rails, loads, rulebook, settings, recognition, chance_seed)

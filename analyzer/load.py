@@ -2,12 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 
 from analyzer.evidence import Evidence
 from analyzer.findings.base import Finding
-from analyzer.quantity import ZERO, Span
+from analyzer.quantity import ZERO, Span, total
 
 
 @dataclass(frozen=True, slots=True)
@@ -42,6 +42,27 @@ class Draw:
     amps: Evidence
     kind: str
     pulse: Pulse | None = None
+
+
+def joined_pulse(draws: Iterable[Draw]) -> Pulse | None:
+    """The draws of one rail as one pulse: all peaks together, for the longest of their times; None if all are steady.
+
+    That they meet is the worst case, as nothing is known of their phases.
+    """
+    steady: list[Span] = []
+    pulses: list[Pulse] = []
+    for draw in draws:
+        if draw.pulse:
+            pulses.append(draw.pulse)
+        else:
+            steady.append(draw.amps.span)
+    if not pulses:
+        return None
+    on = max(pulse.on_seconds for pulse in pulses)
+    period = min((pulse.period_seconds for pulse in pulses if pulse.period_seconds), default=None)
+    peak = total([*steady, *(pulse.peak for pulse in pulses)])
+    rest = total([*steady, *(pulse.rest for pulse in pulses)])
+    return Pulse(peak, on, period if period is None else max(period, on), rest)
 
 
 @dataclass(frozen=True, slots=True)

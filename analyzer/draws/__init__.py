@@ -69,6 +69,8 @@ def find_loads(
     gaps = [one for one in missing if (one.key, one.rail) not in known and one.key not in filtering]
     gaps += _unstated((consumer for consumer in consumers if consumer.is_sure), known)
     gaps += lost
+    waiting = {(one.key, one.rail) for one in gaps}
+    gaps += [one for one in stated.gaps if (one.key, one.rail) not in waiting]
     possible = _unstated((consumer for consumer in consumers if not consumer.is_sure), known)
     gaps += _silent_rails(board, draws, gaps, edges, possible)
     waiting = {(one.key, one.rail) for one in gaps}

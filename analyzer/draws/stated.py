@@ -2,6 +2,9 @@
 
 Fields are read by their exact names (`I_load`, or `I_load@RAIL` for parts on several rails); a field such as
 "Current" is a rating on every board ever seen and is never read.
+
+A statement that cannot be used is never just dropped: it leaves a gap on every rail of its part that nothing else
+was stated for, and where it names no part or no rail of this board, its finding keeps every budget open.
 """
 
 from __future__ import annotations
@@ -12,11 +15,12 @@ from dataclasses import dataclass, replace
 from analyzer.circuit import Component, natural_key
 from analyzer.draws.board import Board
 from analyzer.draws.consumers import Consumer
+from analyzer.draws.resistors import gap
 from analyzer.evidence import Evidence, Grade
 from analyzer.findings import currents as kinds
-from analyzer.findings.base import Finding
+from analyzer.findings.base import Finding, FindingKind
 from analyzer.grammar import parse, parse_load
-from analyzer.load import Draw, Pulse
+from analyzer.load import Draw, Gap, Pulse, joined_pulse
 from analyzer.quantity import Dimension, Span
 from analyzer.settings import Settings, StatedDraw
 from analyzer.wording import show, show_span
@@ -27,9 +31,10 @@ _BLANK = frozenset({"", "~", "-"})
 
 @dataclass(frozen=True)
 class Stated:
-    """What the statements gave: draws, one for each (part, rail), and findings."""
+    """What the statements gave: draws, one for each (part, rail), gaps of statements that were lost, and findings."""
 
     draws: tuple[Draw, ...]
+    gaps: tuple[Gap, ...]
     findings: tuple[Finding, ...]
 
 
@@ -40,13 +45,14 @@ def stated_draws(board: Board, consumers: Iterable[Consumer], settings: Settings
         reader.settle(statement, from_field=False)
     for component in board.circuit.components:
         if component.fitted:
-            for statement in _fields(component, settings.draw_fields, reader.findings):
+            for statement in _fields(component, settings.draw_fields, reader):
                 reader.settle(statement, from_field=True)
+    gaps = tuple(reader.gaps())
     found = sorted(reader.draws.values(), key=lambda draw: (natural_key(draw.ref), natural_key(draw.rail), draw.key))
-    return Stated(tuple(found), tuple(reader.findings))
+    return Stated(tuple(found), gaps, tuple(reader.findings))
 
 
-def _fields(component: Component, names: tuple[str, ...], findings: list[Finding]) -> Iterable[StatedDraw]:
+def _fields(component: Component, names: tuple[str, ...], reader: _Reader) -> Iterable[StatedDraw]:
     wanted = {name.casefold() for name in names}
     for name, text in component.fields.items():
         head, _, rail = name.partition("@")
@@ -57,11 +63,11 @@ def _fields(component: Component, names: tuple[str, ...], findings: list[Finding
             amps, watts, pulse = _load(text)
         except ValueError as error:
             message = f"{component.ref} field {name}: {error}"
-            findings.append(kinds.DRAW_NOT_UNDERSTOOD.found(component.ref, message, source, key=component.key))
+            reader.lose(kinds.DRAW_NOT_UNDERSTOOD, component.ref, message, source, component)
             continue
         if min(span.low for span in (amps, watts, pulse.peak if pulse else None) if span) < 0:
             message = f"{component.ref} field {name} states {text.strip()}"
-            findings.append(kinds.DRAW_NEGATIVE.found(component.ref, message, source, key=component.key))
+            reader.lose(kinds.DRAW_NEGATIVE, component.ref, message, source, component)
             continue
         current = Evidence("load current", amps, "A", source, Grade.STATED) if amps else None
         power = Evidence("power of the load", watts, "W", source, Grade.STATED) if watts else None
@@ -80,12 +86,25 @@ def _load(text: str) -> tuple[Span | None, Span | None, Pulse | None]:
             raise no_current from None
 
 
+@dataclass(frozen=True, slots=True)
+class _Lost:
+    """A statement that cannot be used, and what is known of whose it is."""
+
+    kind: FindingKind
+    subject: str
+    message: str
+    where: str
+    component: Component | None
+    rail: str
+
+
 class _Reader:
     """Settles statements one by one: whose they are, on which rail, and which of two wins."""
 
     def __init__(self, board: Board, consumers: Iterable[Consumer]) -> None:
         self.draws: dict[tuple[str, str], Draw] = {}
         self.findings: list[Finding] = []
+        self._lost: list[_Lost] = []
         self._origin: dict[tuple[str, str], tuple[bool, str]] = {}
         self._board = board
         self._rails: dict[str, list[str]] = {}
@@ -101,13 +120,17 @@ class _Reader:
         component: Component | None = None
         if statement.ref:
             component = self._component(statement)
-            if component is None or not component.fitted:
+            if component is None:
+                return
+            if not component.fitted:
+                message = f"{_told(statement)} for {component.ref}, which is not fitted"
+                self._report(
+                    kinds.DRAW_FOR_UNFITTED_PART.found(statement.ref, message, _where(statement), key=component.key)
+                )
                 return
             if component.key in self._board.regulators:
                 message = f"{_told(statement)} for {component.ref}, which is a regulator or passage"
-                self._report(
-                    kinds.DRAW_ON_REGULATOR.found(statement.ref, message, _where(statement), key=component.key)
-                )
+                self.lose(kinds.DRAW_ON_REGULATOR, statement.ref, message, _where(statement), component)
                 return
         rail = self._rail(statement, component)
         draw = self._draw(statement, component, rail) if rail else None
@@ -123,10 +146,10 @@ class _Reader:
             return candidates[0]
         if candidates:
             message = f"{_told(statement)} for {statement.ref}, but {len(candidates)} parts have this reference"
-            self._report(kinds.DRAW_FOR_DOUBLED_REFERENCE.found(statement.ref, message, where))
+            self.lose(kinds.DRAW_FOR_DOUBLED_REFERENCE, statement.ref, message, where, None)
         else:
             message = f"{_told(statement)} for {statement.ref}, but there is no such part"
-            self._report(kinds.DRAW_FOR_UNKNOWN_PART.found(statement.ref, message, where))
+            self.lose(kinds.DRAW_FOR_UNKNOWN_PART, statement.ref, message, where, None)
         return None
 
     def _rail(self, statement: StatedDraw, component: Component | None) -> str | None:
@@ -136,7 +159,8 @@ class _Reader:
             if rail is None:
                 subject = statement.ref or statement.rail
                 message = f"{_told(statement)} on {statement.rail}, but there is no such rail"
-                self._report(kinds.DRAW_ON_UNKNOWN_RAIL.found(subject, message, where))
+                # a part's current may be stated on a rail that it has no pin on, so the part does not tell which
+                self.lose(kinds.DRAW_ON_UNKNOWN_RAIL, subject, message, where, None)
             elif component and rail not in self._all_rails(component):
                 message = f"{_told(statement)} for {component.ref} on {rail}, but no pin of it is on this rail"
                 self._report(kinds.DRAW_OFF_ITS_RAIL.found(component.ref, message, where, key=component.key))
@@ -148,7 +172,7 @@ class _Reader:
             return rails[0]
         on = f"is supplied from {', '.join(rails)}" if rails else "is on no rail that was found"
         message = f"{_told(statement)} for {component.ref}, which {on}"
-        self._report(kinds.DRAW_WITHOUT_RAIL.found(component.ref, message, where, key=component.key))
+        self.lose(kinds.DRAW_WITHOUT_RAIL, component.ref, message, where, component)
         return None
 
     def _all_rails(self, component: Component) -> set[str]:
@@ -173,7 +197,7 @@ class _Reader:
         if volts is None or volts.span.low <= 0 <= volts.span.high:
             subject = statement.ref or rail
             message = f"{_told(statement)} on {rail}, whose voltage is not known"
-            self._report(kinds.DRAW_POWER_WITHOUT_VOLTAGE.found(subject, message, _where(statement), key=key))
+            self.lose(kinds.DRAW_POWER_WITHOUT_VOLTAGE, subject, message, _where(statement), component, rail)
             return None
         return Draw(statement.ref, key, rail, _amps(statement.watts, volts), "stated")
 
@@ -192,7 +216,7 @@ class _Reader:
             if named and was_named and named != was_named:
                 self.draws[place] = _both(before, draw)  # two nets of one rail, each with a current
                 return
-            self.draws[place] = draw if draw.amps.span.high > before.amps.span.high else before
+            self.draws[place] = _greater(before, draw)
         # else the settings, read first, win over the drawing
         kept = self.draws[place]
         message = (
@@ -200,6 +224,40 @@ class _Reader:
             f"{show_span(draw.amps.span, 'A')} ({draw.amps.source}); {show_span(kept.amps.span, 'A')} is used"
         )
         self._report(kinds.DRAW_STATED_TWICE.found(draw.ref or draw.rail, message, draw.amps.source, key=draw.key))
+
+    def lose(
+        self, kind: FindingKind, subject: str, message: str, where: str, component: Component | None, rail: str = ""
+    ) -> None:
+        """Report a statement that cannot be used, and remember whose load it leaves unknown.
+
+        `component` is None where it is not known which part is meant; `rail` is given where only the rail is known.
+        """
+        self._lost.append(_Lost(kind, subject, message, where, component, rail))
+
+    def gaps(self) -> Iterable[Gap]:
+        """What the lost statements leave unknown, once everything is settled; reports them too.
+
+        A part's lost current belongs to those of its rails that nothing else was stated for. If there are none, or no
+        part is known, the finding carries no identity and so holds every budget (`analyzer.findings.statements`).
+        """
+        for lost in self._lost:
+            rails = [lost.rail] if lost.rail else self._waiting(lost.component)
+            key = lost.component.key if lost.component else ""
+            held = key if rails else ""
+            self._report(lost.kind.found(lost.subject, lost.message, lost.where, key=held))
+            why = f"its stated current cannot be used ({lost.kind.name})"
+            for rail in rails:
+                if lost.component:
+                    yield gap(lost.component, rail, why)
+                else:
+                    yield Gap(f"@{rail}", f"@{lost.where}", rail, "off-board", "", why)
+
+    def _waiting(self, component: Component | None) -> list[str]:
+        if component is None:
+            return []
+        wirings = [w for w in self._board.rails.wirings if w.part.key == component.key]
+        rails = {w.output_rail for w in wirings if w.output_rail} if wirings else self._all_rails(component)
+        return sorted((rail for rail in rails if (component.key, rail) not in self.draws), key=natural_key)
 
     def _report(self, finding: Finding) -> None:
         self.findings.append(finding)
@@ -214,6 +272,15 @@ def _amps(watts: Evidence, volts: Evidence) -> Evidence:
     return Evidence("load current", span, "A", watts.source, Grade.STATED, formula, (watts, volts))
 
 
+def _greater(one: Draw, other: Draw) -> Draw:
+    """Of two statements that contradict each other, the heavier; a pulse counts as steady at its peak."""
+    steady = [
+        replace(draw, amps=replace(draw.amps, span=draw.pulse.peak), pulse=None) if draw.pulse else draw
+        for draw in (one, other)
+    ]
+    return max(steady, key=lambda draw: draw.amps.span.high)
+
+
 def _both(one: Draw, other: Draw) -> Draw:
     """Two stated currents of one part on one rail as one."""
     amps = Evidence(
@@ -225,7 +292,7 @@ def _both(one: Draw, other: Draw) -> Draw:
         f"I = {show(one.amps.span.nominal, 'A')} + {show(other.amps.span.nominal, 'A')}",
         (one.amps, other.amps),
     )
-    return replace(one, amps=amps, pulse=one.pulse or other.pulse)
+    return replace(one, amps=amps, pulse=joined_pulse((one, other)))
 
 
 def _where(statement: StatedDraw) -> str:

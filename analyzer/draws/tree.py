@@ -17,7 +17,7 @@ from analyzer.circuit import Component, natural_key
 from analyzer.evidence import Evidence
 from analyzer.findings import currents as kinds
 from analyzer.findings.base import Finding
-from analyzer.load import Draw, Gap, Pulse, RailLoad
+from analyzer.load import Draw, Gap, Pulse, RailLoad, joined_pulse
 from analyzer.quantity import ZERO, Span, total
 
 
@@ -95,13 +95,16 @@ def _add(here: _Rail, edge: Edge, solved: Mapping[str, RailLoad], taken: dict[tu
     if amps is None:
         _miss(here, edge, "what it takes from its input cannot be computed")
         return
-    if below.is_complete:
+    is_known, pulse = _pulse(edge, below)
+    if not is_known:
+        _miss(here, edge, f"what it takes while {edge.below} is pulsed cannot be computed")
+    elif below.is_complete:
         taken[component.key, edge.channel] = amps
     else:
         _miss(here, edge, f"{edge.below} has gaps")
         if amps.span.high == 0:
             return  # nothing known yet is no draw of nothing
-    here.draws.append(Draw(component.ref, component.key, edge.above, amps, "regulator", _pulse(edge, below)))
+    here.draws.append(Draw(component.ref, component.key, edge.above, amps, "regulator", pulse))
 
 
 def _miss(here: _Rail, edge: Edge, why: str) -> None:
@@ -110,19 +113,16 @@ def _miss(here: _Rail, edge: Edge, why: str) -> None:
     here.gaps.setdefault(part.key, Gap(part.ref, part.key, edge.above, part.value, part.place.sheet, why, follows=True))
 
 
-def _pulse(edge: Edge, below: RailLoad) -> Pulse | None:
-    """How pulses of the rail below show above: all peaks together, for the longest of their times."""
-    pulses = [draw.pulse for draw in below.draws if draw.pulse]
-    if not pulses:
-        return None
-    steady = total([draw.amps.span for draw in below.draws if not draw.pulse])
-    peak = edge.takes(total([steady, *(pulse.peak for pulse in pulses)]).scaled(edge.share))
-    rest = edge.takes(total([steady, *(pulse.rest for pulse in pulses)]).scaled(edge.share))
+def _pulse(edge: Edge, below: RailLoad) -> tuple[bool, Pulse | None]:
+    """Whether it is known how pulses of the rail below show above, and how they do: None if there are none."""
+    pulse = joined_pulse(below.draws)
+    if pulse is None:
+        return True, None
+    peak = edge.takes(pulse.peak.scaled(edge.share))
+    rest = edge.takes(pulse.rest.scaled(edge.share))
     if peak is None or rest is None:
-        return None
-    on = max(pulse.on_seconds for pulse in pulses)
-    period = min((pulse.period_seconds for pulse in pulses if pulse.period_seconds), default=None)
-    return Pulse(peak.span, on, period if period is None else max(period, on), rest.span)
+        return False, None
+    return True, Pulse(peak.span, pulse.on_seconds, pulse.period_seconds, rest.span)
 
 
 def _load(rail: str, here: _Rail) -> RailLoad:

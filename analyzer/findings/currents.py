@@ -28,6 +28,12 @@ DRAW_FOR_DOUBLED_REFERENCE = FindingKind(
     "A current is stated for a reference that more than one part has.",
     "Number the parts again, then state the current for each.",
 )
+DRAW_FOR_UNFITTED_PART = FindingKind(
+    "draw-for-unfitted-part",
+    Weight.NOTE,
+    "A current is stated for a part that is not fitted. It is not counted.",
+    "Nothing, if the part stays off the board; else mark it as fitted.",
+)
 DRAW_WITHOUT_RAIL = FindingKind(
     "draw-without-rail",
     Weight.OPEN,

@@ -9,6 +9,7 @@ from types import MappingProxyType
 from analyzer.circuit import Circuit
 from analyzer.evidence import Evidence, Grade
 from analyzer.findings.base import Finding, Weight
+from analyzer.findings.statements import may_be_anyones
 from analyzer.heat.altitude import EXPONENTS, HIGHEST, multiplier
 from analyzer.heat.case import Case, ChannelCase
 from analyzer.heat.limits import Limits, limits_of
@@ -38,7 +39,7 @@ class Draft:
         missing: What is missing, one line each.
         evidence: Every number used.
         notes: Assumptions of the loss models.
-        is_complete: False when a load is only a lower bound.
+        is_complete: False when a load is only a lower bound, or anything else its heat rests on is in doubt.
     """
 
     part: Part
@@ -82,7 +83,7 @@ def draft(
         missing += lacks
         evidence += used
         notes += more
-        complete = complete and (load is None or load.is_complete)
+        complete = complete and not lacks
         if channel is not None:
             channels.append(channel)
     if wirings and all(wiring.is_off for wiring in wirings):
@@ -105,7 +106,8 @@ def draft(
     evidence += site_evidence(settings.site)
     if settings.site.altitude.span.high > HIGHEST:
         missing.append("altitude: no correction is known above 11 km")
-    missing += _open_findings(part, wirings, circuit, known)
+    doubts = _open_findings(part, wirings, circuit, known)
+    missing += doubts
     return Draft(
         part,
         stated,
@@ -124,7 +126,7 @@ def draft(
         tuple(evidence),
         tuple(dict.fromkeys(notes)),
         findings,
-        complete,
+        complete and not doubts,
     )
 
 
@@ -225,7 +227,7 @@ def _open_findings(part: Part, wirings: tuple[Wiring, ...], circuit: Circuit, kn
     }
     found = []
     for finding in known:
-        mine = finding.key == part.key if finding.key else finding.subject in names
+        mine = finding.key == part.key if finding.key else finding.subject in names or may_be_anyones(finding)
         if mine and finding.weight is Weight.OPEN:
             found.append(f"{finding.name}: {finding.message}")
     if not circuit.complete:

@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import pytest
-from draws_kit import chip, circuit, linear, loads, names, one_regulator, rails, stated, vreg, wire
+from draws_kit import chip, circuit, evidence, linear, loads, names, one_regulator, part, rails, stated, vreg, wire
 
 from analyzer.load import Pulse
 from analyzer.quantity import Span
@@ -147,3 +149,62 @@ class TestStated:
             chip("U4", "+3V3", fitted=False),
         )
         assert loads(board, known).by_rail["+3V3"].total == Span.exact(0.02)
+
+
+class TestLostStatements:
+    """What cannot be used stays a gap where its part is known, and carries no identity where it is not."""
+
+    def test_unreadable_field_of_a_connector_is_a_gap_though_connectors_need_none(self):
+        jack = part(
+            "J2", [("1", "Pin_1", "passive", "+3V3"), ("2", "Pin_2", "passive", "SIG")], fields={"I_load": "1 a"}
+        )
+        board, known = one_regulator(chip("U2", "+3V3", fields={"I_load": "20 mA"}), jack)
+        found = loads(board, known)
+        assert found.by_rail["+3V3"].total is None
+        (lost,) = found.by_rail["+3V3"].gaps
+        assert (lost.ref, lost.why) == ("J2", "its stated current cannot be used (draw-not-understood)")
+        assert next(one for one in found.findings if one.name == "draw-not-understood").key == "/J2"
+
+    def test_where_every_rail_of_the_part_has_its_current_nobody_knows_where_it_belongs(self):
+        fields = {"I_load@+3V3": "20 mA", "I_load@+5V": "5 mA", "I_load": "900 mA"}
+        found = loads(*one_regulator(chip("U2", "+3V3", "+5V", fields=fields)))
+        (lost,) = found.findings
+        assert (lost.name, lost.key) == ("draw-without-rail", "")
+
+    def test_power_on_a_rail_of_unknown_voltage_without_a_part(self):
+        board, known = one_regulator(volts=None)
+        found = loads(board, known, Settings(draws=(stated("", watts=0.3, rail="+3V3", source="toml"),)))
+        gaps = {gap.ref: gap.why for gap in found.by_rail["+3V3"].gaps}
+        assert gaps["@+3V3"] == "its stated current cannot be used (draw-power-without-voltage)"
+
+
+class TestPulsesTogether:
+    def test_two_nets_of_one_rail_peak_together(self):
+        u1 = vreg("U1", "+5V", "+3V3")
+        fields = {"I_load@+3V3": "2 A for 5 ms every 100 ms", "I_load@VDDA": "500 mA"}
+        u2 = chip("U2", "+3V3", "VDDA", fields=fields)
+        known = rails({"+5V": 5, "+3V3": 3.3}, [wire(u1, "+5V", "+3V3")], {"+3V3": ("+3V3", "VDDA")})
+        (draw,) = loads(circuit(u1, u2), known).by_rail["+3V3"].draws
+        assert draw.amps.span.nominal == pytest.approx(0.6)  # 2 A · 5 % and 0.5 A
+        assert draw.pulse == Pulse(Span.exact(2.5), 0.005, 0.1, Span.exact(0.5))
+
+    def test_of_a_pulse_and_a_steady_current_that_contradict_the_peak_counts_as_steady(self):
+        board, known = one_regulator(chip("U2", "+3V3"))
+        pulsed = replace(stated("U2", 0.1, "+3V3"), pulse=Pulse(Span.exact(2.0), 0.005, 0.1))
+        for pair in ((stated("U2", 0.2), pulsed), (pulsed, stated("U2", 0.2))):
+            found = loads(board, known, Settings(draws=pair))
+            (draw,) = found.by_rail["+3V3"].draws
+            assert (draw.amps.span, draw.pulse) == (Span.exact(2.0), None)
+
+    def test_a_peak_that_the_part_above_cannot_carry_leaves_the_rail_above_open(self):
+        board, known = one_regulator(chip("U2", "+3V3", fields={"I_load": "2 A for 5 ms every 100 ms"}))
+
+        def takes(_wiring, amps):
+            return None if amps.high > 1 else evidence(amps)
+
+        found = loads(board, known, takes=takes)
+        assert found.by_rail["+3V3"].total.nominal == pytest.approx(0.1)
+        assert found.by_rail["+5V"].total is None
+        assert found.by_rail["+5V"].gaps[0].why == (
+            "load of U1 not known: what it takes while +3V3 is pulsed cannot be computed"
+        )
