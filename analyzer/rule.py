@@ -6,6 +6,7 @@ editors, `rules draft` and the guide are all made from it.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from enum import StrEnum
@@ -124,6 +125,26 @@ class FigureKey:
 
 
 _D = Dimension
+SIGNED_FIGURES = frozenset({"feedback_current", "resistance_tempco", "forward_drop_tempco", "efficiency_hot_loss"})
+"""Figures that may be negative."""
+
+SOME_FIGURES = frozenset({"on_resistance", "high_side_resistance", "output_resistance", "switching_frequency", "gain"})
+"""Figures of which none would be less than any part has."""
+
+
+def figure_limits(key: str) -> tuple[float, float, bool]:
+    """(least, greatest, whether the least itself is excluded) that a figure can be, in its unit.
+
+    Temperatures have limits of their own.
+    """
+    if key in ("efficiency", "output_tolerance"):
+        # a converter without loss would make no heat at all
+        return 0.0, 0.999 if key == "efficiency" else 1.0, key == "efficiency"
+    if key == "pass_channels":
+        return 1.0, 16.0, False
+    return -math.inf if key in SIGNED_FIGURES else 0.0, math.inf, key in SOME_FIGURES
+
+
 FIGURES: Mapping[str, FigureKey] = {
     # what it does
     "output_tolerance": FigureKey(_D.RATIO, "accuracy of a fixed output, ± fraction", "electrical characteristics"),

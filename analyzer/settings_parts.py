@@ -2,20 +2,17 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterable
 
 from analyzer.evidence import Evidence, Grade
 from analyzer.grammar import parse_load
 from analyzer.quantity import Dimension
-from analyzer.rule import FIGURES
+from analyzer.rule import FIGURES, figure_limits
 from analyzer.settings import Coupling, PartStatement, StatedDraw
 from analyzer.settings_tables import COLDEST, HOTTEST, board_class
 from analyzer.toml_table import Table, given
 
 _D = Dimension
-_SIGNED = frozenset({"feedback_current", "resistance_tempco", "forward_drop_tempco", "efficiency_hot_loss"})
-"""Figures that may be negative."""
 
 
 def draws(table: Table) -> tuple[StatedDraw, ...]:
@@ -94,9 +91,8 @@ def _figure(table: Table, key: str) -> Evidence | None:
     figure = FIGURES[key]
     if figure.dimension is Dimension.TEMPERATURE:
         return table.evidence(key, figure.meaning, figure.dimension, COLDEST, HOTTEST)
-    low = -math.inf if key in _SIGNED else 0
-    high = 1 if key in ("efficiency", "output_tolerance") else math.inf
-    return table.evidence(key, figure.meaning, figure.dimension, low, high)
+    low, high, above = figure_limits(key)
+    return table.evidence(key, figure.meaning, figure.dimension, low, high, above=above)
 
 
 def _heat_sink(table: Table) -> tuple[Evidence, Evidence, Evidence] | None:

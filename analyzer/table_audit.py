@@ -90,6 +90,9 @@ def _wiring(part: Part, row: Row, rail: str) -> Wiring:
     vin = _volts(row, "vin", "input voltage")
     net = f"input of {part.ref}"
     why = ("a shunt regulator's resistor cannot stand in a table",) if channel.topology is Topology.SHUNT else ()
+    if len(part.channels) > 1:
+        others = ", ".join(one.name or "?" for one in part.channels[1:])
+        why = (*why, f"a table's row holds one output, the part has more: {others}")
     return Wiring(part, channel, net, net, rail, rail, vin=vin, vout=vout, why_open=why)
 
 

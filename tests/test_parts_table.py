@@ -107,6 +107,19 @@ def test_a_budget_for_each_row_and_open_where_a_column_lacks(tmp_path: Path) -> 
     assert [(f.name, f.subject) for f in ledger.findings if f.name == "no-rule"] == [("no-rule", "U5")]
 
 
+def test_a_part_with_more_outputs_than_a_row_can_hold_stays_open(tmp_path: Path) -> None:
+    dual = RULES.replace("QXL9", "QXD2").replace(
+        '{ pattern = "QXD2-{code}", decode = "decimal" }', '{ pattern = "QXD2" }'
+    )
+    channels = '\n[[rule.channel]]\nname = "A"\nvolts = "5 V"\n\n[[rule.channel]]\nname = "B"\nvolts = "3.3 V"\n'
+    (tmp_path / "rules.toml").write_text(dual + channels, encoding="utf-8")
+    table = "Reference,Part number,Footprint,Vin,Vout,Current\nU1,QXD2,SOT-223,6 V,5 V,0.1 A\n"
+    (tmp_path / "parts.csv").write_text(table, encoding="utf-8")
+    (entry,) = audit(tmp_path / "parts.csv", rule_files=[tmp_path / "rules.toml"]).ledger.entries
+    assert entry.verdict is Verdict.OPEN
+    assert entry.missing == ("channel A: a table's row holds one output, the part has more: B",)
+
+
 @pytest.mark.parametrize(
     ("name", "data", "what"),
     [

@@ -225,7 +225,7 @@ def test_all_faults_at_once_each_with_table_and_key(write):
         "[parts.U7.heat_sink] theta_cs: is missing",
         "[parts.U7.heat_sink] theta_sa: is missing",
         "[parts.U7] is_regulator: must be true or false, not text",
-        "[parts.U7] efficiency: '1.2' lies outside the possible: at least 0 %, at most 100 %",
+        "[parts.U7] efficiency: '1.2' lies outside the possible: above 0 %, at most 99.9 %",
         "[parts.U7] efficency: unknown key; did you mean 'efficiency'?",
         "[links] FB3: must be true or false, not text",
         "[[coupling]] number 1 theta: is missing",

@@ -46,11 +46,11 @@ DROPOUT_DOUBTFUL = FindingKind(
     "By voltages that are only presumed, the part may lose regulation at its lowest input.",
     "State the supply's real voltage span in the settings.",
 )
-DROPOUT_UNKNOWN = FindingKind(
-    "dropout-unknown",
-    Weight.NOTE,
-    "Little is left between input and output, and the part's dropout is not known: regulation was not checked.",
-    "Supply the dropout in the part's rule.",
+INPUT_ABOVE_OUTPUT = FindingKind(
+    "input-above-output",
+    Weight.OVER,
+    "A part that only steps up gets more input than its output: the output follows the input.",
+    "Limit the input voltage, or take a part that steps both ways.",
 )
 INPUT_OVER_RATING = FindingKind(
     "input-over-rating",
@@ -135,6 +135,12 @@ ABSOLUTE_LIMIT = FindingKind(
     Weight.NOTE,
     "Only the absolute maximum junction temperature is known; it is no operating limit.",
     "Supply the recommended operating limit.",
+)
+LIMIT_RAISED = FindingKind(
+    "limit-raised",
+    Weight.TIGHT,
+    "The junction limit stated in the settings is above the one the rule gives for the part.",
+    "State a limit that the data sheet allows, or correct the rule.",
 )
 MINIMUM_LOAD = FindingKind(
     "minimum-load",

@@ -22,6 +22,12 @@ PARALLEL_REGULATORS = FindingKind(
     "Several regulators feed one rail directly; without a statement each is budgeted for the whole load.",
     "State `share` for each of them in `[parts]` if they share the load.",
 )
+SHARES_INCOMPLETE = FindingKind(
+    "shares-incomplete",
+    Weight.OPEN,
+    "The stated shares of a rail's feeds add up to less than its load, so part of its current is in nobody's budget.",
+    "Let the `share` of the parts that feed the rail add up to 1.",
+)
 OPPOSITE_FEEDS = FindingKind(
     "opposite-feeds",
     Weight.OPEN,

@@ -40,6 +40,7 @@ _LOST = frozenset(
         currents.DRAW_POWER_WITHOUT_VOLTAGE,
         rails.SUPPLY_WITHOUT_NET,
         rails.LINK_WITHOUT_PART,
+        rails.SHARES_INCOMPLETE,
     )
 )
 

@@ -89,10 +89,10 @@ def _informed(one: Draft, drafts: list[Draft], settings: Settings) -> Iterator[F
 
 def _has_entry(part: Part) -> bool:
     """Passages are entries only where something is known of their heat."""
-    if part.topology.regulates:
-        return True
-    given = part.channels[0]
-    return any(key in given.figures or key in given.curves for key in _HEATING_FIGURES)
+    return any(
+        channel.topology.regulates or any(key in channel.figures or key in channel.curves for key in _HEATING_FIGURES)
+        for channel in part.channels
+    )
 
 
 def _with_neighbours(drafts: list[Draft], settings: Settings) -> list[tuple[Draft, float, tuple[str, ...]]]:
@@ -103,13 +103,17 @@ def _with_neighbours(drafts: list[Draft], settings: Settings) -> list[tuple[Draf
     pairs = {one.part.ref: coupling.neighbours(one.part.ref, settings.coupling) for one in drafts}
     if not any(pairs.values()):
         return [(one, 0.0, ()) for one in drafts]
+    refs = [one.part.ref for one in drafts]
+    doubled = {ref for ref in refs if refs.count(ref) > 1}
     rises = dict.fromkeys(pairs, 0.0)
     watts: Mapping[str, float] = {}
     for _ in range(_SETTLING_ROUNDS):
         watts = {
             one.part.ref: heat
             for one in drafts
-            if one.part.component.fitted and (heat := _heat(one, rises[one.part.ref])) is not None
+            if one.part.ref not in doubled
+            and one.part.component.fitted
+            and (heat := _heat(one, rises[one.part.ref])) is not None
         }
         found = {
             ref: coupling.rise({by: k for by, k in around.items() if by in watts}, watts)
@@ -129,14 +133,17 @@ def _with_neighbours(drafts: list[Draft], settings: Settings) -> list[tuple[Draf
 
 
 def _heat(one: Draft, rise: float) -> float | None:
-    """Worst heat of a part whose budget lacks nothing of its load."""
+    """Worst heat of a part whose budget lacks nothing that its heat rests on."""
     if not one.case.channels or not one.is_complete:
+        return None
+    if one.case.path is None and any(channel.model.heats for channel in one.case.channels):
         return None
     try:
         swing = swing_of(one.case)
-        return worst(_warmer(swing.peak if swing else one.case, rise)).watts
+        worked = worst(_warmer(swing.peak if swing else one.case, rise))
     except ValueError:
         return None
+    return None if worked.runs_away else worked.watts
 
 
 def _warmer(case: Case, rise: float) -> Case:

@@ -152,6 +152,8 @@ def _settled(case: Case, choose: _Choose, *, severe: bool) -> Worked:
             except ValueError:
                 # a figure that stops being one (efficiency below zero) on the way up has no rest
                 break
+        if junction > HOPELESS_CELSIUS:
+            break
         watts = sum(one.loss.watts for one in chosen)
         theta = case.path.theta(thin_air, watts, severe=severe)
         found = ambient + theta * watts
@@ -160,7 +162,7 @@ def _settled(case: Case, choose: _Choose, *, severe: bool) -> Worked:
         if found > HOPELESS_CELSIUS:
             break
         junction = found
-    return Worked(chosen, watts, ambient, theta, found, runs_away=True)
+    return Worked(chosen, watts, ambient, theta, min(found, HOPELESS_CELSIUS), runs_away=True)
 
 
 def hottest_of(one: ChannelCase, junction: float) -> Chosen:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass, field
 from types import MappingProxyType
 
@@ -16,13 +16,20 @@ from analyzer.heat.limits import Limits, limits_of
 from analyzer.heat.path import ThermalPath, thermal_path
 from analyzer.load import Loads, RailLoad
 from analyzer.losses import model_of
+from analyzer.losses.buck import is_inverting
 from analyzer.part import Part
 from analyzer.quantity import ZERO, Span
 from analyzer.rail import Rails, Wiring
-from analyzer.rule import Rulebook
+from analyzer.rule import LINEARS, Rulebook, Topology
 from analyzer.settings import PartStatement, Settings, Site
+from analyzer.wording import show
 
 NOTHING_STATED = PartStatement()
+
+USUAL_DROPOUT = 2.0
+"""Dropout [V] that bipolar three-terminal regulators need at their rated current (common practice)."""
+
+_KEEP_SIGN = LINEARS | {Topology.BUCK, Topology.BOOST, Topology.SHUNT, Topology.CHARGER, Topology.LOAD_SWITCH}
 
 
 @dataclass(frozen=True)
@@ -174,10 +181,26 @@ def _channel(
         evidence.append(load_evidence(load, amps, silent.get(load.rail, "")))
         if not load.is_complete:
             lacks.append(f"{name}load of {load.rail}: {_gap_words(load)}")
+    lacks += [name + what for what in _doubts(wiring)]
     if model.missing or wiring.vin is None or wiring.vout is None:
         return None, lacks, evidence, list(model.notes)
     channel = ChannelCase(wiring, model, _magnitude(wiring.vin.span), _magnitude(wiring.vout.span), amps, load, share)
     return channel, lacks, evidence, list(model.notes)
+
+
+def _doubts(wiring: Wiring) -> Iterator[str]:
+    """What of a channel's voltages is not as its topology has it, so that its heat may be anything."""
+    vin, vout, channel = wiring.vin, wiring.vout, wiring.channel
+    if vin is None or vout is None:
+        return
+    if channel.topology in _KEEP_SIGN and vin.span.nominal * vout.span.nominal < 0 and not is_inverting(wiring):
+        shown = f"{show(vin.span.nominal, 'V')} and {show(vout.span.nominal, 'V')}"
+        yield f"input and output of opposite signs ({shown}), which a {channel.topology} part does not make"
+    elif channel.topology in LINEARS and "dropout" not in channel.figures and "dropout" not in channel.curves:
+        left = _magnitude(vin.span).low - _magnitude(vout.span).high
+        if left < USUAL_DROPOUT:
+            # a part that needs more drops more: then its heat is above (Vin − Vout) · I
+            yield f"dropout (only {show(left, 'V')} left between lowest input and highest output)"
 
 
 def load_evidence(load: RailLoad, amps: Span, silent: str = "") -> Evidence:

@@ -47,6 +47,10 @@ def limits_of(part: Part, stated: PartStatement, policy: Policy) -> Limits | str
             return "junction limit"
         message = f"only the absolute maximum of {show(found.span.low, '°C')} is known"
         findings = (kinds.ABSOLUTE_LIMIT.found(part.ref, message, found.source, key=part.key),)
+    given = figures.get("junction_max") or figures.get("junction_absolute_max")
+    if stated.junction_max is not None and given is not None and found.span.low > given.span.low:
+        message = f"stated limit {show(found.span.low, '°C')}, the rule gives {show(given.span.low, '°C')}"
+        findings = (kinds.LIMIT_RAISED.found(part.ref, message, found.source, key=part.key),)
     rating = found.span.low
     allowed = rating - policy.junction_over
     if policy.junction_factor is not None:

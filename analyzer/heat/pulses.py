@@ -35,6 +35,11 @@ class Pulsed:
     on: float
     period: float | None
 
+    @property
+    def between(self) -> Span:
+        """Any load from the least at rest to all peaks together."""
+        return Span(min(self.rest.low, self.peak.low), self.peak.nominal, max(self.rest.high, self.peak.high))
+
 
 def pulsed_load(load: RailLoad | None, share: float = 1.0) -> Pulsed | None:
     """All pulses of a rail taken together: their peaks coincide, for the longest of their times; None without any.
@@ -54,7 +59,11 @@ def pulsed_load(load: RailLoad | None, share: float = 1.0) -> Pulsed | None:
 
 @dataclass(frozen=True, slots=True)
 class Swing:
-    """A case at rest and at its peak, with the longest pulse and the shortest period of all its channels."""
+    """A case at rest and while it pulses, with the longest pulse and the shortest period of all its channels.
+
+    Pulses need not meet, so while they come the load is anything between rest and all peaks together: the heat of
+    a shunt, or of a converter whose efficiency is tabled, may be greatest in between or at rest.
+    """
 
     rest: Case
     peak: Case
@@ -72,8 +81,7 @@ def swing_of(case: Case) -> Swing | None:
     def state(pick: str) -> Case:
         channels: list[ChannelCase] = []
         for one, load in zip(case.channels, loads, strict=True):
-            span = one.load if load is None else load.peak if pick == "peak" else load.rest
-            channels.append(replace(one, load=span))
+            channels.append(one if load is None else replace(one, load=load.between if pick == "peak" else load.rest))
         return replace(case, channels=tuple(channels))
 
     on = max(load.on for load in pulsed)
@@ -91,7 +99,8 @@ def worked_swing(swing: Swing, ref: str, key: str) -> tuple[Worked, tuple[Findin
     base = worst(swing.rest)
     if path.foster and base.junction is not None and base.theta is not None:
         return replace(peak, junction=_through_network(path.foster, base, peak, swing)), ()
-    if swing.on > SHORT or swing.period is None:
+    if swing.on > SHORT or swing.period is None or path.measured is not None or path.sink is not None:
+        # the tenth is about θJA; above a measured case or a heat sink most of θ is what 10 ms can reach
         message = f"{shape}: no transient impedance known, budgeted as if the pulse never ended"
         return peak, (kinds.PULSE_AS_DC.found(ref, message, key=key),)
     duty = swing.on / swing.period

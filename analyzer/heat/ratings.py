@@ -10,13 +10,12 @@ from analyzer.findings.base import Finding
 from analyzer.heat.altitude import UNCHECKED_ABOVE
 from analyzer.heat.case import ChannelCase, Worked
 from analyzer.heat.draft import Draft
+from analyzer.losses.base import End, Point
+from analyzer.losses.dispatch import HOT_CELSIUS
 from analyzer.losses.linear import short_circuit_heat
 from analyzer.rule import LINEARS, Topology
 from analyzer.settings import Policy, Settings
 from analyzer.wording import show
-
-USUAL_DROPOUT = 2.0
-"""Dropout [V] that bipolar three-terminal regulators need at their rated current (common practice)."""
 
 
 def junction_findings(draft: Draft, worst: Worked, policy: Policy) -> Iterator[Finding]:
@@ -109,23 +108,55 @@ def _current(draft: Draft, one: ChannelCase, policy: Policy) -> Iterator[Finding
 
 
 def _dropout(draft: Draft, one: ChannelCase) -> Iterator[Finding]:
-    part, channel = draft.part, one.wiring.channel
-    if channel.topology not in LINEARS and channel.topology is not Topology.BUCK:
+    """Whether the output is kept at the corner where it is lost first."""
+    part, topology = draft.part, one.wiring.channel.topology
+    message = _linear_lost(one) if topology in LINEARS else _converter_lost(one)
+    if not message:
         return
-    left = one.vin.low - one.vout.high
-    needed = _needed(one)
-    known = "dropout" in channel.figures or "dropout" in channel.curves
-    if left >= needed:
-        if not known and channel.topology in LINEARS and left < USUAL_DROPOUT:
-            message = f"{show(left, 'V')} are left between lowest input and highest output"
-            yield kinds.DROPOUT_UNKNOWN.found(part.ref, message, key=part.key)
-        return
-    kind = kinds.DROPOUT_DOUBTFUL if _is_presumed(one) else kinds.DROPOUT_LOST
-    message = (
-        f"input {show(one.vin.low, 'V')} less output {show(one.vout.high, 'V')} leaves {show(left, 'V')}, "
-        f"the part needs {show(needed, 'V')}"
-    )
+    if topology is Topology.BOOST:
+        kind = kinds.DROPOUT_DOUBTFUL if _is_presumed(one) else kinds.INPUT_ABOVE_OUTPUT
+    else:
+        kind = kinds.DROPOUT_DOUBTFUL if _is_presumed(one) else kinds.DROPOUT_LOST
     yield kind.found(part.ref, message, key=part.key)
+
+
+def _linear_lost(one: ChannelCase) -> str:
+    left, needed = one.vin.low - one.vout.high, _needed(one)
+    control = one.wiring.vcontrol
+    if left < needed:
+        return _little_left(one, f"the part needs {show(needed, 'V')}")
+    if one.wiring.channel.topology is Topology.LINEAR_TWO_SUPPLY and control is not None:
+        lowest = min(abs(corner) for corner in control.span.corners)
+        if lowest < one.vout.high:
+            return f"control supply {show(lowest, 'V')} is below the output {show(one.vout.high, 'V')}"
+    return ""
+
+
+def _converter_lost(one: ChannelCase) -> str:
+    """By the loss model's own word, at the load and voltages where regulation is lost first."""
+    topology, load = one.wiring.channel.topology, show(one.load.high, "A")
+    words = {
+        Topology.BUCK: _little_left(one, f"which its switch and inductor take at {load}"),
+        Topology.CHARGE_PUMP: f"at {show(one.vin.low, 'V')} and {load} it does not reach {show(one.vout.high, 'V')}",
+        Topology.SHUNT: f"at {show(one.vin.low, 'V')} its resistor does not carry {load} and the element's own current",
+        Topology.BOOST: f"input up to {show(one.vin.high, 'V')} is above the output {show(one.vout.low, 'V')}",
+    }
+    if topology not in words:
+        return ""
+    if topology is Topology.BUCK and one.vin.low - one.vout.high < _needed(one):
+        return _little_left(one, f"the part needs {show(_needed(one), 'V')}")
+    point = Point(one.vin.low, one.vout.high, one.load.high, HOT_CELSIUS)
+    if topology is Topology.BOOST:
+        point = Point(one.vin.high, one.vout.low, one.load.low, HOT_CELSIUS)
+    try:
+        return "" if one.model.at(point, End.SEVERE).regulating else words[topology]
+    except ValueError:
+        return ""  # outside its figures: that is found where its heat is worked out
+
+
+def _little_left(one: ChannelCase, then: str) -> str:
+    low, high = one.vin.low, one.vout.high
+    return f"input {show(low, 'V')} less output {show(high, 'V')} leaves {show(low - high, 'V')}, {then}"
 
 
 def _is_presumed(one: ChannelCase) -> bool:

@@ -13,7 +13,7 @@ from dataclasses import replace
 from analyzer.losses import efficiency, terms
 from analyzer.losses.base import End, Figures, Loss, LossModel, Point, high, lacking, outside
 from analyzer.losses.buck import interior_voltages
-from analyzer.losses.elsewhere import OPPOSITE, Outsides, outside_notes, outsides
+from analyzer.losses.elsewhere import OPPOSITE, Outsides, outside_notes, outsides, outsides_measured
 from analyzer.rail import Wiring
 from analyzer.wording import show
 
@@ -52,20 +52,23 @@ def build(wiring: Wiring) -> LossModel:
 
 
 def _from_efficiency(wiring: Wiring) -> LossModel:
-    others = outsides(wiring, from_rule=False)
+    if lacks := efficiency.lacks(wiring.channel):
+        return lacking(*lacks)
+    measured = outsides_measured(wiring, efficiency.figure_of(wiring.channel))
+    board = outsides(wiring)
 
     def at(point: Point, end: End) -> Loss:
         found = efficiency.at_point(wiring.channel, point, end)
         point, regulating = passed_on(point)
         iin = boost_input_current(point.vout * point.iout, found, point.vin)
-        parts = others.shares(end, iin, point.iout)
-        loss = efficiency.loss_from_efficiency(wiring.channel, point, end, found, point.vin, parts)
+        parts = measured.shares(end, iin, point.iout), board.shares(OPPOSITE[end], iin, point.iout)
+        loss = efficiency.loss_from_efficiency(wiring.channel, point, end, found, point.vin, *parts)
         return loss if regulating else replace(loss, regulating=False)
 
     return LossModel(
         at,
-        (*efficiency.evidence(wiring.channel), *others.used),
-        notes=outside_notes(wiring, others, from_rule=False),
+        tuple(dict.fromkeys((*efficiency.evidence(wiring.channel), *measured.used, *board.used))),
+        notes=(*efficiency.notes(wiring.channel), *outside_notes(wiring, board, measured)),
         interior=interior_voltages,
         loads=efficiency.load_knots(wiring.channel),
         heats=Figures(wiring.channel).has("efficiency_hot_loss"),
@@ -73,7 +76,7 @@ def _from_efficiency(wiring: Wiring) -> LossModel:
 
 
 def _from_terms(wiring: Wiring, figures: Figures) -> LossModel:
-    others = outsides(wiring, from_rule=True)
+    others = outsides(wiring)
 
     def at(point: Point, end: End) -> Loss:
         """The input current is the one at which input power is output power and all losses."""
@@ -89,7 +92,7 @@ def _from_terms(wiring: Wiring, figures: Figures) -> LossModel:
         raise ValueError(f"no input current carries {show(point.iout, 'A')} at {show(point.vin, 'V')} in")
 
     used = tuple(dict.fromkeys((*figures.used(*_NEEDED, "low_side_resistance", "resistance_tempco"), *others.used)))
-    notes = outside_notes(wiring, others, from_rule=True)
+    notes = outside_notes(wiring, others)
     return LossModel(at, used, notes=notes, interior=interior_voltages, heats=figures.has("resistance_tempco"))
 
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from analyzer.losses import efficiency, terms
 from analyzer.losses.base import End, Figures, Loss, LossModel, Point, high, lacking, outside
-from analyzer.losses.elsewhere import OPPOSITE, Outsides, outside_notes, outsides
+from analyzer.losses.elsewhere import OPPOSITE, Outsides, outside_notes, outsides, outsides_measured
 from analyzer.rail import Wiring
 from analyzer.wording import show
 
@@ -60,24 +60,27 @@ def _diodes(wiring: Wiring, figures: Figures) -> bool:
 
 
 def _from_efficiency(wiring: Wiring) -> LossModel:
+    if lacks := efficiency.lacks(wiring.channel):
+        return lacking(*lacks)
     inverts = is_inverting(wiring)
-    others = outsides(wiring, from_rule=False)
+    measured = outsides_measured(wiring, efficiency.figure_of(wiring.channel))
+    board = outsides(wiring)
 
     def at(point: Point, end: End) -> Loss:
         supply = point.vin - point.vout if inverts else point.vin
         found = efficiency.at_point(wiring.channel, point, end)
-        if supply <= 0 or (not inverts and point.vin < point.vout):
+        if supply <= 0 or (not inverts and point.vin <= point.vout):
             return _below(point, found)
         duty = terms.buck_duty(point.vin, point.vout)
         coil = point.iout / (1 - duty) if inverts else point.iout
         rectifier = point.iout if inverts else point.iout * least_off_time(point.vin, point.vout, found)
-        parts = others.shares(end, coil, rectifier)
-        return efficiency.loss_from_efficiency(wiring.channel, point, end, found, supply, parts)
+        parts = measured.shares(end, coil, rectifier), board.shares(OPPOSITE[end], coil, rectifier)
+        return efficiency.loss_from_efficiency(wiring.channel, point, end, found, supply, *parts)
 
     return LossModel(
         at,
-        (*efficiency.evidence(wiring.channel), *others.used),
-        notes=outside_notes(wiring, others, from_rule=False),
+        tuple(dict.fromkeys((*efficiency.evidence(wiring.channel), *measured.used, *board.used))),
+        notes=(*efficiency.notes(wiring.channel), *outside_notes(wiring, board, measured)),
         interior=interior_voltages,
         loads=efficiency.load_knots(wiring.channel),
         heats=Figures(wiring.channel).has("efficiency_hot_loss"),
@@ -115,7 +118,7 @@ def interior_voltages(low: float, high: float, _vout: float, _iout: float) -> tu
 def _from_terms(wiring: Wiring) -> LossModel:
     figures = Figures(wiring.channel)
     inverts = is_inverting(wiring)
-    others = outsides(wiring, from_rule=True)
+    others = outsides(wiring)
 
     def at(point: Point, end: End) -> Loss:
         return _terms_at(wiring, figures, others, point, end, inverts)
@@ -123,7 +126,7 @@ def _from_terms(wiring: Wiring) -> LossModel:
     return LossModel(
         at,
         tuple(dict.fromkeys((*figures.used(*_KEYS), *others.used))),
-        notes=outside_notes(wiring, others, from_rule=True),
+        notes=outside_notes(wiring, others),
         interior=interior_voltages,
         heats=figures.has("resistance_tempco"),
     )
@@ -141,14 +144,20 @@ def _terms_at(wiring: Wiring, figures: Figures, others: Outsides, point: Point, 
         # published sums take the switch's own drop into the duty where a diode rectifies, and leave it out elsewhere
         ideal = terms.buck_duty(vin, point.vout)
         switch_drop += resistance * (load / (1 - ideal) if inverts and ideal < 1 else load)
-    duty = terms.buck_duty(vin, point.vout, drop, min(switch_drop, vin))
+    low_side = figures.high("low_side_resistance", end, default=0.0) * hot
+    known = others.inductor[1] if others.inductor else None
+    dcr = high(known, end) if known is not None else 0.0
+    if synchronous and not saturation and not inverts:
+        duty = terms.loaded_duty(vin, point.vout, load, resistance, low_side, dcr)
+    else:
+        duty = terms.buck_duty(vin, point.vout, drop, min(switch_drop, vin))
     coil = load / (1 - duty) if inverts and duty < 1 else load
     frequency = figures.high("switching_frequency", end)
     rise, fall = figures.high("rise_time", end), figures.high("fall_time", end)
     found = [
         ("high side", terms.conduction(coil, resistance, duty)),
         ("saturation", terms.saturation(coil, saturation, duty)),
-        ("low side", terms.conduction(coil, figures.high("low_side_resistance", end, default=0.0) * hot, 1 - duty)),
+        ("low side", terms.conduction(coil, low_side, 1 - duty)),
         ("switching", terms.switching(vin, coil, frequency, rise, fall)),
         ("quiescent", vin * figures.high("quiescent", end)),
     ]
@@ -171,7 +180,7 @@ def _terms_at(wiring: Wiring, figures: Figures, others: Outsides, point: Point, 
         elsewhere.items,
         tuple(inside),
         lambda: " + ".join(f"{name} {show(value, 'W')}" for name, value in inside) + f" at D {duty:.3f}",
-        regulating=supply > 0 and (inverts or vin > point.vout),
+        regulating=supply > 0 and (inverts or vin > point.vout + load * (resistance + dcr) + saturation),
     )
 
 

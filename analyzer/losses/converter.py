@@ -5,7 +5,7 @@ from __future__ import annotations
 from analyzer.losses import efficiency
 from analyzer.losses.base import End, Figures, Loss, LossModel, Point, lacking, outside
 from analyzer.losses.buck import interior_voltages
-from analyzer.losses.elsewhere import Shares, outside_notes, outsides
+from analyzer.losses.elsewhere import OPPOSITE, Shares, outside_notes, outsides, outsides_measured
 from analyzer.losses.terms import gate_drive
 from analyzer.rail import Wiring
 from analyzer.rule import Topology
@@ -42,9 +42,14 @@ def build(wiring: Wiring) -> LossModel:
     """
     if not efficiency.is_given(wiring.channel):
         return lacking("efficiency")
+    if lacks := efficiency.lacks(wiring.channel):
+        return lacking(*lacks)
     # the efficiency of a closed module has its own inductor in it, and none of what stands around it
     is_closed = wiring.channel.topology is Topology.MODULE
-    others = outsides(wiring, from_rule=False)
+    measured = outsides_measured(wiring, efficiency.figure_of(wiring.channel))
+    board = outsides(wiring)
+
+    others = () if is_closed else (*measured.used, *board.used)
 
     def at(point: Point, end: End) -> Loss:
         if point.vin <= 0:
@@ -52,8 +57,10 @@ def build(wiring: Wiring) -> LossModel:
         found = efficiency.at_point(wiring.channel, point, end)
         iin = point.vout * point.iout / found / point.vin
         coil = least_coil_current(wiring, point.vin, point.vout, point.iout, iin)
-        parts = Shares() if is_closed else others.shares(end, coil, point.iout)
-        return efficiency.loss_from_efficiency(wiring.channel, point, end, found, point.vin, parts)
+        parts = measured.shares(end, coil, point.iout), board.shares(OPPOSITE[end], coil, point.iout)
+        if is_closed:
+            parts = Shares(), Shares()
+        return efficiency.loss_from_efficiency(wiring.channel, point, end, found, point.vin, *parts)
 
     def interior(low: float, high: float, vout: float, iout: float) -> tuple[float, ...]:
         grid = interior_voltages(low, high, vout, iout)
@@ -61,8 +68,11 @@ def build(wiring: Wiring) -> LossModel:
 
     return LossModel(
         at,
-        (*efficiency.evidence(wiring.channel), *(() if is_closed else others.used)),
-        notes=() if is_closed else outside_notes(wiring, others, from_rule=False),
+        tuple(dict.fromkeys((*efficiency.evidence(wiring.channel), *others))),
+        notes=(
+            *efficiency.notes(wiring.channel),
+            *(() if is_closed else outside_notes(wiring, board, measured)),
+        ),
         interior=interior,
         loads=efficiency.load_knots(wiring.channel),
         heats=Figures(wiring.channel).has("efficiency_hot_loss"),
@@ -110,6 +120,7 @@ def build_controller(wiring: Wiring) -> LossModel:
     return LossModel(
         at,
         used,
+        notes=efficiency.notes(wiring.channel),
         interior=interior_voltages,
         loads=loads,
         heats=figures.has("efficiency_hot_loss"),

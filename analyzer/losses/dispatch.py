@@ -7,6 +7,7 @@ from collections.abc import Callable, Mapping
 from analyzer.evidence import Evidence, Grade
 from analyzer.losses import boost, buck, charge_pump, charger, converter, linear, passage, shunt
 from analyzer.losses.base import End, LossModel, Point, lacking
+from analyzer.losses.presumed import with_presumptions
 from analyzer.quantity import Span
 from analyzer.rail import Wiring
 from analyzer.rule import Topology
@@ -41,7 +42,7 @@ def model_of(wiring: Wiring) -> LossModel:
     """The loss model of a channel, with what it lacks."""
     if wiring.part.rule is None and not wiring.channel.figures:
         return lacking("a rule for this part, or its figures in the settings")
-    return MODELS[wiring.channel.topology](wiring)
+    return MODELS[wiring.channel.topology](with_presumptions(wiring))
 
 
 def input_current(wiring: Wiring, load: Span) -> Evidence | None:

@@ -11,8 +11,8 @@ from __future__ import annotations
 from bisect import bisect_right
 from collections.abc import Callable
 
-from analyzer.evidence import Evidence
-from analyzer.losses.base import REFERENCE_CELSIUS, End, Figures, Loss, Point, amps, low, volts
+from analyzer.evidence import Evidence, Grade
+from analyzer.losses.base import REFERENCE_CELSIUS, End, Figures, Loss, Point, amps, high, low, volts
 from analyzer.losses.elsewhere import Shares
 from analyzer.part import Channel
 from analyzer.quantity import Span
@@ -20,6 +20,19 @@ from analyzer.rule import EfficiencyMap
 from analyzer.wording import show
 
 KEYS = ("efficiency", "efficiency_temperature", "efficiency_hot_loss")
+
+HOT_BOARD = Evidence(
+    "efficiency lost on a hot board",
+    Span(0.0, 0.0, 0.02),
+    "1",
+    "TI SNVA951 section 9: 87 % of a 25 °C figure counted as 85 %",
+    Grade.PRESUMED,
+    note="no efficiency_hot_loss given",
+)
+"""What is presumed where nothing tells how an efficiency falls with temperature."""
+
+MEASURED_HOT = 85.0
+"""Temperature [°C] from which an efficiency counts as measured hot."""
 
 
 def total_loss(power_out: float, efficiency: float) -> float:
@@ -49,7 +62,36 @@ def is_given(channel: Channel) -> bool:
 def evidence(channel: Channel) -> tuple[Evidence, ...]:
     """Evidence of the efficiency figures."""
     mapped = (channel.efficiency_map.evidence,) if channel.efficiency_map else ()
-    return (*mapped, *Figures(channel).used(*KEYS, "quiescent"))
+    presumed = () if says_hot(channel) else (HOT_BOARD,)
+    return (*mapped, *Figures(channel).used(*KEYS, "quiescent"), *presumed)
+
+
+def says_hot(channel: Channel) -> bool:
+    """Whether it is known what the efficiency is on a hot board."""
+    measured = channel.figures.get("efficiency_temperature")
+    return "efficiency_hot_loss" in channel.figures or (measured is not None and measured.span.low >= MEASURED_HOT)
+
+
+def lacks(channel: Channel) -> tuple[str, ...]:
+    """What an efficiency needs besides itself, in words.
+
+    A number from a rule holds at the load it was measured at; below it the losses fall towards what the part takes
+    without a load, which must be known. A number stated for this board is taken to hold for its loads.
+    """
+    figure = channel.figures.get("efficiency")
+    tabled = channel.efficiency_map is not None or "efficiency" in channel.curves
+    if tabled or figure is None or figure.grade is Grade.STATED or "quiescent" in channel.figures:
+        return ()
+    return ("quiescent current (what the converter loses without a load)",)
+
+
+def notes(channel: Channel) -> tuple[str, ...]:
+    """Assumptions about the efficiency itself."""
+    found = [] if says_hot(channel) else ["efficiency taken as a 25 °C figure: 2 points lower on a hot board"]
+    if "quiescent" not in channel.figures:
+        low = "the loss of the table's smallest load is" if load_knots(channel) else "nothing is"
+        found.append(f"quiescent current not given: {low} counted without a load")
+    return tuple(found)
 
 
 def load_knots(channel: Channel) -> tuple[float, ...]:
@@ -71,6 +113,8 @@ def at_point(channel: Channel, point: Point, end: End) -> float:
         found = figures.low("efficiency", end, point.iout)
     measured = figures.high("efficiency_temperature", End.NOMINAL, default=REFERENCE_CELSIUS)
     found = hot_efficiency(found, measured, figures.high("efficiency_hot_loss", end, default=0.0), point.junction)
+    if not says_hot(channel):
+        found -= high(HOT_BOARD.span, end)
     if not 0 < found <= 1:
         raise ValueError(f"an efficiency of {found:.3g} at {point.junction:.0f} °C is none")
     return found
@@ -107,6 +151,24 @@ def _between(knots: list[float], x: float) -> tuple[float, float, float]:
     return low_knot, high_knot, 0.0 if high_knot == low_knot else (x - low_knot) / (high_knot - low_knot)
 
 
+def light_load_loss(channel: Channel, point: Point, efficiency: float, idle: float) -> float:
+    """What may be lost besides Pout · (1/η − 1) below the load that an efficiency was measured at [W].
+
+    The loss a + b·I + c·I² of a converter is convex, so below a load I1 where it is P1 it is at most the chord
+    idle + (P1 − idle)·I/I1. With a number alone, I1 is not known: then at most Pout · (1/η − 1) + idle. Below the
+    first point of a table, without a quiescent current, the loss of that point is held.
+    """
+    least = next(iter(load_knots(channel)), None)
+    if least is None:
+        return idle
+    if point.iout >= least:
+        return 0.0
+    first = total_loss(point.vout * least, efficiency)
+    known = "quiescent" in channel.figures
+    most = idle + max(0.0, first - idle) * point.iout / least if known else first
+    return max(0.0, most - total_loss(point.vout * point.iout, efficiency))
+
+
 def left_inside(total: float, outside_parts: Shares) -> tuple[float, tuple[tuple[str, float], ...]]:
     """What of a converter's whole loss [W] stays in the part, and what is taken out of it: (who, watts).
 
@@ -126,12 +188,25 @@ def left_inside(total: float, outside_parts: Shares) -> tuple[float, tuple[tuple
     return rest, tuple(taken)
 
 
+def figure_of(channel: Channel) -> Evidence:
+    """The efficiency itself as evidence.
+
+    Raises:
+        KeyError: If none is given.
+    """
+    if channel.efficiency_map is not None:
+        return channel.efficiency_map.evidence
+    curve = channel.curves.get("efficiency")
+    return curve.evidence if curve else channel.figures["efficiency"]
+
+
 def loss_from_efficiency(
-    channel: Channel, point: Point, end: End, efficiency: float, supply: float, outside_parts: Shares
+    channel: Channel, point: Point, end: End, efficiency: float, supply: float, outside_parts: Shares, board: Shares
 ) -> Loss:
     """The losses of a converter known by its efficiency.
 
     They are never less than what the part takes without a load, Vin · Iq: an efficiency says nothing of an idle board.
+    At the severe end see `light_load_loss`.
 
     Args:
         channel: For its quiescent current.
@@ -139,7 +214,8 @@ def loss_from_efficiency(
         end: End of the quiescent current's span.
         efficiency: Efficiency there.
         supply: Input voltage against board ground [V], which the input current is counted at.
-        outside_parts: Losses outside the part.
+        outside_parts: Losses outside the part that the efficiency has in it.
+        board: Losses of the parts outside on this board, as far as they are known.
 
     Raises:
         ValueError: If even at the severe end the rectifier alone makes more than the whole loss.
@@ -154,19 +230,21 @@ def loss_from_efficiency(
             f"{who} alone loses {show(watts, 'W')}, the efficiency {efficiency:.3f} leaves {show(total, 'W')}"
         )
     rest, taken = left_inside(total, outside_parts)
-    inside = max(idle, rest)
+    more = light_load_loss(channel, point, efficiency, idle) if end is End.SEVERE else 0.0
+    inside = max(idle, rest + more)
 
     def formula() -> str:
-        if inside > rest:
+        if inside > rest + more:
             return f"{volts(point.vin)} · {amps(own)} without a load"
         less = "".join(f" − {show(watts, 'W')} in {who}" for who, watts in taken)
-        return f"{show(power, 'W')} · (1/{efficiency:.3f} − 1){less}"
+        light = f" + {show(more, 'W')} at light load" if more else ""
+        return f"{show(power, 'W')} · (1/{efficiency:.3f} − 1){less}{light}"
 
     terms: tuple[tuple[str, float], ...] = (("quiescent", idle),)
-    if inside == rest:
+    if inside == rest + more:
         terms = (("converter loss", total), *((f"less {who}", -watts) for who, watts in taken))
-    taken_in = power / efficiency
-    if inside > rest or taken != outside_parts.items:
-        # what was not taken out of the part is lost outside all the same, and comes from the input as well
-        taken_in = power + inside + outside_parts.watts
-    return Loss(inside, taken_in / supply, outside_parts.items, terms, formula)
+        terms = (*terms, ("at light load", more)) if more else terms
+    lost = board.over(outside_parts)
+    # what was not taken out of the part is lost outside all the same, and comes from the input as well
+    taken_in = max(power / efficiency, power + inside + lost.watts)
+    return Loss(inside, taken_in / supply, lost.items, terms, formula)

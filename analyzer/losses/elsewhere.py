@@ -11,11 +11,13 @@ from dataclasses import dataclass
 from analyzer.evidence import Evidence, Grade
 from analyzer.losses.base import End, Figures, low
 from analyzer.quantity import Span
-from analyzer.rail import Outside, Wiring
+from analyzer.rail import Wiring
 
 OPPOSITE = {End.SEVERE: End.MILD, End.MILD: End.SEVERE, End.NOMINAL: End.NOMINAL}
 """End for losses outside where they do not relieve the part but add to the input current."""
 
+_Found = tuple[tuple[str, Span] | None, tuple[Evidence, ...]]
+_Find = Callable[[Wiring, str], _Found]
 _FIGURES = {"inductor": "inductor_resistance", "diode": "diode_drop"}
 
 
@@ -35,6 +37,10 @@ class Shares:
     def items(self) -> tuple[tuple[str, float], ...]:
         """(who, watts) of those known."""
         return tuple(one for one in (self.inductor, self.diode) if one is not None)
+
+    def over(self, other: Shares) -> Shares:
+        """These, and of the other those that are not known here."""
+        return Shares(self.inductor or other.inductor, self.diode or other.diode)
 
     @property
     def watts(self) -> float:
@@ -71,41 +77,54 @@ class Outsides:
         )
 
 
-def outsides(wiring: Wiring, *, from_rule: bool) -> Outsides:
-    """The inductors and rectifiers outside.
+def outsides(wiring: Wiring) -> Outsides:
+    """The inductors and rectifiers on this board: by their own values, else by what rule or settings give for them."""
+    return _both(wiring, _on_board)
 
-    Args:
-        wiring: The channel.
-        from_rule: Whether a figure that a rule gives for them counts. It stands for the data sheet's inductor, not the
-            one on this board, so no heat may be taken out of the part on its strength; but it may add to the input
-            current. What the settings state of this board counts always.
+
+def outsides_measured(wiring: Wiring, efficiency: Evidence) -> Outsides:
+    """The inductors and rectifiers whose losses are in an efficiency, and so may be taken out of the part's heat.
+
+    A rule's efficiency was measured with the inductor of the data sheet: what that one lost is out of the part
+    whatever inductor this board has, and a worse one here cools nothing. So only what the same rule says of it
+    counts. An efficiency that the settings state for this board has this board's parts in it.
     """
-    figures = Figures(wiring.channel)
-    coil, found = _one(wiring, "inductor", lambda part: part.resistance, _side_by_side, from_rule=from_rule)
+    if efficiency.grade is Grade.STATED:
+        return _both(wiring, _on_board)
+    return _both(wiring, _by_rule)
+
+
+def _both(wiring: Wiring, find: _Find) -> Outsides:
+    coil, found = find(wiring, "inductor")
     # a synchronous part has its rectifier inside; a diode beside it carries next to nothing
-    if figures.has("low_side_resistance"):
+    if Figures(wiring.channel).has("low_side_resistance"):
         return Outsides(coil, None, found)
-    diode, more = _one(wiring, "diode", lambda part: part.drop, _least, from_rule=from_rule)
+    diode, more = find(wiring, "diode")
     return Outsides(coil, diode, (*found, *more))
 
 
-def _one(
-    wiring: Wiring,
-    role: str,
-    figure_of: Callable[[Outside], Evidence | None],
-    together: Callable[[list[Span]], Span],
-    *,
-    from_rule: bool,
-) -> tuple[tuple[str, Span] | None, tuple[Evidence, ...]]:
+def _on_board(wiring: Wiring, role: str) -> _Found:
     parts = [part for part in wiring.outside if part.role == role]
-    known = [evidence for part in parts if (evidence := figure_of(part)) is not None]
-    names = ", ".join(part.ref for part in parts)
+    known = [figure for part in parts if (figure := part.resistance if role == "inductor" else part.drop) is not None]
     if parts and len(known) == len(parts):
-        return (names, together([evidence.span for evidence in known])), tuple(known)
-    stated = wiring.channel.figures.get(_FIGURES[role])
-    if stated is not None and (from_rule or stated.grade is Grade.STATED):
-        return (names or {"diode": "rectifier"}.get(role, role), stated.span), (stated,)
-    return None, ()
+        names = ", ".join(part.ref for part in parts)
+        spans = [evidence.span for evidence in known]
+        return (names, _side_by_side(spans) if role == "inductor" else _least(spans)), tuple(known)
+    return _given(wiring, role)
+
+
+def _by_rule(wiring: Wiring, role: str) -> _Found:
+    figure = wiring.channel.figures.get(_FIGURES[role])
+    return (None, ()) if figure is None or figure.grade is Grade.STATED else _given(wiring, role)
+
+
+def _given(wiring: Wiring, role: str) -> _Found:
+    figure = wiring.channel.figures.get(_FIGURES[role])
+    if figure is None:
+        return None, ()
+    parts = [part.ref for part in wiring.outside if part.role == role]
+    span = _side_by_side([figure.span] * max(1, len(parts))) if role == "inductor" else figure.span
+    return (", ".join(parts) or {"diode": "rectifier"}.get(role, role), span), (figure,)
 
 
 def _side_by_side(resistances: list[Span]) -> Span:
@@ -128,13 +147,22 @@ def _least(drops: list[Span]) -> Span:
     return Span(min(one.low for one in drops), min(one.nominal for one in drops), max(one.high for one in drops))
 
 
-def outside_notes(wiring: Wiring, found: Outsides, *, from_rule: bool) -> tuple[str, ...]:
-    """What is not known of the parts outside, and on which side that errs."""
-    # by loss terms the part's heat is counted by itself, and only the input current lacks what is lost outside
-    left = "missing in its input current" if from_rule else "left in the part"
-    lost = {"inductor": found.inductor is None, "diode": found.diode is None}
-    if Figures(wiring.channel).has("low_side_resistance"):
-        lost["diode"] = False
-    return tuple(
-        f"loss of {part.role} {part.ref} not known: {left}" for part in wiring.outside if lost.get(part.role, False)
-    )
+def outside_notes(wiring: Wiring, board: Outsides, measured: Outsides | None = None) -> tuple[str, ...]:
+    """What is not known of the parts outside, and on which side that errs.
+
+    Args:
+        wiring: The channel.
+        board: What is known of them on this board.
+        measured: What of them is taken out of an efficiency; None where the heat is summed from loss terms.
+    """
+    synchronous = Figures(wiring.channel).has("low_side_resistance")
+    found = []
+    for part in wiring.outside:
+        if part.role not in _FIGURES or (part.role == "diode" and synchronous):
+            continue
+        if measured is not None and getattr(measured, part.role) is None:
+            found.append(f"loss of the {part.role} ({part.ref} here) left in the part: the efficiency names none")
+        elif measured is None and getattr(board, part.role) is None:
+            # by loss terms only the input current lacks what is lost outside
+            found.append(f"loss of {part.role} {part.ref} not known: missing in its input current")
+    return tuple(found)

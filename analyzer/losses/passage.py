@@ -12,6 +12,9 @@ from analyzer.rail import Wiring
 from analyzer.rule import Topology
 from analyzer.wording import show
 
+_SAME_VOLTS = 0.1
+"""Fraction by which the nominal voltages on both sides of a switch that is on may differ by tolerances of names."""
+
 
 def switch_heat(current: float, resistance: float, channels: float = 1.0) -> float:
     """Heat [W] of `channels` equal switches that share `current` [A] equally: I² · R / n."""
@@ -37,7 +40,7 @@ def build_switch(wiring: Wiring) -> LossModel:
         shared = f" / {channels:g}" if channels != 1 else ""
         drop = figures.high("forward_drop", end, point.iout, default=0.0)
         if is_pass_element:
-            drop = max(drop, point.vin - point.vout)
+            drop = max(drop, point.vin - point.vout, 0.0)
         if drop * point.iout > passed:
             # an ideal diode holds its drop at light load; a pass transistor takes what input and output differ by
             passed = drop * point.iout
@@ -69,10 +72,15 @@ def build_switch(wiring: Wiring) -> LossModel:
 
 
 def stands_apart(wiring: Wiring) -> bool:
-    """Whether a series transistor works as a pass element: its output voltage is not its input's at any corner."""
+    """Whether a series transistor works as a pass element: its output is nominally not its input.
+
+    The spans may overlap all the same: a 12 V input may fall to 5 V, where a 5 V output is all it leaves.
+    """
     if wiring.channel.topology is not Topology.SERIES_TRANSISTOR or wiring.vin is None or wiring.vout is None:
         return False
-    return not wiring.vin.span.overlaps(wiring.vout.span)
+    vin, vout = abs(wiring.vin.span.nominal), abs(wiring.vout.span.nominal)
+    drop = wiring.channel.figures.get("forward_drop")
+    return vin - (drop.span.nominal if drop else 0.0) > vout * (1 + _SAME_VOLTS)
 
 
 def build_diode(wiring: Wiring) -> LossModel:

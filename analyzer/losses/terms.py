@@ -27,6 +27,26 @@ def buck_duty(vin: float, vout: float, diode_drop: float = 0.0, switch_drop: flo
     return 1.0 if across <= vout + diode_drop else (vout + diode_drop) / across
 
 
+def loaded_duty(vin: float, vout: float, current: float, high_side: float, low_side: float, coil: float) -> float:
+    """Duty cycle of a synchronous buck that carries `current`: D = (Vout + I·(Rls + Rdc)) / (Vin − I·(Rhs − Rls)).
+
+    From the volt-seconds of the inductor over one cycle: (Vin − I·(Rhs + Rdc) − Vout) · D = (Vout + I·(Rls + Rdc)) ·
+    (1 − D). Above the ideal Vout/Vin, most of all near dropout; 1 where the input does not suffice.
+
+    Args:
+        vin: Input voltage [V], positive.
+        vout: Output voltage [V].
+        current: Inductor current [A].
+        high_side: On-resistance of the high-side switch [Ω].
+        low_side: On-resistance of the low-side switch [Ω].
+        coil: Resistance of the inductor [Ω].
+    """
+    _not_negative(vin=vin, vout=vout, current=current, high_side=high_side, low_side=low_side, coil=coil)
+    if vin - current * (high_side + coil) <= vout:
+        return 1.0
+    return (vout + current * (low_side + coil)) / (vin - current * (high_side - low_side))
+
+
 def boost_duty(vin: float, vout: float, diode_drop: float = 0.0) -> float:
     """Duty cycle of a boost: D = 1 − Vin / (Vout + Vd), at least 0."""
     _not_negative(vin=vin, vout=vout, diode_drop=diode_drop)

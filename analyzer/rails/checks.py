@@ -27,6 +27,10 @@ def check_feeds(rails: tuple[Rail, ...], wirings: tuple[Wiring, ...]) -> Iterabl
         if len(regulators) > 1:
             listed = ", ".join(f"{feed.ref} ({_volts(feed.volts)})" for feed in regulators)
             yield kinds.PARALLEL_REGULATORS.found(rail.name, f"{rail.name} is fed by {listed}")
+        carried = sum(feed.share for feed in rail.feeds)
+        if rail.feeds and carried < 1 - 1e-6:
+            listed = ", ".join(f"{feed.ref} {feed.share:g}" for feed in rail.feeds)
+            yield kinds.SHARES_INCOMPLETE.found(rail.name, f"feeds of {rail.name} carry {carried:g} of it: {listed}")
         known = [feed for feed in rail.feeds if feed.volts is not None]
         signs = {(feed.volts.span.nominal > 0) for feed in known if feed.volts is not None and feed.volts.span.nominal}
         if len(signs) > 1:

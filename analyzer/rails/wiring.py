@@ -14,7 +14,7 @@ from analyzer.quantity import Dimension, Span
 from analyzer.rail import Outside
 from analyzer.rails.kinds import Kind, value_of
 from analyzer.rails.names import named_volts
-from analyzer.rails.network import End, network_at
+from analyzer.rails.network import End, Resistance, network_at
 from analyzer.rails.power import Power
 from analyzer.rule import SWITCHERS, Role, Topology
 
@@ -195,7 +195,14 @@ def diode_end(pin: Pin) -> str:
     return ""
 
 
+def _series_resistance(branch: Resistance) -> Evidence:
+    grade = Grade.DERIVED if branch.tolerance_stated else Grade.PRESUMED
+    note = "" if branch.tolerance_stated else "tolerance presumed"
+    return Evidence("series resistor", branch.span, "Ω", f"{branch.ref} Value '{branch.text}'", grade, note=note)
+
+
 def _outside_inductor(component: Component) -> Outside:
+    at_most = False
     value = value_of(component)
     ohms, source = (value.dcr, f"Value '{component.value}'") if value is not None else (None, "")
     for name in sorted(component.fields):
@@ -203,10 +210,13 @@ def _outside_inductor(component: Component) -> Outside:
             stated = component_value(component.fields[name])
             if stated is not None and stated.dimension is Dimension.RESISTANCE:
                 ohms, source = stated.magnitude, f"field {name} '{component.fields[name]}'"
+                at_most = "max" in name.casefold()
     resistance = None
     if ohms is not None:
         where = f"{component.ref} {source}"
-        resistance = Evidence("inductor resistance", Span.exact(ohms), "Ω", where, Grade.DERIVED)
+        # a greatest resistance says nothing of the least, and only the least is surely lost outside the part
+        span = Span(0.0, ohms, ohms) if at_most else Span.exact(ohms)
+        resistance = Evidence("inductor resistance", span, "Ω", where, Grade.DERIVED)
     return Outside(component.ref, "inductor", resistance)
 
 
@@ -348,13 +358,23 @@ def _shunt(power: Power, found: Trace) -> Trace:
     output = live[0].net
     cathode_on_ground = any(diode_end(pin) == "K" and of(pin.net) in power.ground for pin in found.part.component.pins)
     sign = -1 if cathode_on_ground or power.is_named_negative(of(output)) else found.sign
-    feeding: dict[str, float] = {}
+    feeding: dict[str, list[Outside]] = {}
     for component, _, far in power.mesh.by_group.get(of(output), ()):
         branch = power.mesh.resistance(component, of(output), far)
         if branch and (far in power.rails or power.is_entry(far)) and far not in power.ground:
-            feeding[far] = feeding.get(far, 0.0) + 1 / branch.span.nominal
-    best = max(sorted(feeding), key=lambda group: feeding[group], default=None)
-    series = [c.ref for c, _, far in power.mesh.by_group.get(of(output), ()) if far == best]
+            feeding.setdefault(far, []).append(Outside(component.ref, "resistor", _series_resistance(branch)))
+    # what several supplies feed through resistors of their own has no one input that the heat follows from
+    best = next(iter(feeding)) if len(feeding) == 1 else None
+    series = feeding[best] if best else []
     inputs = (power.mesh.members[best][0],) if best else ()
-    trouble = () if best else ("no series resistor to a supply found",)
-    return replace(found, inputs=inputs, output=output, first=tuple(series), sign=sign, is_off=False, trouble=trouble)
+    trouble = () if best else ("fed from several nets" if feeding else "no series resistor to a supply found",)
+    return replace(
+        found,
+        inputs=inputs,
+        output=output,
+        first=tuple(part.ref for part in series),
+        outside=(*found.outside, *series),
+        sign=sign,
+        is_off=False,
+        trouble=trouble,
+    )

@@ -23,7 +23,9 @@ from analyzer.rule import (
     SupplyRule,
     ThermalFigure,
     Topology,
+    figure_limits,
 )
+from analyzer.settings_tables import COLDEST, HOTTEST
 from analyzer.toml_table import Table
 
 LETTERS = ("U", "IC", "VR", "PS", "REG", "A", "N", "M", "MOD", "T", "TR", "PWR")
@@ -150,18 +152,23 @@ def _figures(table: Table, source: Source) -> tuple[dict[str, Evidence], dict[st
     for key in (key for key in FIGURES if key in table):
         figure = FIGURES[key]
         name = key.replace("_", " ")
+        low, high, above = (
+            (COLDEST, HOTTEST, False) if figure.dimension is Dimension.TEMPERATURE else figure_limits(key)
+        )
         if figure.may_be_curve and isinstance(table.raw(key), list):
-            points = _points(table, key, Dimension.CURRENT, figure.dimension)
+            points = _points(table, key, Dimension.CURRENT, figure.dimension, (low, high, above))
             if points:
                 hull = Span.hull(*(span for _, span in points))
                 curves[key] = Curve(points, "load", source.evidence(f"{name} over load", hull, figure.dimension.value))
-        elif (span := table.quantity(key, figure.dimension)) is not None:
+        elif (span := table.quantity(key, figure.dimension, low, high, above=above)) is not None:
             figures[key] = source.evidence(name, span, figure.dimension.value)
     return figures, curves
 
 
-def _points(table: Table, key: str, across: Dimension, up: Dimension) -> tuple[tuple[float, Span], ...]:
-    """A table of [x, value] rows with rising x."""
+def _points(
+    table: Table, key: str, across: Dimension, up: Dimension, limits: tuple[float, float, bool]
+) -> tuple[tuple[float, Span], ...]:
+    """A table of [x, value] rows with rising x from 0 on, the values inside (least, greatest, least excluded)."""
     rows = table.raw(key)
     found: list[tuple[float, Span]] = []
     for row in rows if isinstance(rows, list) else []:
@@ -173,8 +180,12 @@ def _points(table: Table, key: str, across: Dimension, up: Dimension) -> tuple[t
         except ValueError as error:
             table.fault(key, str(error))
             return ()
-    if len(found) < 2 or any(b[0] <= a[0] for a, b in pairwise(found)):
+    if len(found) < 2 or found[0][0] < 0 or any(b[0] <= a[0] for a, b in pairwise(found)):
         table.fault(key, "needs at least two rows, the first column rising")
+        return ()
+    low, high, above = limits
+    if any(span.low < low or span.high > high or (above and span.low == low) for _, span in found):
+        table.fault(key, "has a value outside the possible", "Check the numbers against the data sheet.")
         return ()
     return tuple(found)
 
@@ -191,6 +202,9 @@ def _efficiency_map(table: Table, source: Source) -> EfficiencyMap | None:
         try:
             load, vin = parse(row[0], Dimension.CURRENT).nominal, parse(row[1], Dimension.VOLTAGE).nominal
             points.append((load, vin, parse(row[2], Dimension.RATIO)))
+            low, high, _ = figure_limits("efficiency")
+            if load < 0 or not low < points[-1][2].low <= points[-1][2].high <= high:
+                raise ValueError(f"'{row[2]}' at '{row[0]}' is no efficiency at a load")
         except ValueError as error:
             table.fault("efficiency_map", str(error))
             return None
@@ -209,14 +223,15 @@ def _thermal(table: Table, file: str, name: str, above: Source) -> ThermalFigure
     theta = Dimension.THERMAL_RESISTANCE
     thetas: dict[str, Evidence] = {}
     for key in THETAS:
-        span = table.quantity(key, theta, 0, 2000)
+        # nothing is cooled without resistance; ψ may come near to none
+        span = table.quantity(key, theta, 0, 2000, above=key.startswith("theta"))
         if span is not None:
             symbol = key.replace("theta_", "θ").replace("psi_", "ψ").replace("_", " ")
             thetas[key] = source.evidence(symbol.upper().replace("Θ", "θ").replace("Ψ", "ψ"), span, theta.value)
     board = table.choice("board", [one.value for one in BoardClass])
     curves = {}
     for key, across, axis in (("copper", Dimension.AREA, "copper"), ("air", Dimension.SPEED, "air")):
-        if table.raw(key) is not None and (points := _points(table, key, across, theta)):
+        if table.raw(key) is not None and (points := _points(table, key, across, theta, (0, 2000, True))):
             hull = Span.hull(*(span for _, span in points))
             curves[key] = Curve(points, axis, source.evidence(f"θJA over {axis}", hull, theta.value))
     foster = _foster(table)
@@ -247,6 +262,9 @@ def _foster(table: Table) -> tuple[tuple[float, float], ...]:
             found.append((parse(row[0], Dimension.THERMAL_RESISTANCE).nominal, parse(row[1], Dimension.TIME).nominal))
         except ValueError as error:
             table.fault("foster", str(error))
+            return ()
+        if found[-1][0] <= 0 or found[-1][1] <= 0:
+            table.fault("foster", f"{row[0]}, {row[1]} is no stage", "Each needs a resistance and a time above 0.")
             return ()
     return tuple(found)
 
@@ -290,7 +308,7 @@ def package_rule(table: Table, file: str) -> PackageRule:
     theta: Mapping[BoardClass, Evidence] = {
         board: source.evidence(f"θJA of {family} (generic)", span, "K/W")
         for board in BoardClass
-        if (span := thetas.quantity(board.value, Dimension.THERMAL_RESISTANCE, 0, 2000))
+        if (span := thetas.quantity(board.value, Dimension.THERMAL_RESISTANCE, 0, 2000, above=True))
     }
     thetas.finish()
     note = table.text("note") or ""

@@ -34,7 +34,7 @@ def test_linear_below_a_buck():
     assert five.nominal == pytest.approx(0.4 + 0.1 + 0.002)
     assert five.high == pytest.approx(0.4 + 0.15 + 0.005)
     vin = found.by_rail["VIN"].total
-    assert vin.high == pytest.approx(0.555 * 5 / (0.85 * 9), rel=1e-6)
+    assert vin.high == pytest.approx(0.555 * 5 / (0.83 * 9), rel=1e-6)  # 2 points lower when hot
     assert vin.nominal == pytest.approx(0.502 * 5 / (0.9 * 12), rel=1e-6)
     assert found.input_amps["/U1", ""].span == vin
     assert {finding.name for finding in found.findings} == set()

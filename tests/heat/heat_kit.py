@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field, replace
 
+from plain_figures import plain
+
 from analyzer.circuit import Circuit, Component, Place
 from analyzer.evidence import Evidence, Grade
 from analyzer.findings.base import Finding
@@ -14,6 +16,7 @@ from analyzer.part import Channel, Package, Part
 from analyzer.quantity import Span, total
 from analyzer.rail import Feed, Outside, Rail, Rails, Wiring
 from analyzer.rule import (
+    LINEARS,
     BoardClass,
     ChannelRule,
     Curve,
@@ -59,6 +62,7 @@ class Bench:
     draws: tuple[tuple[Span, Pulse | None], ...] = ((TENTH, None),)
     gaps: int = 0
     has_load: bool = True
+    dropout_unknown: bool = False
     figures: dict[str, float | Span] = field(default_factory=lambda: {"quiescent": 0.0, "junction_max": 125.0})
     curves: dict[str, Curve] = field(default_factory=dict)
     efficiency_map: EfficiencyMap | None = None
@@ -100,7 +104,10 @@ class Bench:
         component = Component(
             f"/{self.ref}", self.ref, "REG", "Regs:Reg", "", {}, "", "", (), Place("b.kicad_sch"), self.fitted
         )
-        figures = {key: number(value, UNITS.get(key, "1"), key) for key, value in self.figures.items()}
+        given = {**plain(self.topology, self.figures, self.curves, self.efficiency_map), **self.figures}
+        if self.topology in LINEARS and not self.dropout_unknown and "dropout" not in self.curves:
+            given = {"dropout": 0.0, **given}
+        figures = {key: number(value, UNITS.get(key, "1"), key) for key, value in given.items()}
         channel = Channel(
             "", self.topology, 1, {}, figures=figures, curves=self.curves, efficiency_map=self.efficiency_map
         )

@@ -156,6 +156,7 @@ def test_the_heat_of_a_switch_follows_the_peaks_not_the_average_current() -> Non
         vout=Span.exact(5.0),
         draws=((Span.exact(2.0), pulse),),
         figures={"on_resistance": 0.05, "junction_max": 125.0},
+        theta=20.0,
     )
     entry = bench.entry()
     assert entry.worst is not None

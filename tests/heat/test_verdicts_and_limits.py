@@ -88,7 +88,6 @@ def test_factor_and_cap_of_a_policy(factor: float | None, cap: float | None, lim
         ({"power_max": 0.39}, "power-over-rating", Verdict.OVER),
         ({"dropout": 1.1}, "dropout-lost", Verdict.OVER),
         ({"dropout": 0.9}, None, Verdict.CLEAR),
-        ({}, "dropout-unknown", Verdict.CLEAR),
         ({"current_limit": 2.0}, "short-circuit-heat", Verdict.CLEAR),
     ],
 )

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from plain_figures import plain
+
 from analyzer.circuit import Component, Place
 from analyzer.evidence import Evidence, Grade
 from analyzer.losses.base import LossModel
@@ -38,7 +40,7 @@ def wiring(
     inverts: bool = False,
 ) -> Wiring:
     """A wiring of one channel with these figures."""
-    given = {key: evidence(value) for key, value in figures.items()}
+    given = {key: evidence(value) for key, value in {**plain(topology, figures, curves, mapped), **figures}.items()}
     fixed = evidence(volts) if volts else None
     channel = Channel("", topology, 1, {}, fixed, figures=given, curves=curves or {}, efficiency_map=mapped)
     component = Component("/U1", "U1", "X", "", "", {}, "", "", (), Place("a"))

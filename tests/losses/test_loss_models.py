@@ -4,10 +4,12 @@ from __future__ import annotations
 
 import random
 from collections.abc import Iterator
+from dataclasses import replace
 
 import pytest
 from losses_kit import curve, efficiency_map, evidence, model, wiring
 
+from analyzer.evidence import Grade
 from analyzer.heat.case import Case, ChannelCase, worst
 from analyzer.heat.path.base import all_air
 from analyzer.losses.base import End, Loss, LossModel, Point
@@ -284,18 +286,90 @@ def test_an_inverting_buck_takes_its_current_at_the_board_s_input() -> None:
     assert found.regulating
 
 
-def test_losses_outside_are_taken_out_of_the_part_at_their_least() -> None:
-    coil = Outside("L1", "inductor", evidence(Span(0.04, 0.05, 0.06), "Ω"))
-    diode = Outside("D1", "diode", drop=evidence(Span(0.3, 0.4, 0.5), "V"))
-    buck = model(Topology.BUCK, {"efficiency": 0.8}, outside=(coil, diode))
-    found = buck.at(Point(10.0, 5.0, 1.0), End.SEVERE)
-    # total 5 · (1/0.8 − 1) = 1.25 W; L1 1² · 0.04 W; the input's 0.625 A are the coil's 1 A for at most 0.625 of the
-    # time, so D1 has 0.3 V · 1 A for 0.375 of it at least
-    assert dict(found.elsewhere) == pytest.approx({"L1": 0.04, "D1": 0.1125})
+COIL = Outside("L1", "inductor", evidence(Span(0.04, 0.05, 0.06), "Ω"))
+DIODE = Outside("D1", "diode", drop=evidence(Span(0.3, 0.4, 0.5), "V"))
+
+
+def test_what_a_stated_efficiency_has_in_it_is_taken_out_at_its_least() -> None:
+    buck = wiring(Topology.BUCK, {"efficiency": 0.8}, outside=(COIL, DIODE))
+    here = replace(buck.channel.figures["efficiency"], grade=Grade.STATED)
+    stated = replace(buck, channel=replace(buck.channel, figures={**buck.channel.figures, "efficiency": here}))
+    found = model_of(stated).at(Point(10.0, 5.0, 1.0), End.SEVERE)
+    # total 5 · (1/0.8 − 1) = 1.25 W; L1 at least 1² · 0.04 W; the input's 0.625 A are the coil's 1 A for at most 0.625
+    # of the time, so D1 has 0.3 V · 1 A for 0.375 of it at least; at most they lose 0.06 W and 0.5 · 0.375 W
     assert found.watts == pytest.approx(1.25 - 0.04 - 0.1125)
-    unknown = model(Topology.BUCK, {"efficiency": 0.8}, outside=(Outside("L1", "inductor"),))
-    assert unknown.at(Point(10.0, 5.0, 1.0), End.SEVERE).watts == pytest.approx(1.25)
-    assert unknown.notes == ("loss of inductor L1 not known: left in the part",)
+    assert dict(found.elsewhere) == pytest.approx({"L1": 0.06, "D1": 0.1875})
+
+
+def test_a_worse_inductor_on_the_board_does_not_cool_the_part() -> None:
+    # a rule's efficiency was measured with another inductor: without its resistance nothing is taken out, with it that
+    alone = model(Topology.BUCK, {"efficiency": 0.8}, outside=(COIL,))
+    found = alone.at(Point(10.0, 5.0, 1.0), End.SEVERE)
+    assert found.watts == pytest.approx(1.25)
+    assert found.iin == pytest.approx((5.0 + 1.25 + 0.06) / 10.0)
+    assert alone.notes == ("loss of the inductor (L1 here) left in the part: the efficiency names none",)
+    ruled = model(Topology.BUCK, {"efficiency": 0.8, "inductor_resistance": Span(0.01, 0.012, 0.015)}, outside=(COIL,))
+    found = ruled.at(Point(10.0, 5.0, 1.0), End.SEVERE)
+    assert found.watts == pytest.approx(1.25 - 0.01)
+    assert dict(found.elsewhere) == pytest.approx({"L1": 0.06})
+    assert found.iin == pytest.approx((5.0 + 1.24 + 0.06) / 10.0)
+    # two coils of the measured kind side by side carry half the current each
+    twins = model(
+        Topology.BUCK, {"efficiency": 0.8, "inductor_resistance": 0.02}, outside=(COIL, Outside("L2", "inductor"))
+    )
+    assert twins.at(Point(10.0, 5.0, 1.0), End.SEVERE).watts == pytest.approx(1.25 - 0.01)
+
+
+def test_light_load_losses_are_bounded_by_the_chord() -> None:
+    # a + b·I + c·I² = 0.3 + 0.2·I + 0.1·I² W at 12 V out: η(1 A) = 12/12.6; idle 0.3 W = 24 V · 12.5 mA
+    number = model(Topology.BUCK, {"efficiency": 12 / 12.6, "quiescent": 0.0125})
+    half = number.at(Point(24.0, 12.0, 0.5), End.SEVERE)
+    assert half.watts == pytest.approx(0.3 + 6.0 * 0.05)  # true: 0.425 W
+    tabled = model(
+        Topology.BUCK, {"quiescent": 0.0125}, curves={"efficiency": curve((1.0, 12 / 12.6), (2.0, 24 / 25.1))}
+    )
+    assert tabled.at(Point(24.0, 12.0, 0.5), End.SEVERE).watts == pytest.approx((0.3 + 0.6) / 2)
+    unknown = model(Topology.BUCK, {}, curves={"efficiency": curve((1.0, 12 / 12.6), (2.0, 24 / 25.1))})
+    assert unknown.at(Point(24.0, 12.0, 0.001), End.SEVERE).watts == pytest.approx(0.6)
+
+
+def test_a_rule_s_efficiency_alone_says_nothing_of_light_loads() -> None:
+    found = wiring(Topology.BUCK, {"efficiency": 0.9})
+    figures = {key: value for key, value in found.channel.figures.items() if key != "quiescent"}
+    bare = model_of(replace(found, channel=replace(found.channel, figures=figures)))
+    assert bare.missing == ("quiescent current (what the converter loses without a load)",)
+
+
+def test_an_efficiency_of_25_degrees_is_lowered_by_two_points_on_a_hot_board() -> None:
+    # TI SNVA951 section 9: 87 % counted as 85 %: 3.3 V · 3 A · (1/0.85 − 1) = 1.747 W
+    found = wiring(Topology.BUCK, {"efficiency": 0.87})
+    figures = {key: value for key, value in found.channel.figures.items() if key != "efficiency_temperature"}
+    cold = model_of(replace(found, channel=replace(found.channel, figures=figures)))
+    assert cold.at(Point(24.0, 3.3, 3.0), End.SEVERE).watts == pytest.approx(1.747, abs=0.0005)
+    assert cold.at(Point(24.0, 3.3, 3.0), End.NOMINAL).watts == pytest.approx(1.479, abs=0.0005)
+    assert [one.grade for one in cold.used if "hot board" in one.quantity] == [Grade.PRESUMED]
+
+
+def test_a_resistance_without_a_tempco_is_presumed_to_rise() -> None:
+    # 35 mΩ at 4.4 A: 0.6776 W cold; at 125 °C 1.8 times that at most
+    found = wiring(Topology.LOAD_SWITCH, {"on_resistance": 0.035, "quiescent": 0.0})
+    figures = {key: value for key, value in found.channel.figures.items() if key != "resistance_tempco"}
+    bare = model_of(replace(found, channel=replace(found.channel, figures=figures)))
+    assert bare.at(Point(5.0, 5.0, 4.4, 125.0), End.SEVERE).watts == pytest.approx(0.6776 * 1.8)
+    assert bare.heats
+    assert [one.grade for one in bare.used if one.quantity == "resistance tempco"] == [Grade.PRESUMED]
+
+
+def test_a_pass_transistor_whose_input_falls_to_its_output_still_takes_the_difference() -> None:
+    # (16 − 4.9) V · 1 A, though 5 V in would leave it nothing to take
+    def series(vin: Span, vout: Span):
+        found = wiring(Topology.SERIES_TRANSISTOR, {"on_resistance": 0.02, "quiescent": 0.0})
+        return model_of(replace(found, vin=evidence(vin, "V"), vout=evidence(vout, "V")))
+
+    passing = series(Span(5.0, 12.0, 16.0), Span(4.9, 5.0, 5.1))
+    assert passing.at(Point(16.0, 4.9, 1.0), End.SEVERE).watts == pytest.approx(11.1)
+    switch = series(Span(4.75, 5.0, 5.25), Span(4.75, 5.0, 5.25))
+    assert switch.at(Point(5.25, 4.75, 1.0), End.SEVERE).watts == pytest.approx(0.02)
 
 
 def test_a_diode_that_warms_is_not_credited_for_it() -> None:

@@ -25,7 +25,11 @@ def thermal_path(
     """The path, or what is missing for one, in words."""
     design, why = design_class(circuit, settings, stated)
     figure = _closest(part.thermal, design)
-    found = _measured(stated, figure) or _sink(stated)
+    found = _measured(stated, figure)
+    if found is None and (stated.case_measured is not None or stated.board_measured is not None):
+        # a measured temperature that is left unused would let the budget say less than is known
+        return f"{'ψJT' if stated.case_measured is not None else 'ψJB'} for the measured temperature"
+    found = found or _sink(stated)
     if found is not None:
         return found
     if stated.theta_ja is not None:
@@ -80,7 +84,8 @@ def _copper(
     pour = stated.pour or settings.board.pour
     if figure.copper is None or pour is None:
         return None
-    if figure.board is BoardClass.HIGH and correction(part.package.family, figure.board, design) > 1:
+    measured = figure.board or BoardClass.HIGH
+    if measured is BoardClass.HIGH and correction(part.package.family, measured, design) > 1:
         # measured over inner planes that this board has not: the copper alone does not make up for them
         return None
     return _from_table(figure.copper, pour, f"θJA at {pour.span.low * 1e6:.0f} mm² of copper")

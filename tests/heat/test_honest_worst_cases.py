@@ -1,0 +1,191 @@
+"""Cases in which a first thought finds too little heat, or overlooks that the output is lost: none may be clear."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import pytest
+from heat_kit import Bench, close, names, number
+
+from analyzer.circuit import Circuit
+from analyzer.findings.base import Verdict
+from analyzer.heat import close_entries
+from analyzer.load import Loads, Pulse
+from analyzer.quantity import Span
+from analyzer.rail import Feed, Outside, Rail, Rails
+from analyzer.rule import BoardClass, Curve, Rulebook, Topology
+from analyzer.settings import Board, Coupling, PartStatement, Settings
+
+EXACT = Span.exact
+PULSES = Pulse(EXACT(0.11), 1.0, 100.0)
+
+
+def resistor(ohms: float) -> Outside:
+    return Outside("R1", "resistor", number(ohms, "Ω"))
+
+
+def test_a_shunt_is_hottest_while_nothing_pulses() -> None:
+    # 12 V · (24 − 12) V / 100 Ω = 1.44 W at rest, 40 + 60 · 1.44 = 126.4 °C; in the pulse 12 · (0.12 − 0.11) = 0.12 W
+    bench = Bench(
+        topology=Topology.SHUNT,
+        vin=EXACT(24.0),
+        vout=EXACT(12.0),
+        draws=((EXACT(0.0011), PULSES),),
+        figures={"minimum_cathode_current": 0.001, "junction_max": 150.0},
+        outside=(resistor(100.0),),
+        theta=60.0,
+    )
+    for pulse in (PULSES, replace(PULSES, on_seconds=0.001, period_seconds=None)):
+        entry = bench.but(draws=((EXACT(0.0011), pulse),)).entry()
+        assert entry.worst is not None
+        assert entry.worst.junction == pytest.approx(126.4)
+
+
+def test_pulses_that_do_not_meet_may_heat_a_converter_more_than_all_together() -> None:
+    # η 0.5 at 0.1 A and 0.95 at 1 A: at 0.5 A it is 0.7 and the loss 3.3 · 0.5 · (1/0.7 − 1) = 0.7071 W
+    table = Curve(((0.1, EXACT(0.5)), (1.0, EXACT(0.95))), "load", number(Span(0.5, 0.7, 0.95), "1"))
+    pulse = Pulse(EXACT(0.5), 1.0, 100.0)
+    bench = Bench(
+        topology=Topology.BUCK,
+        vin=EXACT(12.0),
+        draws=((EXACT(0.005), pulse), (EXACT(0.005), pulse)),
+        figures={"junction_max": 125.0},
+        curves={"efficiency": table},
+        theta=120.0,
+    )
+    entry = bench.entry()
+    assert entry.worst is not None
+    assert entry.worst.watts >= 0.7071
+    assert entry.verdict is Verdict.OVER
+
+
+@pytest.mark.parametrize("spot", ["case_measured", "board_measured"])
+def test_a_measured_temperature_that_no_psi_can_use_leaves_the_budget_open(spot: str) -> None:
+    entry = Bench(statement=PartStatement(**{spot: number(130.0, "°C")})).entry()
+    assert entry.verdict is Verdict.OPEN
+    assert entry.missing[0] == f"{'ψJT' if spot == 'case_measured' else 'ψJB'} for the measured temperature"
+
+
+def test_short_pulses_count_in_full_above_a_heat_sink() -> None:
+    # 3.12 + 0.5 K/W and a sink of 1.5: 7 V · 8 A = 56 W for 10 ms; most of θJC is reached in that time
+    sink = (number(3.12, "K/W"), number(0.5, "K/W"), number(1.5, "K/W"))
+    bench = Bench(
+        vin=EXACT(12.0),
+        vout=EXACT(5.0),
+        draws=((EXACT(0.8), Pulse(EXACT(8.0), 0.010, 0.100)),),
+        statement=PartStatement(heat_sink=sink),
+    )
+    entry = bench.entry()
+    assert entry.worst is not None
+    assert entry.worst.watts == pytest.approx(56.0)
+    assert entry.verdict is Verdict.OVER
+
+
+@pytest.mark.parametrize(("vin", "lack"), [(5.2, "1.90 V"), (3.4, "100 mV")])
+def test_little_room_and_no_dropout_known_stays_open(vin: float, lack: str) -> None:
+    entry = Bench(vin=EXACT(vin), dropout_unknown=True).entry()
+    assert entry.verdict is Verdict.OPEN
+    assert entry.missing == (f"dropout (only {lack} left between lowest input and highest output)",)
+    assert Bench(vin=EXACT(5.31), dropout_unknown=True).entry().verdict is Verdict.CLEAR
+
+
+def test_a_linear_part_between_rails_of_opposite_sign_stays_open() -> None:
+    entry = Bench(vin=EXACT(12.0), vout=EXACT(-5.0)).entry()
+    assert entry.verdict is Verdict.OPEN
+    assert entry.missing == (
+        "input and output of opposite signs (12.0 V and -5.00 V), which a linear part does not make",
+    )
+
+
+def test_a_boost_with_more_input_than_output_is_over() -> None:
+    bench = Bench(
+        topology=Topology.BOOST, vin=EXACT(12.0), vout=EXACT(5.0), figures={"efficiency": 0.9, "junction_max": 125.0}
+    )
+    entry = bench.entry()
+    assert entry.verdict is Verdict.OVER
+    assert "input-above-output" in names(entry)
+    (found,) = [one for one in entry.findings if one.name == "input-above-output"]
+    assert found.message == "input up to 12.0 V is above the output 5.00 V"
+    assert bench.but(vin=EXACT(4.9)).entry().verdict is Verdict.CLEAR
+
+
+@pytest.mark.parametrize(("vin", "is_lost"), [(5.0, True), (5.009, True), (5.5, False)])
+def test_a_buck_needs_what_its_switch_takes(vin: float, is_lost: bool) -> None:
+    # 0.1 A · 0.1 Ω = 10 mV
+    terms = {
+        "high_side_resistance": 0.1,
+        "low_side_resistance": 0.05,
+        "switching_frequency": 500e3,
+        "rise_time": 1e-8,
+        "fall_time": 1e-8,
+        "quiescent": 0.001,
+        "junction_max": 125.0,
+    }
+    entry = Bench(topology=Topology.BUCK, vin=EXACT(vin), vout=EXACT(5.0), figures=terms).entry()
+    assert ("dropout-lost" in names(entry)) is is_lost
+    assert entry.verdict is (Verdict.OVER if is_lost else Verdict.CLEAR)
+
+
+def test_a_starved_shunt_is_over() -> None:
+    # (12.5 − 12) V / 100 Ω = 5 mA at the lowest input, the load takes 100 mA
+    bench = Bench(
+        topology=Topology.SHUNT,
+        vin=Span(12.5, 18.0, 24.0),
+        vout=EXACT(12.0),
+        figures={"junction_max": 150.0},
+        outside=(resistor(100.0),),
+    )
+    entry = bench.entry()
+    assert entry.verdict is Verdict.OVER
+    assert "dropout-lost" in names(entry)
+
+
+def test_a_limit_stated_above_the_data_sheet_s_is_never_clear() -> None:
+    entry = Bench(statement=PartStatement(junction_max=number(175.0, "°C"))).entry()
+    assert entry.verdict is Verdict.TIGHT
+    assert "limit-raised" in names(entry)
+    assert Bench(statement=PartStatement(junction_max=number(110.0, "°C"))).entry().verdict is Verdict.CLEAR
+
+
+def test_the_heat_of_a_neighbour_in_doubt_is_not_known() -> None:
+    warm = Bench(ref="U9", why_open=("two outputs are joined",))
+    pair = Settings(coupling=(Coupling("U1", "U9", number(5.0, "K/W")),))
+    cool, _ = close([Bench(), warm], pair)
+    assert cool.verdict is Verdict.OPEN
+    assert cool.missing == ("heat of its neighbour U9",)
+
+
+def test_a_neighbour_whose_heat_rises_with_a_junction_that_is_not_known() -> None:
+    switch = Bench(
+        ref="U9",
+        topology=Topology.LOAD_SWITCH,
+        vout=EXACT(5.0),
+        figures={"on_resistance": 0.1, "resistance_tempco": 0.005, "junction_max": 125.0},
+        theta=None,
+        package=None,
+    )
+    pair = Settings(coupling=(Coupling("U1", "U9", number(5.0, "K/W")),))
+    cool, _ = close([Bench(), switch], pair)
+    assert cool.missing == ("heat of its neighbour U9",)
+
+
+def test_a_package_whose_first_channel_is_a_mere_passage_has_an_entry() -> None:
+    # (12 − 5) V · 1 A · 50 K/W = 350 K above 40 °C
+    part, wiring, load = Bench(vin=EXACT(12.0), vout=EXACT(5.0), draws=((EXACT(1.0), None),)).parts()
+    switch = replace(part.channels[0], name="S", topology=Topology.LOAD_SWITCH, figures={})
+    both = replace(part, channels=(switch, part.channels[0]))
+    assert load is not None
+    rails = Rails((Rail("OUT_U1", (), feeds=(Feed("U1", "regulator"),)),), (replace(wiring, part=both),))
+    settings = Settings(board=Board(board_class=BoardClass.HIGH))
+    limit = {"U1": PartStatement(junction_max=number(125.0, "°C"))}
+    (entry,) = close_entries(
+        Circuit("test", (), ()),
+        (both,),
+        rails,
+        Loads({"OUT_U1": load}),
+        Rulebook((), (), (), ()),
+        replace(settings, parts=limit),
+    )
+    assert entry.verdict is Verdict.OVER
+    assert entry.worst is not None
+    assert entry.worst.junction == pytest.approx(390.0)
