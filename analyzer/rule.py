@@ -270,6 +270,8 @@ class Curve:
         if not self.lowest <= x <= self.highest:
             raise ValueError(f"{x:g} lies outside the table ({self.lowest:g} to {self.highest:g})")
         for (x0, low), (x1, high) in zip(self.points, self.points[1:], strict=False):
+            if x == x1:
+                return high  # by the formula below rounding may put its ends out of order
             if x <= x1:
                 share = (x - x0) / (x1 - x0)
                 return Span(

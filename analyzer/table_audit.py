@@ -24,6 +24,7 @@ from analyzer.recognise.by_rule import Index, channels_of
 from analyzer.recognise.identity import identities
 from analyzer.recognise.package import read_package
 from analyzer.rule import Rulebook, Topology
+from analyzer.wording import show
 
 Stages = tuple[Circuit, tuple[Part, ...], Rails, Loads, list[Finding]]
 
@@ -90,6 +91,10 @@ def _wiring(part: Part, row: Row, rail: str) -> Wiring:
     vin = _volts(row, "vin", "input voltage")
     net = f"input of {part.ref}"
     why = ("a shunt regulator's resistor cannot stand in a table",) if channel.topology is Topology.SHUNT else ()
+    said = channel.volts
+    if said is not None and vout is not None and not said.span.overlaps(vout.span):
+        shown = f"{show(vout.span.nominal, 'V')}, the part number {show(said.span.nominal, 'V')}"
+        why = (*why, f"its output voltage: the row says {shown}")
     if len(part.channels) > 1:
         others = ", ".join(one.name or "?" for one in part.channels[1:])
         why = (*why, f"a table's row holds one output, the part has more: {others}")

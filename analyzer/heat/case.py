@@ -196,7 +196,7 @@ def _climbed(one: ChannelCase, best: tuple[Point, Loss]) -> tuple[Point, Loss]:
     found, stretch = best, None
     for vin, vout in sorted({(point.vin, point.vout) for point in points}):
         for left, right in itertools.pairwise(loads):
-            for share in (0.125, 0.25, 0.5, 0.75):
+            for share in (0.125, 0.25, 0.5, 0.75, 0.9, 0.97):
                 point = replace(best[0], vin=vin, vout=vout, iout=left + share * (right - left))
                 loss = one.model.at(point, End.SEVERE)
                 if loss.watts > found[1].watts:

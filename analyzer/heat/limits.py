@@ -36,18 +36,24 @@ class Limits:
         return min(self.data_sheet, self.policy)
 
 
+def least(part: Part, key: str) -> Evidence | None:
+    """The lowest of a rating over the channels of a part: they share the die and the package."""
+    found = [channel.figures[key] for channel in part.channels if key in channel.figures]
+    return min(found, key=lambda evidence: evidence.span.low, default=None)
+
+
 def limits_of(part: Part, stated: PartStatement, policy: Policy) -> Limits | str:
     """The limits of a part, or what is missing, in words."""
     findings: tuple[Finding, ...] = ()
-    figures = part.channels[0].figures
-    found = stated.junction_max or figures.get("junction_max")
+    operating, absolute = least(part, "junction_max"), least(part, "junction_absolute_max")
+    found = stated.junction_max or operating
     if found is None:
-        found = figures.get("junction_absolute_max")
+        found = absolute
         if found is None:
             return "junction limit"
         message = f"only the absolute maximum of {show(found.span.low, '°C')} is known"
         findings = (kinds.ABSOLUTE_LIMIT.found(part.ref, message, found.source, key=part.key),)
-    given = figures.get("junction_max") or figures.get("junction_absolute_max")
+    given = operating or absolute
     if stated.junction_max is not None and given is not None and found.span.low > given.span.low:
         message = f"stated limit {show(found.span.low, '°C')}, the rule gives {show(given.span.low, '°C')}"
         findings = (kinds.LIMIT_RAISED.found(part.ref, message, found.source, key=part.key),)

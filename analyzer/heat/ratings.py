@@ -10,6 +10,7 @@ from analyzer.findings.base import Finding
 from analyzer.heat.altitude import UNCHECKED_ABOVE
 from analyzer.heat.case import ChannelCase, Worked
 from analyzer.heat.draft import Draft
+from analyzer.heat.limits import least
 from analyzer.losses.base import End, Point
 from analyzer.losses.dispatch import HOT_CELSIUS
 from analyzer.losses.linear import short_circuit_heat
@@ -188,7 +189,7 @@ def _short(draft: Draft, one: ChannelCase) -> Iterator[Finding]:
 def power_findings(draft: Draft, worst: Worked) -> Iterator[Finding]:
     """The package's power limit, and what of the loss is in other parts."""
     part = draft.part
-    rating = part.channels[0].figures.get("power_max")
+    rating = least(part, "power_max")
     if rating is not None and worst.watts > rating.span.low:
         message = f"heat {show(worst.watts, 'W')}, the package is limited to {show(rating.span.low, 'W')}"
         yield kinds.POWER_OVER_RATING.found(part.ref, message, rating.source, key=part.key)

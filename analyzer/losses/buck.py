@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from analyzer.losses import efficiency, terms
-from analyzer.losses.base import End, Figures, Loss, LossModel, Point, high, lacking, outside
+from analyzer.losses.base import REFERENCE_CELSIUS, End, Figures, Loss, LossModel, Point, high, lacking, outside
 from analyzer.losses.elsewhere import OPPOSITE, Outsides, outside_notes, outsides, outsides_measured
 from analyzer.rail import Wiring
 from analyzer.wording import show
@@ -123,11 +123,23 @@ def _from_terms(wiring: Wiring) -> LossModel:
     def at(point: Point, end: End) -> Loss:
         return _terms_at(wiring, figures, others, point, end, inverts)
 
+    def interior(low: float, high: float, vout: float, iout: float) -> tuple[float, ...]:
+        """Where the duty reaches 1 the heat has a peak: cold and hot, with and without the inductor's resistance."""
+        coil = others.inductor[1].high if others.inductor else 0.0
+        across = figures.high("high_side_resistance", End.SEVERE, default=0.0)
+        drop = figures.high("saturation_voltage", End.SEVERE, default=0.0)
+        kinks = {
+            vout + drop + iout * (across * figures.hot(End.SEVERE, junction) + dcr)
+            for junction in (REFERENCE_CELSIUS, 75.0, 125.0)
+            for dcr in (0.0, coil)
+        }
+        return (*interior_voltages(low, high, vout, iout), *(edge for edge in sorted(kinks) if low < edge < high))
+
     return LossModel(
         at,
         tuple(dict.fromkeys((*figures.used(*_KEYS), *others.used))),
         notes=outside_notes(wiring, others),
-        interior=interior_voltages,
+        interior=interior,
         heats=figures.has("resistance_tempco"),
     )
 
@@ -151,7 +163,9 @@ def _terms_at(wiring: Wiring, figures: Figures, others: Outsides, point: Point, 
         duty = terms.loaded_duty(vin, point.vout, load, resistance, low_side, dcr)
     else:
         duty = terms.buck_duty(vin, point.vout, drop, min(switch_drop, vin))
-    coil = load / (1 - duty) if inverts and duty < 1 else load
+    if inverts and duty >= 1:
+        raise ValueError(f"no duty cycle makes {show(point.vout, 'V')} from {show(vin - point.vout, 'V')} in")
+    coil = load / (1 - duty) if inverts else load
     frequency = figures.high("switching_frequency", end)
     rise, fall = figures.high("rise_time", end), figures.high("fall_time", end)
     found = [

@@ -142,7 +142,8 @@ def interpolated(table: EfficiencyMap, load: float, vin: float) -> Span:
         far = corner(grid[x0, y1]) * (1 - across) + corner(grid[x1, y1]) * across
         return near * (1 - up) + far * up
 
-    return Span(mixed(lambda s: s.low), mixed(lambda s: s.nominal), mixed(lambda s: s.high))
+    # rounding may put equal ends out of order
+    return Span(*sorted((mixed(lambda s: s.low), mixed(lambda s: s.nominal), mixed(lambda s: s.high))))
 
 
 def _between(knots: list[float], x: float) -> tuple[float, float, float]:

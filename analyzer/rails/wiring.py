@@ -89,7 +89,7 @@ def _trace(power: Power, part: Part, channel: Channel) -> Trace:
     if channel.topology in SWITCHERS and channel.topology is not Topology.MODULE:
         found = _switcher(power, found)
     else:
-        found = replace(found, output=_output_pin(power, found))
+        found = replace(found, output=_output_pin(power, found), trouble=(*found.trouble, *_spread(power, found)))
     if found.output is None and not found.is_off:
         found = _by_feedback(power, found)
     if not found.inputs:
@@ -136,6 +136,28 @@ def _output_pin(power: Power, found: Trace) -> str | None:
     ]
     live = [net for net in wired if power.mesh.groups.of(net) not in power.ground or found.channel.sign < 0]
     return next(iter((*live, *wired)), None)
+
+
+def _spread(power: Power, found: Trace) -> tuple[str, ...]:
+    """What one channel cannot be: pins of its output, or of its power input, on several live rails.
+
+    The load or the voltage of all but one would be in no budget.
+    """
+    of, rails = power.mesh.groups.of, power.rails - power.ground
+    pins = found.channel.pins
+    outputs = [pin.net for pin in pins.get(Role.OUTPUT, ()) if of(pin.net) in rails]
+    inputs = [
+        pin.net
+        for pin in pins.get(Role.INPUT, ())
+        if of(pin.net) in rails and _POWER_INPUT.fullmatch(plain_name(pin.name).upper())
+    ]
+    if found.channel.topology is Topology.POWER_MUX:
+        inputs = []
+    return tuple(
+        f"{what} pins on several rails: {', '.join(nets)}"
+        for what, nets in (("output", _one_each(power, tuple(outputs))), ("input", _one_each(power, tuple(inputs))))
+        if len(nets) > 1
+    )
 
 
 def _is_wired(power: Power, net: str) -> bool:

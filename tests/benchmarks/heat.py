@@ -9,8 +9,8 @@ import sys
 import time
 from pathlib import Path
 
-TESTS = Path(__file__).resolve().parent.parent
-sys.path[:0] = [str(TESTS), str(TESTS / "heat")]
+sys.path.insert(0, str(Path(__file__).resolve().parent.parent))
+sys.path.insert(0, str(Path(__file__).resolve().parent.parent / "heat"))
 
 from heat_kit import Bench, close
 

@@ -10,11 +10,12 @@ from heat_kit import Bench, close, names, number
 from analyzer.circuit import Circuit
 from analyzer.findings.base import Verdict
 from analyzer.heat import close_entries
+from analyzer.heat.limits import Limits, limits_of
 from analyzer.load import Loads, Pulse
 from analyzer.quantity import Span
 from analyzer.rail import Feed, Outside, Rail, Rails
 from analyzer.rule import BoardClass, Curve, Rulebook, Topology
-from analyzer.settings import Board, Coupling, PartStatement, Settings
+from analyzer.settings import Board, Coupling, PartStatement, Policy, Settings
 
 EXACT = Span.exact
 PULSES = Pulse(EXACT(0.11), 1.0, 100.0)
@@ -189,3 +190,11 @@ def test_a_package_whose_first_channel_is_a_mere_passage_has_an_entry() -> None:
     assert entry.verdict is Verdict.OVER
     assert entry.worst is not None
     assert entry.worst.junction == pytest.approx(390.0)
+
+
+def test_the_lowest_limit_of_all_channels_holds() -> None:
+    part = Bench().parts()[0]
+    other = replace(part.channels[0], name="B", figures={"junction_max": number(85.0, "°C")})
+    limits = limits_of(replace(part, channels=(part.channels[0], other)), PartStatement(), Policy())
+    assert isinstance(limits, Limits)
+    assert (limits.data_sheet, limits.policy) == (85.0, 75.0)

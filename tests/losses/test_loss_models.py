@@ -381,3 +381,43 @@ def test_a_table_over_the_load_is_held_level_below_its_first_point() -> None:
     found = model(Topology.LINEAR, {}, curves={"ground_current": curve((0.01, 0.001), (0.1, 0.003))})
     assert found.at(Point(5.0, 3.0, 0.0), End.NOMINAL).watts == pytest.approx(0.005)
     assert found.loads == (0.01, 0.1)
+
+
+def test_the_heat_of_a_buck_peaks_where_its_duty_reaches_one() -> None:
+    # 3 to 15 V in, 3.3 V, 2 A, 0.4 Ω, 2 MHz, 40 ns, external diode: D = 1 up to 3.3 + 2 · 0.4 = 4.1 V, and there
+    # 2² · 0.4 + 0.5 · 4.1 · 2 · 2 MHz · 40 ns + 4.1 · 1 mA = 1.6 + 0.328 + 0.0041 W
+    figures = {
+        "high_side_resistance": 0.4,
+        "switching_frequency": 2e6,
+        "rise_time": 2e-8,
+        "fall_time": 2e-8,
+        "quiescent": 0.001,
+        "diode_drop": 0.5,
+    }
+    found = wiring(Topology.BUCK, figures)
+    one = ChannelCase(found, model_of(found), Span(3.0, 9.0, 15.0), Span.exact(3.3), Span.exact(2.0))
+    hottest = worst(Case((one,), None, Span.exact(40.0), (1.0, 1.0)))
+    assert hottest.watts == pytest.approx(1.9321, abs=1e-4)
+    assert hottest.chosen[0].point.vin == pytest.approx(4.1)
+
+
+def test_a_buck_wired_as_inverter_that_cannot_make_its_voltage_has_no_loss_to_tell() -> None:
+    figures = {
+        "high_side_resistance": 0.2,
+        "switching_frequency": 5e5,
+        "rise_time": 1e-8,
+        "fall_time": 1e-8,
+        "quiescent": 0.001,
+        "diode_drop": 0.5,
+    }
+    inverter = model(Topology.BUCK, figures, inverts=True)
+    # D = (12 + 0.5)/(17 + 0.5 − 0.2 · Icoil) ≥ 1 once the coil carries 25 A
+    with pytest.raises(ValueError, match=r"no duty cycle makes 12\.0 V from 5\.00 V in"):
+        inverter.at(Point(17.0, 12.0, 7.36), End.SEVERE)
+
+
+def test_a_table_is_itself_at_its_knots() -> None:
+    # 0.1 + (1 − 0.1)/(1 − 0.1) · (0.45 − 0.1) is not 0.45 in binary
+    table = curve((0.1, Span(0.05, 0.05, 0.1)), (1.0, 0.45))
+    assert table.at(1.0) == Span.exact(0.45)
+    assert table.at(0.1) == Span(0.05, 0.05, 0.1)

@@ -536,3 +536,26 @@ def test_shares_that_leave_part_of_the_load_to_nobody(share: float, message: str
     rails = find(known, J12, taker, settings=Settings(parts={"U1": PartStatement(share=share)}))
     assert [one.message for one in rails.findings if one.name == "shares-incomplete"] == [message]
     assert not [one for one in find(known, J12, taker).findings if one.name == "shares-incomplete"]
+
+
+@pytest.mark.parametrize(
+    ("pins", "why"),
+    [
+        ({"1 VIN power_in": "+12V", "4 VOUT1 power_out": "+5V", "5 VOUT2 power_out": "+5VB"}, "output pins on several"),
+        ({"1 VIN1 power_in": "+12V", "4 VIN2 power_in": "+24V", "5 VOUT power_out": "+5V"}, "input pins on several"),
+    ],
+)
+def test_pins_of_one_channel_on_several_rails_leave_it_open(pins: dict[str, str], why: str) -> None:
+    chip = part("U1", "XL5", {**pins, "2 GND power_in": "GND"})
+    takers = [
+        part("C1", "1u", "+5V GND"),
+        part("U2", "MCU", {"1 VDD power_in": "+5VB", "2 VSS power_in": "GND"}),
+        part("J3", "Conn", {"1 Pin_1": "+24V", "2 Pin_2": "GND"}),
+    ]
+    roles = {
+        Role.INPUT: ",".join(key[0] for key in pins if "VIN" in key),
+        Role.OUTPUT: ",".join(key[0] for key in pins if "VOUT" in key),
+        Role.GROUND: "2",
+    }
+    known = recognised(chip, Topology.LINEAR, volts=5.0, roles=roles)
+    assert why in " ".join(only(find(known, J12, *takers)).why_open)
