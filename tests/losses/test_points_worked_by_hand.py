@@ -111,8 +111,6 @@ GRID = efficiency_map(
         (0.1, 8.5, 0.75),
         # 0.25 of the way from 1 A to 3 A, 2/7 of the way from 5 V to 12 V: 0.89 and 0.835 mixed
         (1.5, 7.0, 0.89 * 5 / 7 + 0.835 * 2 / 7),
-        # below its first load the efficiency is held
-        (0.01, 12.0, 0.70),
     ],
 )
 def test_an_efficiency_map_at_its_knots_edges_and_between(load: float, vin: float, eta: float) -> None:
@@ -192,3 +190,8 @@ def test_a_controller_heats_by_its_own_current_and_by_what_drives_the_gates(end:
 def test_a_ground_current_table_ends_at_its_last_knot_inclusive() -> None:
     pnp = model(Topology.LINEAR, {}, curves={"ground_current": curve((0.1, 0.002), (0.5, 0.011))})
     assert pnp.at(Point(6.0, 5.0, 0.5), End.SEVERE).watts == pytest.approx(0.5 + 6.0 * 0.011)
+
+
+def test_below_a_map_s_first_load_the_loss_there_is_held() -> None:
+    found = model(Topology.BUCK, {}, mapped=GRID).at(Point(12.0, 3.3, 0.01), End.SEVERE)
+    assert found.watts == pytest.approx(3.3 * 0.1 * (1 / 0.70 - 1))
