@@ -43,7 +43,9 @@ def build(wiring: Wiring) -> LossModel:
         drive = figures.high("drive_fraction", end, default=0.0)
         own = figures.high("quiescent", end, default=0.0) + drive * point.iout
         sag = point.iout * figures.high("output_resistance", end, default=0.0)
-        vout = max(0.0, min(point.vout, gain * point.vin - sag))
+        # without regulation the output is what the input and the load leave, whatever it was named or found to be
+        left = max(0.0, gain * point.vin - sag)
+        vout = min(point.vout, left) if regulates else left
         return Loss(
             pump_heat(point.vin, vout, point.iout, gain, own),
             gain * point.iout + own,

@@ -1,4 +1,8 @@
-"""Linear battery chargers: hottest with an empty battery at full charge current."""
+"""Linear battery chargers: hottest with an empty battery at full charge current.
+
+What hangs on the battery pin is inside the charge current, which the part regulates as a sum. A power path that feeds
+the system past it is a channel of its own in the rule, of kind load-switch or ideal-diode.
+"""
 
 from __future__ import annotations
 

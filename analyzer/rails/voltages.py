@@ -13,6 +13,7 @@ from analyzer.rails.ground import is_ground_pin
 from analyzer.rails.names import named_volts
 from analyzer.rails.network import End, Leg, Network, network_at
 from analyzer.rails.power import Power
+from analyzer.rails.programming import set_resistance
 from analyzer.rails.reference_text import reference_from_text
 from analyzer.rails.wiring import Trace
 from analyzer.rule import LINEARS, Role, Topology
@@ -287,25 +288,19 @@ def _by_set_current(
     power: Power, trace: Trace, settings: Settings
 ) -> tuple[Evidence | None, tuple[str, ...], tuple[str, ...]]:
     """A current from the SET pin through its resistance to ground is the output voltage."""
-    tap = power.mesh.groups.of(trace.channel.pins[Role.SET][0].net)
-    network = network_at(power.mesh, tap, None, frozenset(), power.is_rail, trace.part.key)
+    ohms, why = set_resistance(power, trace, settings)
+    if ohms is None:
+        return None, why, ()
     current = trace.channel.figures["set_current"]
-    if network.trouble or network.trimmers or network.switches or len(network.legs_of(End.GROUND)) != len(network.legs):
-        return None, network.trouble or ("the network at the SET pin is not plain resistance to ground",), ()
-    parallel = [item for item in network.resistances if tap in (item.one, item.other)]
-    if not parallel or len(parallel) != len(network.resistances):
-        return None, ("the network at the SET pin is not plain resistance to ground",), ()
-    low, nominal, high = (1 / sum(1 / item.span.corners[corner] for item in parallel) for corner in (0, 1, 2))
-    span = Span(current.span.low * low, current.span.nominal * nominal, current.span.high * high)
-    parents = (current,) if all(item.tolerance_stated for item in parallel) else (current, settings.resistor_tolerance)
+    span = Span(*(amps * each for amps, each in zip(current.span.corners, ohms.span.corners, strict=True)))
     evidence = Evidence(
         "output voltage",
         span,
         "V",
-        f"{trace.part.ref} SET resistor",
+        ohms.source,
         Grade.DERIVED,
-        f"{current.span.nominal:g} A · {nominal:g} Ω",
-        parents,
+        f"{current.span.nominal:g} A · {ohms.span.nominal:g} Ω",
+        (current, *ohms.parents),
     )
     return evidence, (), ()
 

@@ -9,6 +9,7 @@ from analyzer.quantity import Span
 from analyzer.rail import Wiring
 from analyzer.rails.levels import Levels
 from analyzer.rails.power import Power
+from analyzer.rails.programming import programmed
 from analyzer.rails.wiring import Trace
 from analyzer.rule import PASSAGES, Topology
 from analyzer.settings import Settings
@@ -26,11 +27,12 @@ def wiring(
     output_group = of(one.output) if one.output else None
     ground_group = of(one.ground) if one.ground else None
     control = of(one.control) if one.control else None
+    channel, why_set = programmed(power, one, settings)
     vin, why_in = _vin(power, levels, one, input_group, ground_group, settings)
     vout, why_out = _vout(levels, one, output_group)
     return Wiring(
         part=one.part,
-        channel=one.channel,
+        channel=channel,
         input_net=input_net,
         input_rail=names.get(input_group) if input_group else None,
         output_net=one.output,
@@ -43,7 +45,7 @@ def wiring(
         through=through,
         outside=one.outside,
         has_other_feed=any(edge.ref != one.part.ref for edge in levels.feeds_of(output_group or "")),
-        why_open=tuple(dict.fromkeys((*one.trouble, *why_in, *why_out))),
+        why_open=tuple(dict.fromkeys((*one.trouble, *why_set, *why_in, *why_out))),
     )
 
 
