@@ -128,7 +128,9 @@ _D = Dimension
 SIGNED_FIGURES = frozenset({"feedback_current", "resistance_tempco", "forward_drop_tempco", "efficiency_hot_loss"})
 """Figures that may be negative."""
 
-SOME_FIGURES = frozenset({"on_resistance", "high_side_resistance", "output_resistance", "switching_frequency", "gain"})
+SOME_FIGURES = frozenset(
+    {"on_resistance", "high_side_resistance", "output_resistance", "switching_frequency", "gain", "control_ratio"}
+)
 """Figures of which none would be less than any part has."""
 
 
@@ -170,6 +172,7 @@ FIGURES: Mapping[str, FigureKey] = {
     "control_ratio": FigureKey(_D.RATIO, "load current divided by control current", "electrical characteristics"),
     "minimum_load": FigureKey(_D.CURRENT, "least load for regulation", "electrical characteristics"),
     "efficiency": FigureKey(_D.RATIO, "output over input power", "efficiency figure", True),
+    "efficiency_output": FigureKey(_D.VOLTAGE, "output voltage the efficiency was measured at", "efficiency figure"),
     "efficiency_temperature": FigureKey(
         _D.TEMPERATURE, "temperature the efficiency was measured at", "efficiency figure"
     ),

@@ -20,6 +20,8 @@ def plain(
         found["efficiency_temperature"] = 125.0
     if "efficiency" in figures and topology is not Topology.CONTROLLER:
         found["quiescent"] = 0.0
+    if mapped is not None or "efficiency" in {*figures, *(curves or {})}:
+        found["efficiency_output"] = 0.0
     if any(key in figures for key in ("on_resistance", "high_side_resistance", "low_side_resistance")):
         found["resistance_tempco"] = 0.0
     return found

@@ -136,6 +136,12 @@ ABSOLUTE_LIMIT = FindingKind(
     "Only the absolute maximum junction temperature is known; it is no operating limit.",
     "Supply the recommended operating limit.",
 )
+NOT_RATED = FindingKind(
+    "rating-not-checked",
+    Weight.NOTE,
+    "A rating of the part is not known, so its input voltage or load was compared with nothing.",
+    "Supply input_max and output_current_max in the part's rule.",
+)
 LIMIT_RAISED = FindingKind(
     "limit-raised",
     Weight.TIGHT,

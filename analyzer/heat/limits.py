@@ -4,12 +4,16 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from analyzer.evidence import Evidence
+from analyzer.evidence import Evidence, Grade
 from analyzer.findings import heat as kinds
 from analyzer.findings.base import Finding
 from analyzer.part import Part
+from analyzer.quantity import Span
 from analyzer.settings import PartStatement, Policy
 from analyzer.wording import show
+
+BELOW_ABSOLUTE = 25.0
+"""Kelvin between absolute maximum and greatest operating junction where only the former is given."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -42,6 +46,19 @@ def least(part: Part, key: str) -> Evidence | None:
     return min(found, key=lambda evidence: evidence.span.low, default=None)
 
 
+def _below(absolute: Evidence) -> Evidence:
+    """The operating limit that a bare absolute maximum allows to presume."""
+    return Evidence(
+        "junction limit",
+        Span.exact(absolute.span.low - BELOW_ABSOLUTE),
+        "°C",
+        "common practice: operation ends 25 K below the absolute maximum, as 125 °C below 150 °C",
+        Grade.PRESUMED,
+        f"{show(absolute.span.low, '°C')} − {BELOW_ABSOLUTE:g} K",
+        (absolute,),
+    )
+
+
 def limits_of(part: Part, stated: PartStatement, policy: Policy) -> Limits | str:
     """The limits of a part, or what is missing, in words."""
     findings: tuple[Finding, ...] = ()
@@ -51,7 +68,11 @@ def limits_of(part: Part, stated: PartStatement, policy: Policy) -> Limits | str
         found = absolute
         if found is None:
             return "junction limit"
-        message = f"only the absolute maximum of {show(found.span.low, '°C')} is known"
+        found = _below(found)
+        message = (
+            f"only the absolute maximum of {show(found.span.low + BELOW_ABSOLUTE, '°C')} is known: "
+            f"{show(found.span.low, '°C')} presumed for operation"
+        )
         findings = (kinds.ABSOLUTE_LIMIT.found(part.ref, message, found.source, key=part.key),)
     given = operating or absolute
     if stated.junction_max is not None and given is not None and found.span.low > given.span.low:

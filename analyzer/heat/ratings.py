@@ -66,6 +66,7 @@ def electrical_findings(draft: Draft, policy: Policy) -> Iterator[Finding]:
         yield from _current(draft, one, policy)
         yield from _dropout(draft, one)
         yield from _short(draft, one)
+        yield from _unrated(draft, one)
 
 
 def _input(draft: Draft, one: ChannelCase, policy: Policy) -> Iterator[Finding]:
@@ -93,19 +94,47 @@ def _input(draft: Draft, one: ChannelCase, policy: Policy) -> Iterator[Finding]:
 
 def _current(draft: Draft, one: ChannelCase, policy: Policy) -> Iterator[Finding]:
     part, rating = draft.part, one.wiring.channel.figures.get("output_current_max")
-    load = one.load.high
+    word, load = _carried(one)
     if rating is not None:
         rated = rating.span.low
-        shown = f"load up to {show(load, 'A')}, rated {show(rated, 'A')}"
+        shown = f"{word} up to {show(load, 'A')}, rated {show(rated, 'A')}"
         if load > rated:
             yield kinds.CURRENT_OVER_RATING.found(part.ref, shown, rating.source, key=part.key)
         elif load > rated * policy.current_fraction:
             message = f"{shown}; policy {policy.name} allows {policy.current_fraction:.0%} of it"
             yield kinds.CURRENT_OVER_POLICY.found(part.ref, message, policy.source, key=part.key)
+    stops = one.wiring.channel.figures.get("current_limit")
+    if stops is not None and load > stops.span.low and (rating is None or load <= rating.span.low):
+        shown = f"{word} up to {show(load, 'A')}, its current limit may hold at {show(stops.span.low, 'A')}"
+        yield kinds.CURRENT_OVER_RATING.found(part.ref, shown, stops.source, key=part.key)
     least = one.wiring.channel.figures.get("minimum_load")
     if least is not None and draft.is_complete and one.load.low < least.span.high:
         message = f"load down to {show(one.load.low, 'A')}, the part needs {show(least.span.high, 'A')} to regulate"
         yield kinds.MINIMUM_LOAD.found(part.ref, message, least.source, key=part.key)
+
+
+def _carried(one: ChannelCase) -> tuple[str, float]:
+    """What a current rating is about, and how much that is at most [A]: a shunt carries what the load leaves."""
+    if one.wiring.channel.topology is not Topology.SHUNT:
+        return "load", one.load.high
+    try:
+        fed = one.model.at(Point(one.vin.high, one.vout.low, one.load.low), End.SEVERE).iin
+    except ValueError:
+        return "load", one.load.high
+    return "current of the element", max(0.0, fed - one.load.low)
+
+
+def _unrated(draft: Draft, one: ChannelCase) -> Iterator[Finding]:
+    """Ratings that no rule gives, so that nothing was compared with them."""
+    figures, part = one.wiring.channel.figures, draft.part
+    lacks = []
+    if not {"input_max", "input_absolute_max", "differential_max"} & figures.keys():
+        lacks.append("input voltage")
+    if "output_current_max" not in figures:
+        lacks.append("output current")
+    if lacks:
+        name = f" of channel {one.name}" if one.name else ""
+        yield kinds.NOT_RATED.found(part.ref, f"rated {' and '.join(lacks)}{name} not known", key=part.key)
 
 
 def _dropout(draft: Draft, one: ChannelCase) -> Iterator[Finding]:

@@ -92,7 +92,11 @@ def _greatest_ambient(case: Case, hottest: Worked) -> float | None:
     low, high = -273.0, case.limit
     for _ in range(60):
         middle = (low + high) / 2
-        found = worst(case.with_ambient(Span.exact(middle)))
+        try:
+            found = worst(case.with_ambient(Span.exact(middle)))
+        except ValueError:  # too hot for its figures
+            high = middle
+            continue
         if found.runs_away or found.junction is None or found.junction > case.limit:
             high = middle
         else:

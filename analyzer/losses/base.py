@@ -9,6 +9,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass, field
 from enum import Enum
+from itertools import pairwise
 
 from analyzer.evidence import Evidence
 from analyzer.part import Channel
@@ -156,9 +157,16 @@ class Figures:
         )
 
     def knots(self, *keys: str) -> tuple[float, ...]:
-        """Loads at which the tables of these figures have their points."""
-        curves = (self.channel.curves[key] for key in keys if key in self.channel.curves)
-        return tuple(sorted({x for curve in curves for x, _ in curve.points}))
+        """Loads at which the tables of these figures have their points, and where I · y(I) has a peak between two."""
+        curves = [self.channel.curves[key] for key in keys if key in self.channel.curves]
+        found = {x for curve in curves for x, _ in curve.points}
+        for (x0, one), (x1, other) in (pair for curve in curves for pair in pairwise(curve.points)):
+            slope = (other.high - one.high) / (x1 - x0)
+            if slope < 0:
+                # y = a + b·I falls, so that I · y is greatest at −a/2b
+                peak = (one.high - slope * x0) / (-2 * slope)
+                found |= {peak} if x0 < peak < x1 else set()
+        return tuple(sorted(found))
 
     def hot(self, end: End, junction: float) -> float:
         """Factor on on-resistances at `junction`: 1 + tempco · (Tj − 25 °C), never below the cold figure."""

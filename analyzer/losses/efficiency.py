@@ -19,7 +19,7 @@ from analyzer.quantity import Span
 from analyzer.rule import EfficiencyMap
 from analyzer.wording import show
 
-KEYS = ("efficiency", "efficiency_temperature", "efficiency_hot_loss")
+KEYS = ("efficiency", "efficiency_output", "efficiency_temperature", "efficiency_hot_loss")
 
 HOT_BOARD = Evidence(
     "efficiency lost on a hot board",
@@ -76,13 +76,19 @@ def lacks(channel: Channel) -> tuple[str, ...]:
     """What an efficiency needs besides itself, in words.
 
     A number from a rule holds at the load it was measured at; below it the losses fall towards what the part takes
-    without a load, which must be known. A number stated for this board is taken to hold for its loads.
+    without a load, which must be known. At a lower output voltage the loss stays about what it was, and an efficiency
+    would make it fall: where the output is adjustable, the one it was measured at must be known. What is stated for
+    this board is taken to hold for its own load and output.
     """
-    figure = channel.figures.get("efficiency")
-    tabled = channel.efficiency_map is not None or "efficiency" in channel.curves
-    if tabled or figure is None or figure.grade is Grade.STATED or "quiescent" in channel.figures:
+    if figure_of(channel).grade is Grade.STATED:
         return ()
-    return ("quiescent current (what the converter loses without a load)",)
+    found = []
+    tabled = channel.efficiency_map is not None or "efficiency" in channel.curves
+    if not tabled and "quiescent" not in channel.figures:
+        found.append("quiescent current (what the converter loses without a load)")
+    if channel.volts is None and "efficiency_output" not in channel.figures:
+        found.append("output voltage at which the efficiency was measured (efficiency_output)")
+    return tuple(found)
 
 
 def notes(channel: Channel) -> tuple[str, ...]:
@@ -164,10 +170,17 @@ def light_load_loss(channel: Channel, point: Point, efficiency: float, idle: flo
         return idle
     if point.iout >= least:
         return 0.0
-    first = total_loss(point.vout * least, efficiency)
+    vout = measured_output(channel, point)
+    first = total_loss(vout * least, efficiency)
     known = "quiescent" in channel.figures
     most = idle + max(0.0, first - idle) * point.iout / least if known else first
-    return max(0.0, most - total_loss(point.vout * point.iout, efficiency))
+    return max(0.0, most - total_loss(vout * point.iout, efficiency))
+
+
+def measured_output(channel: Channel, point: Point) -> float:
+    """Output voltage [V] that the loss is worked out at: below the one an efficiency was measured at the loss stays."""
+    measured = channel.figures.get("efficiency_output")
+    return point.vout if measured is None else max(point.vout, measured.span.high)
 
 
 def left_inside(total: float, outside_parts: Shares) -> tuple[float, tuple[tuple[str, float], ...]]:
@@ -224,7 +237,8 @@ def loss_from_efficiency(
     power = point.vout * point.iout
     own = Figures(channel).high("quiescent", end, default=0.0)
     idle = point.vin * own
-    total = total_loss(power, efficiency)
+    vout = measured_output(channel, point)
+    total = total_loss(vout * point.iout, efficiency)
     if end is End.SEVERE and outside_parts.diode is not None and outside_parts.diode[1] > total:
         who, watts = outside_parts.diode
         raise ValueError(
@@ -239,7 +253,7 @@ def loss_from_efficiency(
             return f"{volts(point.vin)} · {amps(own)} without a load"
         less = "".join(f" − {show(watts, 'W')} in {who}" for who, watts in taken)
         light = f" + {show(more, 'W')} at light load" if more else ""
-        return f"{show(power, 'W')} · (1/{efficiency:.3f} − 1){less}{light}"
+        return f"{show(vout * point.iout, 'W')} · (1/{efficiency:.3f} − 1){less}{light}"
 
     terms: tuple[tuple[str, float], ...] = (("quiescent", idle),)
     if inside == rest + more:

@@ -14,7 +14,7 @@ from analyzer.heat.limits import Limits, limits_of
 from analyzer.load import Loads, Pulse
 from analyzer.quantity import Span
 from analyzer.rail import Feed, Outside, Rail, Rails
-from analyzer.rule import BoardClass, Curve, Rulebook, Topology
+from analyzer.rule import BoardClass, Curve, Rulebook, ThermalFigure, Topology
 from analyzer.settings import Board, Coupling, PartStatement, Policy, Settings
 
 EXACT = Span.exact
@@ -198,3 +198,56 @@ def test_the_lowest_limit_of_all_channels_holds() -> None:
     limits = limits_of(replace(part, channels=(part.channels[0], other)), PartStatement(), Policy())
     assert isinstance(limits, Limits)
     assert (limits.data_sheet, limits.policy) == (85.0, 75.0)
+
+
+def test_the_rating_of_a_shunt_is_about_what_flows_through_it() -> None:
+    # (24 − 12) V / 47 Ω = 0.2553 A without load
+    bench = Bench(
+        topology=Topology.SHUNT,
+        vin=EXACT(24.0),
+        vout=EXACT(12.0),
+        draws=((EXACT(0.0), None),),
+        figures={"output_current_max": 0.1, "junction_max": 150.0},
+        outside=(resistor(47.0),),
+        theta=10.0,
+    )
+    (found,) = [one for one in bench.entry().findings if one.name == "current-over-rating"]
+    assert found.message == "current of the element up to 255 mA, rated 100 mA"
+
+
+def test_a_load_that_the_current_limit_may_stop_is_over() -> None:
+    bench = Bench(draws=((EXACT(0.5), None),)).with_figures(current_limit=Span(0.30, 0.35, 0.40))
+    entry = bench.entry()
+    assert entry.verdict is Verdict.OVER
+    (found,) = [one for one in entry.findings if one.name == "current-over-rating"]
+    assert found.message == "load up to 500 mA, its current limit may hold at 300 mA"
+
+
+def test_ratings_that_no_rule_gives_are_told() -> None:
+    def told(**figures: float) -> list[str]:
+        found = Bench().with_figures(**figures).entry().findings
+        return [one.message for one in found if one.name == "rating-not-checked"]
+
+    assert told() == ["rated input voltage and output current not known"]
+    assert told(input_max=6.0) == ["rated output current not known"]
+    assert told(input_max=6.0, output_current_max=1.0) == []
+
+
+def test_a_figure_without_theta_does_not_hide_one_with_it() -> None:
+    # a copper table without any copper stated says nothing: 150 K/W of 2s2p on a 1s board is 150 · 1.56 for SOIC-8
+    table = Curve(((1e-4, EXACT(90.0)), (6e-4, EXACT(60.0))), "copper", number(Span(60.0, 75.0, 90.0), "K/W"))
+    figures = (
+        ThermalFigure("SOIC-8", "test", theta_ja=number(150.0, "K/W"), board=BoardClass.HIGH),
+        ThermalFigure("SOIC-8", "test", copper=table, board=BoardClass.LOW),
+    )
+    entry = Bench(package="SOIC-8", thermal=figures, board=Board(board_class=BoardClass.LOW, source="test")).entry()
+    assert entry.worst is not None
+    assert entry.worst.theta == pytest.approx(150.0 * 1.56)
+
+
+def test_the_greatest_ambient_is_looked_for_where_the_figures_hold() -> None:
+    # 30 % falling by 0.3 points a kelvin is none at 125 °C: the search must not fall over that
+    figures = {"efficiency": 0.3, "efficiency_hot_loss": 0.003, "junction_max": 150.0}
+    bench = Bench(topology=Topology.BUCK, vin=EXACT(12.0), figures=figures, draws=((EXACT(0.0), None),))
+    (found,) = [one for one in bench.entry().remedies if one.kind == "greatest ambient"]
+    assert found.numbers["celsius"] == pytest.approx(125.0, abs=0.1)

@@ -421,3 +421,24 @@ def test_a_table_is_itself_at_its_knots() -> None:
     table = curve((0.1, Span(0.05, 0.05, 0.1)), (1.0, 0.45))
     assert table.at(1.0) == Span.exact(0.45)
     assert table.at(0.1) == Span(0.05, 0.05, 0.1)
+
+
+def test_an_efficiency_of_a_higher_output_leaves_its_loss_at_a_lower_one() -> None:
+    # 150 and 50 mΩ, 12 → 5 V, 3 A: 1.017 W, 93.65 %; at 1.2 V the loss terms still make 0.732 W, the efficiency 0.244 W
+    figures = {"efficiency": 0.9365, "efficiency_output": 5.0}
+    buck = model(Topology.BUCK, figures)
+    assert buck.at(Point(12.0, 1.2, 3.0), End.SEVERE).watts == pytest.approx(15.0 * (1 / 0.9365 - 1))
+    found = wiring(Topology.BUCK, figures)
+    bare = {key: value for key, value in found.channel.figures.items() if key != "efficiency_output"}
+    assert model_of(replace(found, channel=replace(found.channel, figures=bare))).missing == (
+        "output voltage at which the efficiency was measured (efficiency_output)",
+    )
+    fixed = replace(found.channel, figures=bare, volts=evidence(1.2, "V"))
+    assert model_of(replace(found, channel=fixed)).missing == ()
+
+
+def test_a_drop_that_falls_with_the_load_heats_most_between_two_points() -> None:
+    # 1 V at 0 A falls to 0.2 V at 1 A: I · (1 − 0.8 · I) is greatest at 0.625 A: 0.3125 W
+    found = model(Topology.SERIES_DIODE, {}, curves={"forward_drop": curve((0.0, 1.0), (1.0, 0.2))})
+    assert found.loads == pytest.approx((0.0, 0.625, 1.0))
+    assert found.at(Point(5.0, 4.0, 0.625), End.SEVERE).watts == pytest.approx(0.3125)

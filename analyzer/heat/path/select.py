@@ -24,7 +24,9 @@ def thermal_path(
 ) -> ThermalPath | str:
     """The path, or what is missing for one, in words."""
     design, why = design_class(circuit, settings, stated)
-    figure = _closest(part.thermal, design)
+    pour, moves = stated.pour or settings.board.pour, settings.site.air_speed.span.low > 0
+    useful = [one for one in part.thermal if one.theta_ja or (one.copper and pour) or (one.air and moves)]
+    figure = _closest(useful or part.thermal, design)
     found = _measured(stated, figure)
     if found is None and (stated.case_measured is not None or stated.board_measured is not None):
         # a measured temperature that is left unused would let the budget say less than is known
