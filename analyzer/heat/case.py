@@ -25,7 +25,7 @@ HOPELESS_CELSIUS = 1000.0
 """Above this no semiconductor is left; a search that gets here has no solution that matters."""
 
 _PASSES = 200
-_SEARCHES = 24
+_SEARCHES = 16
 _AGREEMENT = 1e-9
 
 
@@ -174,34 +174,29 @@ def hottest_of(one: ChannelCase, junction: float) -> Chosen:
             best = point, loss
     if best is None:
         raise ValueError("no operating point")
-    if _has_humps(one):
+    if one.model.has_humps and not one.load.is_exact:
         best = _climbed(one, best)
     return Chosen(one, *best, _ends(one, best[0]))
-
-
-def _has_humps(one: ChannelCase) -> bool:
-    """Whether the heat may be greatest between two knots: a table of efficiency, I · (1/η(I) − 1), does that."""
-    channel = one.wiring.channel
-    tabled = channel.efficiency_map is not None or "efficiency" in channel.curves
-    return tabled and not one.load.is_exact
 
 
 def _climbed(one: ChannelCase, best: tuple[Point, Loss]) -> tuple[Point, Loss]:
     """The greatest heat between the knots of the load, at every input and output voltage that may be worst.
 
-    A few points in each stretch tell which one to climb.
+    A few points in each stretch tell from which voltages to climb.
     """
     points = list(_candidates(one, best[0].junction))
     loads = sorted({point.iout for point in points})
-    found, stretch = best, None
-    for vin, vout in sorted({(point.vin, point.vout) for point in points}):
-        for left, right in itertools.pairwise(loads):
-            for share in (0.125, 0.25, 0.5, 0.75, 0.9, 0.97):
-                point = replace(best[0], vin=vin, vout=vout, iout=left + share * (right - left))
-                loss = one.model.at(point, End.SEVERE)
-                if loss.watts > found[1].watts:
-                    found, stretch = (point, loss), (left, right)
-    return found if stretch is None else max(found, _between(one, found[0], *stretch), key=lambda one: one[1].watts)
+    volts = sorted({(point.vin, point.vout) for point in points})
+    found = best
+    for left, right in itertools.pairwise(loads):
+        inside = [
+            replace(best[0], vin=vin, vout=vout, iout=left + share * (right - left))
+            for vin, vout in volts
+            for share in (0.125, 0.375, 0.625, 0.875)
+        ]
+        start = max(inside, key=lambda point: one.model.at(point, End.SEVERE).watts)
+        found = max(found, _between(one, start, left, right), key=lambda pair: pair[1].watts)
+    return found
 
 
 def _between(one: ChannelCase, at: Point, left: float, right: float) -> tuple[Point, Loss]:

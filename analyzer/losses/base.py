@@ -74,6 +74,7 @@ class LossModel:
             besides the ends.
         interior_outputs: (low, high, vin, iout) → output voltages inside (low, high) where it may have one.
         loads: Loads inside (low, high) where a table has its knots.
+        has_humps: Whether the heat may be greatest between two of `loads`: I · (1/η(I) − 1) of a tabled efficiency is.
         own_load: Load the part itself sets (chargers); None where the rail's draws do.
         iin_needs_voltages: False where the input current follows from the load alone.
         heats: Whether the losses change with the junction temperature.
@@ -88,6 +89,7 @@ class LossModel:
         default=lambda _a, _b, _c, _d: ()
     )
     loads: tuple[float, ...] = ()
+    has_humps: bool = False
     own_load: Evidence | None = None
     iin_needs_voltages: bool = True
     heats: bool = False

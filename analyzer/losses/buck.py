@@ -83,6 +83,7 @@ def _from_efficiency(wiring: Wiring) -> LossModel:
         notes=(*efficiency.notes(wiring.channel), *outside_notes(wiring, board, measured)),
         interior=interior_voltages,
         loads=efficiency.load_knots(wiring.channel),
+        has_humps=bool(efficiency.load_knots(wiring.channel)),
         heats=Figures(wiring.channel).has("efficiency_hot_loss"),
     )
 

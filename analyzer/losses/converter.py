@@ -75,6 +75,7 @@ def build(wiring: Wiring) -> LossModel:
         ),
         interior=interior,
         loads=efficiency.load_knots(wiring.channel),
+        has_humps=bool(efficiency.load_knots(wiring.channel)),
         heats=Figures(wiring.channel).has("efficiency_hot_loss"),
     )
 

@@ -260,6 +260,5 @@ def loss_from_efficiency(
         terms = (("converter loss", total), *((f"less {who}", -watts) for who, watts in taken))
         terms = (*terms, ("at light load", more)) if more else terms
     lost = board.over(outside_parts)
-    # what was not taken out of the part is lost outside all the same, and comes from the input as well
-    taken_in = max(power / efficiency, power + inside + lost.watts)
-    return Loss(inside, taken_in / supply, lost.items, terms, formula)
+    # what was not taken out of the part is lost outside all the same, and comes from the input as well (energy balance)
+    return Loss(inside, (power + inside + lost.watts) / supply, lost.items, terms, formula)

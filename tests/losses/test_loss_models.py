@@ -75,7 +75,7 @@ def figures_of(topology: Topology, pick: Pick) -> Figures:
     return {"on_resistance": span(pick, 0.005, 0.3), "quiescent": span(pick, 1e-6, 1e-3)}
 
 
-def made(topology: Topology, pick: Pick) -> LossModel:
+def made(topology: Topology, pick: Pick, *, tables: bool) -> LossModel:
     outside: tuple[Outside, ...] = ()
     if topology is Topology.SHUNT:
         outside = (Outside("R1", "resistor", evidence(span(pick, 100, 5000), "Ω")),)
@@ -83,7 +83,16 @@ def made(topology: Topology, pick: Pick) -> LossModel:
         coil = Outside("L1", "inductor", evidence(span(pick, 0.005, 0.1), "Ω"))
         outside = (coil, Outside("D1", "diode", drop=evidence(span(pick, 0.2, 0.6), "V")))
     figures = figures_of(topology, pick)
-    return model(topology, figures, vcontrol=span(pick, 10.5, 13.0), outside=outside)
+    curves = {}
+    if "efficiency" in figures and topology is not Topology.CONTROLLER:
+        if pick.random() < 0.5:
+            # what the data sheet's own inductor and rectifier lost where the efficiency was measured
+            figures |= {"inductor_resistance": span(pick, 0.005, 0.05), "diode_drop": span(pick, 0.1, 0.4)}
+        if tables and pick.random() < 0.4:
+            figures.pop("efficiency")
+            etas = (pick.uniform(0.3, 0.7), pick.uniform(0.6, 0.9), pick.uniform(0.7, 0.95))
+            curves["efficiency"] = curve(*zip((0.02, 0.2, 1.0), etas, strict=True))
+    return model(topology, figures, curves=curves, vcontrol=span(pick, 10.5, 13.0), outside=outside)
 
 
 def volts(topology: Topology, pick: Pick) -> tuple[Span, Span]:
@@ -106,10 +115,10 @@ def volts(topology: Topology, pick: Pick) -> tuple[Span, Span]:
     return span(pick, 6.0, 10.0), span(pick, 1.0, 5.5)
 
 
-def entries(topology: Topology) -> Iterator[tuple[Pick, LossModel, Span, Span, Span]]:
+def entries(topology: Topology, *, tables: bool = False) -> Iterator[tuple[Pick, LossModel, Span, Span, Span]]:
     pick = Pick(f"{topology} entries")
     for _ in range(ENTRIES):
-        found = made(topology, pick)
+        found = made(topology, pick, tables=tables)
         assert found.missing == ()
         vin, vout = volts(topology, pick)
         most = {Topology.SHUNT: 0.02, Topology.BOOST: 0.25}.get(topology, 1.0)
@@ -130,23 +139,31 @@ def inside(pick: Pick, s: Span) -> float:
     return pick.uniform(s.low, s.high)
 
 
+MOST_REFUSED = {
+    # a boost by terms that cannot carry its load at the lowest input; an efficiency that its rectifier alone exceeds
+    Topology.BOOST: 0.25,
+    Topology.BUCK: 0.06,
+    Topology.BUCK_BOOST: 0.12,
+    Topology.INVERTING: 0.12,
+}
+"""Share of the random entries that may be outside what their figures cover; all others none."""
+
+
 @pytest.mark.parametrize("topology", list(MODELS))
 def test_no_sampled_point_is_hotter_than_the_worst_corner(topology: Topology) -> None:
-    tried = 0
-    for pick, found, vin, vout, load in entries(topology):
+    refused = 0
+    for pick, found, vin, vout, load in entries(topology, tables=True):
         try:
             limit = hottest(topology, found, vin, vout, load)
         except ValueError:
+            refused += 1
             continue
         for _ in range(3):
             point = Point(inside(pick, vin), inside(pick, vout), inside(pick, load), 40.0)
-            try:
-                watts = max(found.at(point, end).watts for end in End)
-            except ValueError:
-                continue
-            tried += 1
-            assert watts <= limit * (1 + 1e-6) + 1e-9, (vin, vout, load, point)
-    assert tried > 2 * ENTRIES
+            # where the corners can be worked out, so can every point between them
+            watts = max(found.at(point, end).watts for end in End)
+            assert watts <= limit * (1 + 1e-4) + 1e-9, (vin, vout, load, point)
+    assert refused <= MOST_REFUSED.get(topology, 0.0) * ENTRIES
 
 
 GETS_COOLER = {Topology.SHUNT, Topology.CHARGER}
@@ -167,12 +184,13 @@ def test_more_load_never_makes_less_heat(topology: Topology) -> None:
 def test_a_wider_span_never_makes_a_cooler_worst_case(topology: Topology) -> None:
     pick = Pick(f"{topology} wider")
     for _ in range(ENTRIES // 4):
-        found = made(topology, pick)
+        found = made(topology, pick, tables=True)
         vin, vout = volts(topology, pick)
         load = found.own_load.span if found.own_load else span(pick, 0.0, 1.0)
         narrow = Span(load.low, load.nominal, load.nominal)
         try:
-            assert hottest(topology, found, vin, vout, load) >= hottest(topology, found, vin, vout, narrow) - 1e-12
+            # a peak between two points of a table is searched for to 1e-7 of the heat
+            assert hottest(topology, found, vin, vout, load) >= hottest(topology, found, vin, vout, narrow) * (1 - 1e-7)
             middle = Span.exact(vin.nominal)
             wide, point = hottest(topology, found, vin, vout, load), hottest(topology, found, middle, vout, load)
         except ValueError:
