@@ -8,6 +8,7 @@ Where the input is above the output, the switch rests, and coil and rectifier pa
 
 from __future__ import annotations
 
+import math
 from dataclasses import replace
 
 from analyzer.losses import efficiency, terms
@@ -82,14 +83,19 @@ def _from_terms(wiring: Wiring, figures: Figures) -> LossModel:
     def at(point: Point, end: End) -> Loss:
         """The input current is the one at which input power is output power and all losses."""
         point, regulating = passed_on(point)
-        iin = point.vout * point.iout / point.vin
+        # what is lost rises ever faster with the current, so secants from below end at the lower of two solutions
+        before, iin = 0.0, point.vout * point.iout / point.vin
+        excess_before = _at_current(wiring, figures, others, point, end, before).iin
         for _ in range(_PASSES):
             found = _at_current(wiring, figures, others, point, end, iin)
-            if abs(found.iin - iin) <= _AGREEMENT * max(iin, 1e-9):
+            excess = found.iin - iin
+            if abs(excess) <= _AGREEMENT * max(iin, 1e-9):
                 return found if regulating else replace(found, regulating=False)
-            if found.iin > 100 * (point.iout + 1):
+            slope = (excess - excess_before) / (iin - before) if iin != before else 0.0
+            step = -excess / slope if slope < 0 else math.inf
+            if iin + step > 100 * (point.iout + 1):
                 break
-            iin = found.iin
+            before, excess_before, iin = iin, excess, iin + step
         raise ValueError(f"no input current carries {show(point.iout, 'A')} at {show(point.vin, 'V')} in")
 
     used = tuple(dict.fromkeys((*figures.used(*_NEEDED, "low_side_resistance", "resistance_tempco"), *others.used)))
