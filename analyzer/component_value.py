@@ -12,6 +12,7 @@ import re
 from dataclasses import dataclass, replace
 from decimal import Decimal
 
+from analyzer import limits
 from analyzer.quantity import Dimension
 
 
@@ -35,7 +36,6 @@ class ComponentValue:
     is_unfitted: bool = False
 
 
-_LONGEST = 200
 _SPELLINGS = str.maketrans("\u00b5\u03bc\u2126\u2212\u00a0", "uu\u03a9- ")
 _NOT_FITTED = re.compile(
     r"\s*(?:DNP|DNF|DNI|DNS|DNM|NOPOP|N\.?C\.?|N/?A|N\.?F\.?|NM|NP"
@@ -75,7 +75,14 @@ _LETTER_TOLERANCE = {
 
 def component_value(text: str) -> ComponentValue | None:
     """The value a symbol's value text states, None if the text is no passive part's value."""
-    clean = text[:_LONGEST].strip().translate(_SPELLINGS).replace("+/-", "±").replace("+-", "±").replace("±", " ±")
+    clean = (
+        text[: limits.VALUE_LENGTH]
+        .strip()
+        .translate(_SPELLINGS)
+        .replace("+/-", "±")
+        .replace("+-", "±")
+        .replace("±", " ±")
+    )
     unfitted = _NOT_FITTED.match(clean)
     rest = clean[unfitted.end() :] if unfitted else clean
     value = _first_value(rest)

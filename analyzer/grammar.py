@@ -20,6 +20,7 @@ import re
 from decimal import Decimal
 from typing import Any
 
+from analyzer import limits
 from analyzer.load import Pulse
 from analyzer.quantity import ZERO, Dimension, Span
 from analyzer.units import EVERYDAY
@@ -33,7 +34,6 @@ _PULSE = re.compile(
 )
 # one spelling each for micro, ohm, minus and the spaces that word processors put before units
 _SPELLINGS = str.maketrans("\u03bc\u2126\u2212\u00a0\u202f", "\u00b5\u03a9-  ")
-_LONGEST = 120
 
 _NAMES = {
     Dimension.CURRENT: "current",
@@ -99,7 +99,7 @@ def parse_load(text: str) -> tuple[Span, Pulse | None]:
 
 
 def _clean(text: str) -> str:
-    if len(text) > _LONGEST:
+    if len(text) > limits.QUANTITY_LENGTH:
         raise ValueError(f"'{text[:30]}…': too long for a quantity")
     clean = text.strip().translate(_SPELLINGS)
     if not clean:

@@ -51,3 +51,13 @@ WORKBOOK_UNPACKED = 64 * 1024 * 1024
 """Size of one workbook unpacked [bytes]."""
 WORKBOOK_RATIO = 100
 """Compression ratio of one workbook above which it is taken for a bomb."""
+SETTINGS_BYTES = 1024 * 1024
+"""Size of one settings, policy or rule file [bytes]."""
+QUANTITY_LENGTH = 120
+"""Length of one quantity's text, as "80..150 mA" [characters]."""
+VALUE_LENGTH = 200
+"""How much of a component's value text is read [characters]."""
+PATTERN_LENGTH = 80
+"""Length of one pattern of a rule [characters]."""
+NAME_LENGTH = 200
+"""Length of a part's name that patterns are tried on [characters]; longer ones match none."""

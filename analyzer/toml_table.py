@@ -7,14 +7,12 @@ from collections.abc import Iterable, Mapping
 from pathlib import Path
 from typing import Any
 
+from analyzer import limits
 from analyzer.errors import Fault, InputError
 from analyzer.evidence import Evidence, Grade
 from analyzer.grammar import parse
 from analyzer.quantity import Dimension, Span
 from analyzer.wording import show
-
-LARGEST = 1024 * 1024
-"""Size of one settings or policy file [bytes]; real ones have a few thousand."""
 
 _TYPES = {str: "text", bool: "true or false", int: "a whole number", float: "a number", list: "a list", dict: "a table"}
 
@@ -29,8 +27,10 @@ def read_toml(file: Path) -> dict[str, Any]:
 
     name = str(file)
     try:
-        if file.stat().st_size > LARGEST:
-            raise InputError(Fault(f"larger than {LARGEST} bytes", name, remedy="This cannot be a settings file."))
+        if file.stat().st_size > limits.SETTINGS_BYTES:
+            raise InputError(
+                Fault(f"larger than {limits.SETTINGS_BYTES} bytes", name, remedy="This cannot be a settings file.")
+            )
         return tomllib.loads(file.read_bytes().decode("utf-8-sig"))
     except OSError as error:
         raise InputError(Fault(f"cannot be read ({error.strerror})", name)) from error

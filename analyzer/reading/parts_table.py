@@ -13,9 +13,9 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
 
+from analyzer import limits
 from analyzer.errors import Fault, InputError
 from analyzer.grammar import parse
-from analyzer.limits import TABLE_BYTES, TABLE_ROWS
 from analyzer.quantity import Dimension, Span
 
 SYNONYMS: Mapping[str, tuple[str, ...]] = {
@@ -74,8 +74,8 @@ def read_table(path: Path, heads: Mapping[str, str] | None = None) -> Table:
         InputError: If the file cannot be read, has no head row with a reference column, or is too large.
     """
     cells, comma_is_decimal = _xlsx(path) if path.suffix.lower() == ".xlsx" else _csv(path)
-    if len(cells) > TABLE_ROWS:
-        raise InputError(Fault(f"more than {TABLE_ROWS} rows", str(path), remedy="Split the table."))
+    if len(cells) > limits.TABLE_ROWS:
+        raise InputError(Fault(f"more than {limits.TABLE_ROWS} rows", str(path), remedy="Split the table."))
     for number, row in enumerate(cells[:20]):
         columns = _columns(row, heads or {})
         if "ref" in columns and len(columns) > 1:
@@ -119,7 +119,7 @@ def _xlsx(path: Path) -> tuple[list[list[str]], bool]:
     except Exception as error:  # openpyxl raises many kinds for a damaged file
         raise InputError(Fault("is no readable workbook", str(path), remedy="Save it again as .xlsx.")) from error
     sheet = book.worksheets[0]
-    rows = sheet.iter_rows(max_row=TABLE_ROWS + 1, values_only=True)
+    rows = sheet.iter_rows(max_row=limits.TABLE_ROWS + 1, values_only=True)
     cells = [["" if cell is None else str(cell).strip() for cell in row] for row in rows]
     book.close()
     return cells, True
@@ -127,8 +127,10 @@ def _xlsx(path: Path) -> tuple[list[list[str]], bool]:
 
 def _bytes(path: Path) -> bytes:
     try:
-        if path.stat().st_size > TABLE_BYTES:
-            raise InputError(Fault(f"is larger than {TABLE_BYTES // 1024**2} MB", str(path), remedy="Split the table."))
+        if path.stat().st_size > limits.TABLE_BYTES:
+            raise InputError(
+                Fault(f"is larger than {limits.TABLE_BYTES // 1024**2} MB", str(path), remedy="Split the table.")
+            )
         return path.read_bytes()
     except OSError as error:
         raise InputError(Fault(f"cannot be read ({error.strerror})", str(path))) from error

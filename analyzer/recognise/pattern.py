@@ -10,6 +10,7 @@ import re
 from collections.abc import Iterator
 from dataclasses import dataclass
 
+from analyzer import limits
 from analyzer.rule import Pattern
 
 CODE_FORMS = {
@@ -22,8 +23,6 @@ CODE_FORMS = {
 }
 """How each decode's code is written. "table" and "adjustable" have no form of their own."""
 
-LONGEST_PATTERN = 80
-LONGEST_TEXT = 200
 
 _MAKER = re.compile(r"[A-Z]{1,5}")
 
@@ -69,7 +68,7 @@ def match(pattern: Pattern, text: str, makers: tuple[str, ...] = ()) -> Hit | No
         text: Part name, upper case.
         makers: Accepted letters for `{maker}`; empty accepts any.
     """
-    if len(text) > LONGEST_TEXT:
+    if len(text) > limits.NAME_LENGTH:
         return None
     rest, body = text, pattern.text
     maker = ""

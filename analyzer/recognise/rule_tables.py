@@ -5,10 +5,11 @@ from __future__ import annotations
 from collections.abc import Mapping
 from itertools import pairwise
 
+from analyzer import limits
 from analyzer.evidence import Evidence, Grade
 from analyzer.grammar import parse
 from analyzer.quantity import Dimension, Span
-from analyzer.recognise.pattern import CODE_FORMS, LONGEST_PATTERN
+from analyzer.recognise.pattern import CODE_FORMS
 from analyzer.rule import (
     FIGURES,
     BoardClass,
@@ -89,8 +90,8 @@ def _patterns(table: Table) -> tuple[Pattern, ...]:
             code.upper(): span.nominal for code in codes_of.keys if (span := codes_of.quantity(code, Dimension.VOLTAGE))
         }
         entry.finish()
-        if len(text) > LONGEST_PATTERN:
-            entry.fault("pattern", f"is longer than {LONGEST_PATTERN} characters")
+        if len(text) > limits.PATTERN_LENGTH:
+            entry.fault("pattern", f"is longer than {limits.PATTERN_LENGTH} characters")
         elif text and not text.replace("*", "").replace("?", "").replace("{code}", "").replace("{maker}", ""):
             entry.fault("pattern", "matches every name", "Write at least one letter or digit of the part's name.")
         elif text.count("{code}") > 1 or "{maker}" in text[1:]:

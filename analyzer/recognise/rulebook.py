@@ -7,8 +7,8 @@ import os
 from collections.abc import Iterable
 from pathlib import Path
 
+from analyzer import limits
 from analyzer.errors import Fault, InputError
-from analyzer.limits import RULE_FILES, RULES
 from analyzer.recognise.rule_tables import load_rule, package_rule, rule, supply_rule
 from analyzer.rule import LoadRule, PackageRule, Rule, Rulebook, SupplyRule
 from analyzer.shipped import rules_folder
@@ -28,8 +28,8 @@ def load_rulebook(files: Iterable[Path] = (), beside: Path | None = None) -> Rul
     """
     shipped = rules_folder()
     own = list(files)
-    if len(own) > RULE_FILES:
-        raise InputError(Fault(f"more than {RULE_FILES} rule files"))
+    if len(own) > limits.RULE_FILES:
+        raise InputError(Fault(f"more than {limits.RULE_FILES} rule files"))
     faults: list[Fault] = []
     rules: list[Rule] = []
     loads: list[LoadRule] = []
@@ -52,8 +52,8 @@ def load_rulebook(files: Iterable[Path] = (), beside: Path | None = None) -> Rul
         supplies += [found for table in top.tables("supply") if (found := supply_rule(table, name))]
         packages += [package_rule(table, name) for table in top.tables("package")]
         top.finish()
-    if len(rules) > RULES:
-        faults.append(Fault(f"more than {RULES} rules"))
+    if len(rules) > limits.RULES:
+        faults.append(Fault(f"more than {limits.RULES} rules"))
     faults += _doubles(rules)
     if faults:
         raise InputError(faults)

@@ -4,8 +4,8 @@ from __future__ import annotations
 
 from typing import Any
 
+from analyzer import limits
 from analyzer.quantity import Dimension
-from analyzer.recognise.pattern import LONGEST_PATTERN
 from analyzer.recognise.rule_tables import DECODES, SIGNS, THETAS
 from analyzer.rule import FIGURES, BoardClass, Role, Topology
 
@@ -93,7 +93,11 @@ def _thermal() -> Schema:
 
 def _match() -> Schema:
     pattern = {
-        "pattern": {"type": "string", "maxLength": LONGEST_PATTERN, "description": "* ? {code}, {maker} at its start"},
+        "pattern": {
+            "type": "string",
+            "maxLength": limits.PATTERN_LENGTH,
+            "description": "* ? {code}, {maker} at its start",
+        },
         "decode": {"enum": list(DECODES)},
         "codes": {**_TEXTS, "description": "the only codes accepted"},
         "table": _map(Dimension.VOLTAGE),

@@ -85,7 +85,7 @@ def test_broken_toml_names_the_line(tmp_path: Path) -> None:
 
 
 def test_too_many_rules_are_refused(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr("analyzer.recognise.rulebook.RULES", 3)
+    monkeypatch.setattr("analyzer.limits.RULES", 3)
     with pytest.raises(InputError, match="more than 3 rules"):
         load_rulebook()
 

@@ -5,8 +5,8 @@ from __future__ import annotations
 import zipfile
 from pathlib import Path
 
+from analyzer import limits
 from analyzer.errors import Fault, InputError
-from analyzer.limits import WORKBOOK_ENTRIES, WORKBOOK_RATIO, WORKBOOK_UNPACKED
 
 
 def check_archive(path: Path) -> None:
@@ -30,11 +30,11 @@ def check_archive(path: Path) -> None:
     unpacked = sum(entry.file_size for entry in entries)
     packed = sum(entry.compress_size for entry in entries)
     remedy = "It is refused unopened; real workbooks are far smaller."
-    if len(entries) > WORKBOOK_ENTRIES:
-        raise InputError(Fault(f"holds {len(entries)} parts, more than {WORKBOOK_ENTRIES}", name, remedy=remedy))
-    if unpacked > WORKBOOK_UNPACKED:
+    if len(entries) > limits.WORKBOOK_ENTRIES:
+        raise InputError(Fault(f"holds {len(entries)} parts, more than {limits.WORKBOOK_ENTRIES}", name, remedy=remedy))
+    if unpacked > limits.WORKBOOK_UNPACKED:
         raise InputError(Fault(f"would unpack to {unpacked // 1024**2} MB", name, remedy=remedy))
-    if packed and unpacked / packed > WORKBOOK_RATIO and unpacked > 1024**2:
+    if packed and unpacked / packed > limits.WORKBOOK_RATIO and unpacked > 1024**2:
         raise InputError(Fault(f"is packed {unpacked // packed} to 1, as only bombs are", name, remedy=remedy))
     if not any(entry.filename == "[Content_Types].xml" for entry in entries):
         raise InputError(Fault("is a ZIP archive but no workbook", name, remedy="Save it as .xlsx."))

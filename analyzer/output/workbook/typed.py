@@ -11,10 +11,10 @@ from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import Any
 
+from analyzer import limits
 from analyzer.errors import Fault, InputError
 from analyzer.evidence import Evidence, Grade
 from analyzer.grammar import parse, parse_load
-from analyzer.limits import TABLE_ROWS
 from analyzer.load import Pulse
 from analyzer.output.workbook.archive_check import check_archive
 from analyzer.output.workbook.layout import HEAD_ROW, SIGN_OFF
@@ -165,7 +165,7 @@ Row = tuple[int, Mapping[str, Any]]
 def _rows(sheet: Any) -> Iterator[Row]:
     """(row number as people count, head → value) of every row below the heads."""
     heads: list[str] = []
-    for number, cells in enumerate(sheet.iter_rows(max_row=TABLE_ROWS, values_only=True)):
+    for number, cells in enumerate(sheet.iter_rows(max_row=limits.TABLE_ROWS, values_only=True)):
         if number == HEAD_ROW:
             heads = ["" if cell is None else str(cell) for cell in cells]
         elif number > HEAD_ROW:
