@@ -30,7 +30,7 @@ def run(arguments: argparse.Namespace) -> int:
     from analyzer.audit import SETTINGS_NAME
     from analyzer.output.atomic import write_text
     from analyzer.output.settings_merge import merged
-    from analyzer.output.workbook.typed import read_typed
+    from analyzer.output.workbook.typed_reading import read_typed
     from analyzer.settings_file import load_settings
 
     typed = read_typed(arguments.workbook)

@@ -110,7 +110,7 @@ def typed_before(arguments: argparse.Namespace) -> Typed | None:
     """What was typed into the workbook of `--currents`, if one is given."""
     if arguments.currents is None:
         return None
-    from analyzer.output.workbook.typed import read_typed
+    from analyzer.output.workbook.typed_reading import read_typed
 
     return read_typed(arguments.currents)
 
@@ -159,7 +159,9 @@ def write_files(result: Audit, gate: Gate, arguments: argparse.Namespace) -> lis
     if arguments.workbook is not None:
         from analyzer.output.workbook import write_workbook
 
-        write_workbook(arguments.workbook, ledger, result.settings, typed_before(arguments))
+        if write_workbook(arguments.workbook, ledger, result.settings, typed_before(arguments)):
+            note = "holds typed values that this run did not use; take them in with --currents"
+            print(f"note: {arguments.workbook} {note} {arguments.workbook}", file=sys.stderr)
     if arguments.json is not None:
         from analyzer.output.ledger_json import write_json
 

@@ -197,8 +197,11 @@ def test_cells_hold_text_as_it_is_but_for_what_no_cell_can_hold(text: str, shown
 
 
 def test_long_text_is_cut_visibly() -> None:
-    assert len(plain("x" * 40_000)) == 32_000
-    assert plain("x" * 40_000).endswith("…")
+    assert len(plain("x" * 40_000)) == 32_767
+    assert plain("x" * 40_000).endswith("x…")
+    assert plain("x" * 32_767) == "x" * 32_767
+    # a character of two units is not cut in half: 16,383 of them would fit, and one gives way to the mark
+    assert plain("🌡" * 16_384) == "🌡" * 16_383 + "…"
 
 
 def test_references_follow_the_letters_of_spreadsheets() -> None:

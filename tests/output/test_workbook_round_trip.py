@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import shutil
-import string
 import zipfile
 from pathlib import Path
 from typing import Any
@@ -11,14 +10,13 @@ from typing import Any
 import openpyxl
 import pytest
 from conftest import ROOT
-from hypothesis import HealthCheck, given, settings
-from hypothesis import strategies as st
 
 from analyzer.audit import Audit, audit
 from analyzer.errors import InputError
 from analyzer.output.ledger_json import as_document
 from analyzer.output.workbook import write_workbook
-from analyzer.output.workbook.typed import Typed, read_typed
+from analyzer.output.workbook.typed import Typed
+from analyzer.output.workbook.typed_reading import read_typed
 from analyzer.rule import BoardClass
 
 BOARD = ROOT / "fixture_boards" / "tide_logger"
@@ -135,64 +133,6 @@ def test_what_was_typed_for_a_part_that_is_gone_is_listed_not_dropped(result: Au
         "/another-part",
     )
     assert [draw.key for draw in read_typed(file).draws] == ["/another-part"]
-
-
-TEXT = st.text(string.ascii_letters + string.digits + " ,.;:'\"=+-@%&<>|äΩ°µ", min_size=1, max_size=60).filter(
-    str.strip
-)
-AMPS = st.one_of(
-    st.floats(0, 5, allow_nan=False).map(lambda x: round(x, 6)),
-    st.integers(0, 900).map(lambda n: f"{n} mA"),
-    st.tuples(st.integers(0, 90), st.integers(90, 900)).map(lambda pair: f"{pair[0]}..{pair[1]} mA"),
-)
-
-
-@settings(max_examples=25, deadline=None, derandomize=True, suppress_health_check=[HealthCheck.function_scoped_fixture])
-@given(
-    amps=st.lists(AMPS, min_size=6, max_size=6),
-    notes=st.lists(TEXT, min_size=6, max_size=6),
-    answer=TEXT,
-    sign_off=TEXT,
-)
-def test_random_edits_lose_nothing(
-    result: Audit, tmp_path: Path, amps: list[object], notes: list[str], answer: str, sign_off: str
-) -> None:
-    """Twenty-five sheets of fourteen edits each."""
-    file = fresh(result, tmp_path)
-    book = openpyxl.load_workbook(file)
-    sheet = book["Currents"]
-    heads = {str(cell.value): cell.column for cell in sheet[4]}
-    gaps = [row for row in sheet.iter_rows(min_row=5) if row[heads["Kind"] - 1].value == "gap"]
-    assert len(gaps) == 6
-    meant: dict[tuple[str, str], tuple[object, str]] = {}
-    for row, value, note in zip(gaps, amps, notes, strict=True):
-        for head, text in (("Type nominal [A]", value), ("Your note", note)):
-            cell = sheet.cell(row[0].row, heads[head])
-            cell.value = text  # type: ignore[assignment]
-            if isinstance(text, str):
-                cell.data_type = "s"
-        key = (str(row[heads["Identity"] - 1].value), str(row[heads["Rail"] - 1].value))
-        meant[key] = (value, note.strip())
-    findings = book["Findings"]
-    findings.cell(5, 7).value = answer
-    findings.cell(5, 7).data_type = "s"
-    summary = book["Summary"]
-    place = next(row[0].row for row in summary.iter_rows() if row[0].value == "Remarks")
-    summary.cell(place, 2).value = sign_off
-    summary.cell(place, 2).data_type = "s"
-    book.save(file)
-    once = read_typed(file)
-    run = audit(BOARD, adjust=once.applied_to)
-    write_workbook(file, run.ledger, run.settings, once)
-    twice = read_typed(file)
-    for typed in (once, twice):
-        assert {key: cells[1] for key, cells in typed.cells.items()} == {
-            key: value for key, (value, _) in meant.items()
-        }
-        assert dict(typed.notes) == {key: note for key, (_, note) in meant.items()}
-        assert dict(typed.sign_off) == {"Remarks": sign_off.strip()}
-    assert list(once.answers.values()) == [answer.strip()]
-    assert twice.answers == once.answers
 
 
 def test_the_same_input_gives_the_same_bytes(result: Audit, tmp_path: Path) -> None:

@@ -8,7 +8,7 @@ from __future__ import annotations
 import re
 import subprocess
 import zipfile
-from collections.abc import Mapping
+from collections.abc import Iterable, Mapping
 from pathlib import Path
 from typing import Any
 
@@ -18,7 +18,7 @@ from conftest import ROOT, need
 
 from analyzer.audit import audit
 from analyzer.output.workbook import write_workbook
-from analyzer.output.workbook.typed import read_typed
+from analyzer.output.workbook.typed_reading import read_typed
 
 pytestmark = pytest.mark.outside
 
@@ -37,17 +37,27 @@ def written(board: str, folder: Path) -> Path:
 
 def recalculated(file: Path, folder: Path) -> Path:
     """The workbook after LibreOffice has worked out every formula, from a copy without stored results."""
-    stripped, out = folder / f"stripped_{file.name}", folder / "out"
-    with zipfile.ZipFile(file) as source, zipfile.ZipFile(stripped, "w", zipfile.ZIP_DEFLATED) as target:
+    return recalculated_all([file], folder)[0]
+
+
+def recalculated_all(files: Iterable[Path], folder: Path) -> list[Path]:
+    """The same for several workbooks in one run of the program."""
+    out = folder / "out"
+    stripped = [_stripped(file, folder / f"stripped_{file.name}") for file in files]
+    profile = f"-env:UserInstallation=file://{folder}/profile"
+    command = [str(need("soffice")), profile, "--headless", "--convert-to", "xlsx", "--outdir", str(out)]
+    subprocess.run([*command, *map(str, stripped)], check=True, capture_output=True, timeout=300)
+    return [out / file.name for file in stripped]
+
+
+def _stripped(file: Path, copy: Path) -> Path:
+    with zipfile.ZipFile(file) as source, zipfile.ZipFile(copy, "w", zipfile.ZIP_DEFLATED) as target:
         for name in source.namelist():
             data = source.read(name)
             if name.startswith("xl/worksheets/sheet"):
                 data = _STORED.sub(r"\1>\2", data.decode("utf-8")).encode("utf-8")
             target.writestr(name, data)
-    profile = f"-env:UserInstallation=file://{folder}/profile"
-    command = [str(need("soffice")), profile, "--headless", "--convert-to", "xlsx", "--outdir", str(out), str(stripped)]
-    subprocess.run(command, check=True, capture_output=True, timeout=180)
-    return out / stripped.name
+    return copy
 
 
 def values(file: Path) -> dict[tuple[str, str], Any]:
@@ -163,3 +173,88 @@ def test_another_board_class_makes_every_verdict_a_matter_of_a_re_run(tmp_path: 
     theirs = values(recalculated(edited(file, {("Settings", cell): "2s2p"}), tmp_path))
     for part in ("U1", "U2", "U5"):
         assert theirs["Regulators", place(file, "Regulators", "Verdict", Part=part)] == "re-run"
+
+
+NEW = ("Type low [A]", "Type nominal [A]", "Type high [A]")
+
+
+def verdicts(cells: Mapping[tuple[str, str], Any]) -> dict[str, Any]:
+    """Part → verdict on the Regulators sheet, whose columns A and T they are."""
+    return {cells["Regulators", f"A{row}"]: cells["Regulators", f"T{row}"] for row in (5, 6, 7)}
+
+
+def current(file: Path, part: str, rail: str, column: str) -> tuple[str, str]:
+    return ("Currents", place(file, "Currents", column, Rail=rail, Part=part))
+
+
+def setting(file: Path, name: str) -> tuple[str, str]:
+    return ("Settings", place(file, "Settings", "Value", **{"Name in formulas": name}))
+
+
+def test_what_no_formula_can_read_leaves_no_verdict_standing(tmp_path: Path) -> None:
+    """Before a re-run a typed text counts nothing, so a gap that it fills must not look closed."""
+    lamp, bench = written("lane_lamp", tmp_path), written("seedling_bench", tmp_path)
+    theta = ("Regulators", place(bench, "Regulators", "θ at sea level [K/W]", Part="U5"))
+    low, nominal, high = NEW
+    cases: dict[str, tuple[Path, dict[tuple[str, str], Any]]] = {
+        "text in a gap": (lamp, {current(lamp, "U2", "+3V3", nominal): "500 mA"}),
+        "text over a stated current": (bench, {current(bench, "U3", "+3V3", high): "5 A"}),
+        "text beside a number": (
+            bench,
+            {current(bench, "U3", "+3V3", low): "1 mA", current(bench, "U3", "+3V3", high): 0.002},
+        ),
+        "negative": (bench, {current(bench, "U6", "+12V", high): -0.09}),
+        "setting emptied": (bench, {setting(bench, "Ambient_high"): None}),
+        "setting as text": (bench, {setting(bench, "Ambient_high"): "60 °C"}),
+        "nominal above the highest": (bench, {setting(bench, "Ambient_nominal"): 80}),
+        "θ emptied": (bench, {theta: None}),
+        "falling": (
+            bench,
+            {current(bench, "U3", "+3V3", nominal): 0.5, current(bench, "U3", "+3V3", high): 0.001},
+        ),
+        "number in a gap": (lamp, {current(lamp, "U2", "+3V3", nominal): 0.5}),
+        "number on a regulator": (bench, {current(bench, "U2", "+5V", high): 0.0001}),
+    }
+    files = []
+    for number, (file, edits) in enumerate(cases.values()):
+        files.append(edited(file, edits).rename(tmp_path / f"case{number}.xlsx"))
+    found = dict(zip(cases, map(values, recalculated_all(files, tmp_path)), strict=True))
+    everywhere = [name for name in cases if set(verdicts(found[name]).values()) == {"re-run"}]
+    assert everywhere == [
+        "text in a gap",
+        "text over a stated current",
+        "text beside a number",
+        "negative",
+        "setting emptied",
+        "setting as text",
+        "nominal above the highest",
+    ]
+    assert verdicts(found["θ emptied"]) == {"U5": "re-run", "U2": "clear", "U1": "clear"}
+    # by hand for U2 with EXPECTED.md: (5.136 − 3.2505) V · 0.509 A · 135 K/W = 129.5 K above 53 °C, limit 115 °C
+    assert verdicts(found["falling"])["U2"] == "over"
+    assert verdicts(found["number in a gap"])["U1"] == "over"
+    # what a regulator takes follows from its output; EXPECTED.md has these three verdicts
+    assert verdicts(found["number on a regulator"]) == {"U5": "over", "U2": "clear", "U1": "clear"}
+
+
+def test_after_a_re_run_typed_text_counts_as_the_engine_read_it(tmp_path: Path) -> None:
+    """Text, numbers and both together, typed and taken in: the spreadsheet works out what the engine did."""
+    file = written("tide_logger", tmp_path)
+    low, nominal, high = NEW
+    typed = edited(
+        file,
+        {
+            current(file, "U4", "+5V", nominal): "2 mA for 5 ms every 20 ms, else 1 mA",
+            current(file, "U4", "-5V", low): "1 mA",
+            current(file, "U4", "-5V", nominal): 0.002,
+            current(file, "U4", "-5V", high): "0.003 A",
+            current(file, "U5", "+5V", high): "30 mW",
+        },
+    )
+    found = read_typed(typed)
+    again = audit(ROOT / "fixture_boards" / "tide_logger", adjust=found.applied_to)
+    target = tmp_path / "again.xlsx"
+    assert write_workbook(target, again.ledger, again.settings, found) is False
+    theirs = values(recalculated(target, tmp_path))
+    assert differing(formulas(target), values(target), theirs) == []
+    assert "re-run" not in verdicts(theirs).values()

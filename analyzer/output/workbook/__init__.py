@@ -11,7 +11,7 @@ if TYPE_CHECKING:
     from analyzer.settings import Settings
 
 
-def write_workbook(file: Path, ledger: Ledger, settings: Settings, typed: Typed | None = None) -> None:
+def write_workbook(file: Path, ledger: Ledger, settings: Settings, typed: Typed | None = None) -> bool:
     """Write the workbook of a ledger.
 
     What was typed into a workbook that stands at `file` is carried over even when nobody asked for it, and that
@@ -23,9 +23,13 @@ def write_workbook(file: Path, ledger: Ledger, settings: Settings, typed: Typed 
         settings: The settings in force.
         typed: What was typed into an earlier workbook; None looks at `file` itself.
 
+    Returns:
+        Whether values typed before are carried over that this ledger does not know of: its verdicts say re-run.
+
     Raises:
-        OutputError: If the file cannot be written; then the old one is whole.
+        OutputError: If the file cannot be written, or holds something typed that `typed` does not; then the old one is
+            whole.
     """
     from analyzer.output.workbook.build import write
 
-    write(file, ledger, settings, typed)
+    return write(file, ledger, settings, typed)

@@ -5,33 +5,42 @@ from __future__ import annotations
 import datetime
 import io
 import os
+from dataclasses import replace
 from pathlib import Path
 
-from analyzer.errors import InputError
+from analyzer.errors import Fault, InputError, OutputError
 from analyzer.ledger import Ledger
 from analyzer.output.atomic import write_bytes
 from analyzer.output.workbook import charts, currents, lists, regulators, settings_sheet, summary
 from analyzer.output.workbook.layout import Book
 from analyzer.output.workbook.plan import plan
-from analyzer.output.workbook.typed import NOTHING, Typed, read_typed
+from analyzer.output.workbook.typed import NOTHING, Typed
+from analyzer.output.workbook.typed_reading import read_typed
 from analyzer.settings import Settings
 
 
-def write(file: Path, ledger: Ledger, settings: Settings, typed: Typed | None) -> None:
+def write(file: Path, ledger: Ledger, settings: Settings, typed: Typed | None) -> bool:
     """Write the workbook; an earlier file is kept as NAME.previous.xlsx."""
     standing = file.read_bytes() if file.is_file() else None
+    before = _typed_before(file) if standing is not None else NOTHING
     if typed is None:
-        typed = _typed_before(file) if standing is not None else NOTHING
+        typed = before
+    elif lost := list(typed.lacks(before)):
+        more = f" and {len(lost) - 1} more" if len(lost) > 1 else ""
+        what = f"holds what was typed for {lost[0]}{more}, and {typed.file} does not"
+        remedy = f"Give it with --currents {file.name}, or write the workbook under another name; nothing was lost."
+        raise OutputError(Fault(what, str(file), remedy=remedy))
     data = build(ledger, settings, typed, file.name)
     if standing is not None and standing != data:
         write_bytes(file.with_name(f"{file.stem}.previous{file.suffix}"), standing)
     write_bytes(file, data)
+    return typed.waits
 
 
 def _typed_before(file: Path) -> Typed:
     """What was typed into the file about to be replaced; a file that is none of ours is only kept."""
     try:
-        return read_typed(file)
+        return replace(read_typed(file), applied=False)
     except InputError:
         return NOTHING
 
@@ -49,11 +58,11 @@ def build(ledger: Ledger, settings: Settings, typed: Typed, name: str) -> bytes:
     digest = ledger.inputs[0].sha256[:12] if ledger.inputs else "no input"
     book = Book(raw, _footer(f"{name}  input {digest}"))
     rows = plan(ledger, typed)
-    summary.write(book, ledger, typed.sign_off)
-    settings_sheet.write(book, ledger, settings)
-    regulators.write(book, ledger, rows)
+    summary.write(book, ledger, typed)
+    settings_sheet.write(book, ledger, settings, typed, len(rows.lines))
+    regulators.write(book, ledger, rows, typed)
     currents.write_rails(book, ledger, rows)
-    currents.write_currents(book, ledger, rows, typed.cells, typed.notes)
+    currents.write_currents(book, ledger, rows, typed)
     lists.write_remedies(book, ledger)
     lists.write_evidence(book, ledger)
     lists.write_findings(book, ledger, typed.answers)

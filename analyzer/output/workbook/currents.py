@@ -9,8 +9,9 @@ from collections.abc import Mapping
 
 from analyzer.ledger import Entry, Ledger
 from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, Sheet, letter
-from analyzer.output.workbook.plan import Line, Plan
+from analyzer.output.workbook.plan import CLOSED_KINDS, Line, Plan
 from analyzer.output.workbook.regulators import PLACES as REGULATOR_PLACES
+from analyzer.output.workbook.typed import NOTHING, Cells, Typed
 
 RAIL_COLUMNS = (
     Column("Rail", 24, "wrap"),
@@ -47,8 +48,13 @@ CURRENT_COLUMNS = (
     Column("i0 [A]", 8, "plain"),
     Column("i1 [A/A]", 8, "plain"),
     Column("i2 [A/A²]", 8, "plain"),
+    Column("Low as audited", 8, "plain"),
+    Column("Nominal as audited", 8, "plain"),
+    Column("High as audited", 8, "plain"),
+    Column("Unread", 8, "plain"),
     Column("Identity", 12),
 )
+NO_CELLS: Cells = (None, None, None)
 CURRENT_PLACES: Mapping[str, int] = {column.head: number for number, column in enumerate(CURRENT_COLUMNS)}
 
 
@@ -102,8 +108,7 @@ def write_currents(
     book: Book,
     ledger: Ledger,
     plan: Plan,
-    typed: Mapping[tuple[str, str], tuple[object, object, object]],
-    notes: Mapping[tuple[str, str], str],
+    typed: Typed,
 ) -> None:
     """Write the Currents sheet.
 
@@ -111,17 +116,20 @@ def write_currents(
         book: The workbook.
         ledger: The ledger.
         plan: Rows.
-        typed: (identity, rail) → what was typed as low, nominal, high; carried over.
-        notes: (identity, rail) → what was typed as a note.
+        typed: What was typed before; carried over.
     """
     remark = (
         "Type currents into the coloured cells: amperes as numbers, or text with a unit such as 120 mA or 80..150 mA."
     )
     sheet = book.sheet("Currents", "Currents", remark, CURRENT_COLUMNS, freeze=2)
     rooms = {rail: _room(entry) for rail, entry in _feeders(ledger).items()}
+    written: set[tuple[str, str]] = set()
     for number, line in enumerate(plan.lines):
         row, where = FIRST_ROW + number, (line.key, line.rail)
-        _line(sheet, row, line, plan, typed.get(where), notes.get(where))
+        _line(sheet, row, line, plan)
+        # a part that has two rows on one rail gets what was typed for it in one of them
+        _typed(sheet, row, line, NOTHING if where in written else typed)
+        written.add(where)
         if line.rail in plan.rail_rows:
             place = f"Rails!$H${plan.rail_rows[line.rail] + 1}"
             formula = f'=IF(ISNUMBER({place}),{place},"")'
@@ -129,28 +137,30 @@ def write_currents(
     last = FIRST_ROW + len(plan.lines) - 1
     sheet.filter(last)
     first = CURRENT_PLACES["i0 [A]"]
-    sheet.raw.set_column(first, first + 3, 9, None, {"level": 1, "hidden": 1})
+    sheet.raw.set_column(first, CURRENT_PLACES["Identity"], 9, None, {"level": 1, "hidden": 1})
     sheet.raw.print_area(0, 0, max(last, FIRST_ROW), CURRENT_PLACES["Sheet"])
     if plan.lines:
         rule = {"type": "cell", "criteria": ">", "value": "0", "format": book.form("open")}
         sheet.raw.conditional_format(FIRST_ROW, CURRENT_PLACES["Missing"], last, CURRENT_PLACES["Missing"], rule)
 
 
-def _line(
-    sheet: Sheet,
-    row: int,
-    line: Line,
-    plan: Plan,
-    typed: tuple[object, object, object] | None,
-    note: str | None,
-) -> None:
+def _typed(sheet: Sheet, row: int, line: Line, typed: Typed) -> None:
+    """The cells to type into, with what was typed into them before."""
+    where = (line.key, line.rail)
+    cells = typed.cells.get(where, NO_CELLS)
+    audited = cells if typed.applied else NO_CELLS
+    form = "input" if line.is_open_to_typing else None
+    for offset in range(3):
+        sheet.put(row, CURRENT_PLACES["Type low [A]"] + offset, cells[offset], form)
+        sheet.put(row, CURRENT_PLACES["Low as audited"] + offset, audited[offset])
+    sheet.put(row, CURRENT_PLACES["Your note"], typed.notes.get(where), "input")
+
+
+def _line(sheet: Sheet, row: int, line: Line, plan: Plan) -> None:
     span = line.amps.span if line.amps else None
     ends = span.corners if span else (None, None, None)
     words = _words(line)
     sheet.row(row, (line.rail, line.ref or "off-board", line.value, line.kind, *ends))
-    for offset in range(3):
-        sheet.put(row, 7 + offset, typed[offset] if typed else None, "input")
-    sheet.put(row, 10, note, "input")
     sheet.put(row, CURRENT_PLACES["Suggestions from notes, or source"], words)
     sheet.put(row, CURRENT_PLACES["Sheet"], line.sheet)
     sheet.put(row, CURRENT_PLACES["Identity"], line.key)
@@ -159,16 +169,31 @@ def _line(
         below, coefficients = line.follows
         for offset, coefficient in enumerate(coefficients):
             sheet.put(row, CURRENT_PLACES["i0 [A]"] + offset, coefficient)
-    at = f"{row + 1}"
     below_load = f"Rails!$F${plan.rail_rows[below] + 1}" if below else "0"
-    follows = f"$Q{at}+$R{at}*{below_load}+$S{at}*{below_load}^2"
-    counts = (
-        f"=IF(ISNUMBER($J{at}),$J{at},IF(ISNUMBER($I{at}),$I{at},IF(ISNUMBER($H{at}),$H{at},"
-        f"IF(ISNUMBER($R{at}),{follows},N($G{at})))))"
-    )
-    sheet.formula(row, CURRENT_PLACES["Counts as [A]"], counts, span.high if span else 0.0)
-    missing = f'=IF(OR($D{at}<>"gap",COUNTA($H{at}:$J{at})>0),0,1)'
-    sheet.formula(row, CURRENT_PLACES["Missing"], missing, 1 if line.gap else 0)
+    results = (span.high if span else 0.0, 1 if line.gap else 0, 0)
+    for (head, formula), result in zip(_formulas(row, below_load).items(), results, strict=True):
+        sheet.formula(row, CURRENT_PLACES[head], formula, result)
+
+
+def _formulas(row: int, below_load: str) -> dict[str, str]:
+    """Head → formula of the cells that follow what is typed.
+
+    Numbers count at once. Text, which no formula reads, a negative number and an emptied cell that the audit used wait
+    for a re-run ("Unread"), and till then no verdict stands.
+    """
+    at = {head: letter(number) + str(row + 1) for head, number in CURRENT_PLACES.items()}
+    cells = f"{at['Type low [A]']}:{at['Type high [A]']}"
+    kind = at["Kind"]
+    closed = ",".join(f'{kind}="{word}"' for word in CLOSED_KINDS)
+    numbers = f"COUNT({cells})>0,COUNTA({cells})=COUNT({cells})"
+    pairs = zip(("Low", "Nominal", "High"), ("low", "nominal", "high"), strict=True)
+    same = ",".join(f"EXACT({at[f'Type {typed} [A]']},{at[f'{end} as audited']})" for end, typed in pairs)
+    i1 = at["i1 [A/A]"]
+    follows = f"{at['i0 [A]']}+{i1}*{below_load}+{at['i2 [A/A²]']}*{below_load}^2"
+    counts = f"=IF(AND(NOT(OR({closed})),{numbers}),MAX(0,{cells}),IF(ISNUMBER({i1}),{follows},N({at['High [A]']})))"
+    missing = f'=IF({kind}="gap below",1,IF(OR({kind}<>"gap",AND({numbers})),0,1))'
+    unread = f'=IF(OR({closed},AND({same})),0,IF(AND({kind}<>"gone",{numbers},MIN({cells})>=0),0,1))'
+    return {"Counts as [A]": counts, "Missing": missing, "Unread": unread}
 
 
 def _words(line: Line) -> str:

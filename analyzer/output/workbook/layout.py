@@ -7,8 +7,8 @@ from dataclasses import dataclass
 from typing import Any
 
 PAPER_A4 = 9
-LONGEST_CELL = 32_000
-"""Characters in one cell; the format allows 32,767."""
+LONGEST_CELL = 32_767
+"""UTF-16 units in one cell: what spreadsheets hold."""
 
 HEAD_ROW = 3
 """Row (from 0) of the column heads; title and remarks stand above."""
@@ -148,7 +148,13 @@ class Sheet:
 def plain(text: str) -> str:
     """Text that a cell can hold: control characters made visible, cut to the longest a cell may be."""
     clean = "".join(_visible(c) for c in text)
-    return clean if len(clean) <= LONGEST_CELL else clean[: LONGEST_CELL - 1] + "…"
+    if len(clean) * 2 <= LONGEST_CELL:
+        return clean
+    units = clean.encode("utf-16-le")
+    if len(units) <= 2 * LONGEST_CELL:
+        return clean
+    # half a character at the cut is left out
+    return units[: 2 * (LONGEST_CELL - 1)].decode("utf-16-le", errors="ignore") + "…"
 
 
 def _visible(c: str) -> str:

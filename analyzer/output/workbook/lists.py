@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections import Counter
+from collections.abc import Mapping, Sequence
 
 from analyzer.findings.base import Finding
 from analyzer.ledger import Ledger
-from analyzer.output.workbook.layout import FIRST_ROW, Book, Column
+from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, plain
+from analyzer.output.workbook.typed import Answered
 
 REMEDY_COLUMNS = (
     Column("Part", 8),
@@ -75,27 +77,28 @@ def write_evidence(book: Book, ledger: Ledger) -> None:
     sheet.filter(row - 1)
 
 
-def write_findings(book: Book, ledger: Ledger, answers: Mapping[tuple[str, str, str], str]) -> None:
+def write_findings(book: Book, ledger: Ledger, answers: Mapping[Answered, str]) -> None:
     """Write the Findings sheet.
 
     Args:
         book: The workbook.
         ledger: The ledger.
-        answers: (finding, subject, identity) → what a reviewer answered; carried over.
+        answers: The finding → what a reviewer answered; carried over.
     """
     remark = "Answer in the coloured column; a re-run carries the answers over."
     sheet = book.sheet("Findings", "Findings", remark, FINDING_COLUMNS)
     row = FIRST_ROW
-    for finding in ledger.findings:
+    standing = _answered(ledger.findings, answers)
+    for finding, answered in zip(ledger.findings, standing, strict=True):
         where = (finding.message, finding.remedy, finding.where)
         sheet.row(row, (finding.weight.value, finding.subject, finding.name, *where, None, finding.key))
-        sheet.put(row, 6, answers.get(answer_key(finding)), "input")
+        sheet.put(row, 6, answers[answered] if answered else None, "input")
         row += 1
-    standing = {answer_key(finding) for finding in ledger.findings}
-    for (name, subject, key), answer in answers.items():
-        if (name, subject, key) not in standing:
+    for one, answer in answers.items():
+        if one not in standing:
             # the matter was mended, but what somebody wrote about it stays
-            sheet.row(row, ("gone", subject, name, "found in an earlier run, not in this one", "", "", None, key))
+            told = (one.what, "found in an earlier run, not in this one", one.where, None, one.identity)
+            sheet.row(row, ("gone", one.subject, one.finding, *told))
             sheet.put(row, 6, answer, "input")
             row += 1
     sheet.filter(row - 1)
@@ -105,9 +108,25 @@ def write_findings(book: Book, ledger: Ledger, answers: Mapping[tuple[str, str, 
         sheet.verdict_colours(FIRST_ROW, row - 1, 0)
 
 
-def answer_key(finding: Finding) -> tuple[str, str, str]:
-    """What an answer is filed under: the same finding about the same part, whatever its wording."""
-    return (finding.name, finding.subject, finding.key)
+def _answered(findings: Sequence[Finding], answers: Mapping[Answered, str]) -> list[Answered | None]:
+    """The answer that belongs to each finding.
+
+    Wording and place tell findings of one kind about one part apart. Where there was and is only one of them, the
+    answer stays with it when its wording changes, as a figure in it does.
+    """
+    exact = [answered_as(finding) for finding in findings]
+    now, before = Counter(one[:3] for one in exact), Counter(one[:3] for one in answers)
+    alone = {one[:3]: one for one in answers if before[one[:3]] == 1}
+    return [
+        one if one in answers else alone.get(one[:3]) if now[one[:3]] == 1 else None  # a guess among several is none
+        for one in exact
+    ]
+
+
+def answered_as(finding: Finding) -> Answered:
+    """What an answer to the finding is filed under: the texts of its row, as its cells hold them."""
+    texts = (finding.name, finding.subject, finding.key, finding.message, finding.where)
+    return Answered(*(plain(text).strip() for text in texts))
 
 
 def write_not_understood(book: Book, ledger: Ledger) -> None:

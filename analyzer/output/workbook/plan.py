@@ -11,6 +11,9 @@ from analyzer.load import Draw, Gap
 from analyzer.output.workbook.layout import FIRST_ROW
 from analyzer.output.workbook.typed import Typed
 
+CLOSED_KINDS = ("regulator", "gap below")
+"""Kinds of lines on which no current can be stated."""
+
 
 @dataclass(frozen=True, slots=True)
 class Line:
@@ -19,7 +22,8 @@ class Line:
     Attributes:
         rail: Its rail.
         ref, key, value, sheet: The part.
-        kind: "stated", "ruled", "computed", "regulator", "gap", or "gone" for a part not there now.
+        kind: "stated", "ruled", "computed", "regulator", "gap", "gap below" for a gap that closes with those of a rail
+            below, or "gone" for a part not there now.
         amps: The current as evidence, None for a gap.
         gap: The gap, None for a draw.
         follows: Where the current follows the load of a rail below: that rail, and i0 [A], i1 [A/A], i2 [A/A²].
@@ -34,6 +38,11 @@ class Line:
     amps: Evidence | None
     gap: Gap | None
     follows: tuple[str, tuple[float, float, float]] | None = None
+
+    @property
+    def is_open_to_typing(self) -> bool:
+        """Whether a current typed here counts: what a regulator takes follows from what hangs on its output."""
+        return self.kind not in CLOSED_KINDS
 
 
 @dataclass(frozen=True)
@@ -102,4 +111,5 @@ def _of_passage(draw: Draw, rail: str | None, ledger: Ledger) -> tuple[str, tupl
 
 
 def _gap_line(gap: Gap) -> Line:
-    return Line(gap.rail, gap.ref, gap.key, gap.value, gap.sheet, "gap", None, gap)
+    kind = "gap below" if gap.follows else "gap"
+    return Line(gap.rail, gap.ref, gap.key, gap.value, gap.sheet, kind, None, gap)

@@ -12,6 +12,8 @@ from analyzer.findings.base import Weight
 from analyzer.ledger import Entry, Ledger
 from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, Sheet, letter
 from analyzer.output.workbook.plan import Plan
+from analyzer.output.workbook.typed import Typed
+from analyzer.output.workbook.typed_reading import YES
 
 COLUMNS = (
     Column("Part", 8),
@@ -55,6 +57,8 @@ COLUMNS = (
     Column("Engine load [A]", 9, "plain"),
     Column("Rail load as audited [A]", 9, "plain"),
     Column("θ as audited [K/W]", 9, "plain"),
+    Column("Engine θ [K/W]", 9, "plain"),
+    Column("θ typed", 9, "plain"),
     Column("Identity", 12),
 )
 PLACES: Mapping[str, int] = {column.head: number for number, column in enumerate(COLUMNS)}
@@ -76,8 +80,15 @@ RERUN = "re-run"
 """What a row says in place of its verdict when something was edited that its formulas do not follow."""
 
 
-def write(book: Book, ledger: Ledger, plan: Plan) -> None:
-    """Write the sheet."""
+def write(book: Book, ledger: Ledger, plan: Plan, typed: Typed) -> None:
+    """Write the sheet.
+
+    Args:
+        book: The workbook.
+        ledger: The ledger.
+        plan: Rows.
+        typed: What was typed before; carried over.
+    """
     remark = (
         "Worst first, as audited. θ may be edited; loads follow the Currents sheet, surroundings the Settings sheet."
     )
@@ -85,7 +96,10 @@ def write(book: Book, ledger: Ledger, plan: Plan) -> None:
     shares = {(feed.ref, rail.name): feed.share for rail in ledger.rails for feed in rail.feeds}
     for entry in ledger.entries:
         _row(sheet, entry, plan, shares, ledger)
+        _theta(sheet, plan.entry_rows[entry.key], entry, typed)
+        _formulas(sheet, plan.entry_rows[entry.key], entry, plan.rail_rows.get(_rail(entry)), waits=typed.waits)
     last = FIRST_ROW + len(ledger.entries) - 1
+    _gone(sheet, last + 1, ledger, typed)
     sheet.filter(last)
     if ledger.entries:
         sheet.verdict_colours(FIRST_ROW, last, PLACES["Verdict"])
@@ -93,6 +107,28 @@ def write(book: Book, ledger: Ledger, plan: Plan) -> None:
     hidden = {"level": 1, "hidden": 1}
     sheet.raw.set_column(PLACES["k0 [W]"], PLACES["Identity"], 9, None, hidden)
     sheet.raw.print_area(0, 0, max(last, FIRST_ROW), PLACES["Grade"])
+
+
+def _theta(sheet: Sheet, row: int, entry: Entry, typed: Typed) -> None:
+    """The cell that a θ is typed into: the engine's where its formula is live, else empty until somebody types one."""
+    audited = entry.live.get("theta_air") if is_live(entry) else None
+    stated = typed.thetas.get(entry.ref)
+    if stated is not None and typed.applied:
+        audited = stated
+    sheet.put(row, PLACES["θ at sea level [K/W]"], stated or audited, "input" if entry.fitted else None)
+    sheet.put(row, PLACES["θ as audited [K/W]"], audited)
+    sheet.put(row, PLACES["θ typed"], YES if stated is not None else None)
+
+
+def _gone(sheet: Sheet, row: int, ledger: Ledger, typed: Typed) -> None:
+    """Rows for θ typed for parts that are not on the board now: nothing typed is dropped."""
+    there = {entry.ref for entry in ledger.entries}
+    for number, (ref, theta) in enumerate((ref, theta) for ref, theta in typed.thetas.items() if ref not in there):
+        sheet.put(row + number, PLACES["Part"], ref)
+        sheet.put(row + number, PLACES["Kind"], "gone")
+        sheet.put(row + number, PLACES["θ at sea level [K/W]"], theta, "input")
+        sheet.put(row + number, PLACES["Missing"], "θ typed for a part that has no budget now: rename or delete it")
+        sheet.put(row + number, PLACES["θ typed"], YES)
 
 
 def is_live(entry: Entry) -> bool:
@@ -103,7 +139,7 @@ def is_live(entry: Entry) -> bool:
 def _row(sheet: Sheet, entry: Entry, plan: Plan, shares: Mapping[tuple[str, str], float], ledger: Ledger) -> None:
     row = plan.entry_rows[entry.key]
     output = next((one for one in entry.outputs if one.rail), None)
-    rail = output.rail if output else ""
+    rail = _rail(entry)
     live, worst = entry.live, entry.worst
     closed = is_live(entry) and rail in plan.rail_rows
     volts_in = entry.input.volts if entry.input else None
@@ -137,17 +173,14 @@ def _row(sheet: Sheet, entry: Entry, plan: Plan, shares: Mapping[tuple[str, str]
         "Engine junction [°C]": worst.junction if worst else None,
         "Engine load [A]": load,
         "Rail load as audited [A]": ledger.loads[rail].known.high if rail in ledger.loads else None,
-        "θ as audited [K/W]": live.get("theta_air") if closed else None,
+        "Engine θ [K/W]": worst.theta if worst else None,
         "Identity": entry.key,
     }
     for head, value in static.items():
         sheet.put(row, PLACES[head], value)
-    theta = live.get("theta_air") if closed else (worst.theta if worst else None)
-    sheet.put(row, PLACES["θ at sea level [K/W]"], theta, "input" if closed else None)
-    _formulas(sheet, row, entry, plan.rail_rows.get(rail))
 
 
-def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None) -> None:
+def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None, *, waits: bool) -> None:
     worst = entry.worst
     at = {head: letter(number) + str(row + 1) for head, number in PLACES.items()}
     rail_load = f"Rails!$F${rail_row + 1}" if rail_row is not None else "0"
@@ -165,7 +198,9 @@ def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None) -> Non
     missing = at["Missing in all"]
     audited = at["Rail load as audited [A]"]
     moved = f"OR(Edited>0,AND(ISNUMBER({audited}),ABS({rail_load}-N({audited}))>1E-12))"
-    stale = f'OR(Class_edited>0,AND({at["Model"]}="engine",{moved}))'
+    typed = at["θ at sea level [K/W]"]
+    moved = f"OR({moved},NOT(EXACT({typed},{at['θ as audited [K/W]']})))"
+    stale = f"OR(Class_edited+Unread_settings+Unread_currents>0,IF({live},N({typed})<=0,{moved}))"
     verdict = (
         f'=IF({at["Other findings"]}="not fitted","not fitted",IF({stale},"{RERUN}",'
         f'IF(OR({at["Other findings"]}="over",AND(ISNUMBER({junction}),ISNUMBER({limit}),{junction}>{limit}),'
@@ -187,8 +222,7 @@ def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None) -> Non
         ),
         (
             "θ used [K/W]",
-            f"=IF({live},{at['θ solid [K/W]']}+{at['θ at sea level [K/W]']}*Thin_air,"
-            f"{_or_blank(at['θ at sea level [K/W]'])})",
+            f"=IF({live},{at['θ solid [K/W]']}+{typed}*Thin_air,{_or_blank(at['Engine θ [K/W]'])})",
             worst and worst.theta,
         ),
         ("Air [°C]", f"=Ambient_high+Rise_high+N({at['Neighbours [K]']})", _air(entry)),
@@ -204,7 +238,7 @@ def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None) -> Non
         ),
         ("Margin [K]", f'=IF(AND(ISNUMBER({junction}),ISNUMBER({limit})),{limit}-{junction},"")', entry.margin),
         ("Missing in all", f"={static_missing}+MIN(1,{rail_gaps})", _missing(entry)),
-        ("Verdict", verdict, entry.verdict.value if entry.fitted else "not fitted"),
+        ("Verdict", verdict, _verdict(entry, waits=waits)),
         (
             "Further load until over [A]",
             f'=IF(AND({live},ISNUMBER({limit})),MAX(0,{most}-{load}),"")',
@@ -213,6 +247,18 @@ def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None) -> Non
     )
     for head, formula, result in formulas:
         sheet.formula(row, PLACES[head], formula, result)
+
+
+def _rail(entry: Entry) -> str:
+    """The rail whose load the row follows."""
+    return next((one.rail for one in entry.outputs if one.rail), "")
+
+
+def _verdict(entry: Entry, *, waits: bool) -> str:
+    """The word stored: what opens the file without working it out shows no verdict that edits may have changed."""
+    if not entry.fitted:
+        return "not fitted"
+    return RERUN if waits else entry.verdict.value
 
 
 def _or_blank(reference: str) -> str:

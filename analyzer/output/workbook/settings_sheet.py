@@ -7,7 +7,10 @@ from dataclasses import dataclass
 
 from analyzer.heat.altitude import EXPONENTS, multiplier
 from analyzer.ledger import Ledger
-from analyzer.output.workbook.layout import HEAD_ROW, Book, Column, Sheet
+from analyzer.output.workbook.currents import CURRENT_PLACES
+from analyzer.output.workbook.layout import FIRST_ROW, HEAD_ROW, Book, Column, Sheet, letter
+from analyzer.output.workbook.typed import Typed
+from analyzer.output.workbook.typed_reading import YES
 from analyzer.rule import BoardClass
 from analyzer.settings import Settings
 from analyzer.wording import show_span
@@ -20,7 +23,12 @@ COLUMNS = (
     Column("Source", 44, "wrap"),
     Column("Grade", 10),
     Column("Name in formulas", 20),
+    Column("Typed", 8),
 )
+
+
+TYPED = len(COLUMNS) - 1
+"""Column of the mark that tells a typed value from one of the files."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,13 +70,21 @@ def inputs(settings: Settings) -> Iterator[Input]:
     yield Input("Policy_cap", "Policy limit: at most", cap, "°C", source, grade)
 
 
-def _write_class(book: Book, sheet: Sheet, row: int, settings: Settings) -> None:
+INPUT_NAMES = tuple(one.name for one in inputs(Settings()))
+"""Names of the input cells, in the order of the sheet."""
+
+
+def _write_class(book: Book, sheet: Sheet, row: int, settings: Settings, typed: Typed) -> None:
     """The board class: another one means other figures of θ, which only a re-run chooses."""
     stated = settings.board.board_class.value if settings.board.board_class is not None else None
     names = ", ".join(one.value for one in BoardClass)
     source = f"{names}; blank: by copper layers, else the poorest"
     sheet.row(row, ("Board class", None, "class", stated, source, "stated" if stated else "presumed", "Board_class"))
-    sheet.put(row, 1, stated, "input")
+    if typed.board_class is not None:
+        sheet.put(row, 1, typed.board_class.value, "input")
+        sheet.put(row, TYPED, YES)
+    else:
+        sheet.put(row, 1, stated, "input")
     book.book.define_name("Board_class", f"=Settings!$B${row + 1}")
     words = ("Board class edited since the audit", None, "", None, "every row says re-run", "", "Class_edited")
     sheet.row(row + 1, words)
@@ -76,15 +92,47 @@ def _write_class(book: Book, sheet: Sheet, row: int, settings: Settings) -> None
     book.book.define_name("Class_edited", f"=Settings!$B${row + 2}")
 
 
-def write(book: Book, ledger: Ledger, settings: Settings) -> None:
-    """Write the sheet and define its names."""
-    remark = "Coloured cells may be edited: dissipation, junction, margin and verdict follow. A re-run takes them over."
+def _write_unread(book: Book, sheet: Sheet, row: int, lines: int) -> None:
+    """Counts of what was typed and no formula can read: every row says re-run while there is any."""
+    first, last = HEAD_ROW + 2, HEAD_ROW + 1 + len(INPUT_NAMES)
+    crossed = "+".join(
+        f"IF(AND(N($B{at})>N($B{at + 1}),$B{at}<>$D{at}),1,0)"
+        for at in (first + INPUT_NAMES.index("Ambient_nominal"), first + INPUT_NAMES.index("Rise_nominal"))
+    )
+    numbers = f"=ROWS($B${first}:$B${last})-COUNT($B${first}:$B${last})+{crossed}"
+    place = letter(CURRENT_PLACES["Unread"])
+    currents = f"=SUM(Currents!{place}${FIRST_ROW + 1}:{place}${FIRST_ROW + max(lines, 1)})"
+    for offset, (words, formula, name) in enumerate(
+        (
+            ("Settings emptied, or no numbers that fit", numbers, "Unread_settings"),
+            ("Typed currents that wait for a re-run", currents, "Unread_currents"),
+        )
+    ):
+        sheet.row(row + offset, (words, None, "", None, "every row says re-run while there is any", "", name))
+        sheet.formula(row + offset, 1, formula, 0)
+        book.book.define_name(name, f"=Settings!$B${row + offset + 1}")
+
+
+def write(book: Book, ledger: Ledger, settings: Settings, typed: Typed, lines: int) -> None:
+    """Write the sheet and define its names.
+
+    Args:
+        book: The workbook.
+        ledger: The ledger.
+        settings: The settings in force.
+        typed: What was typed before; carried over.
+        lines: How many rows the Currents sheet has.
+    """
+    remark = "Coloured cells may be edited: dissipation, junction, margin and verdict follow. A re-run takes them over "
+    remark += "and goes back to the files for cells that were emptied."
     sheet = book.sheet("Settings", "Settings", remark, COLUMNS)
     row = HEAD_ROW
     for one in inputs(settings):
         row += 1
         sheet.row(row, (one.meaning, None, one.unit, one.value, one.source, one.grade, one.name))
-        sheet.put(row, 1, one.value, "input")
+        value = one.value if typed.applied else typed.settings.get(one.name, one.value)
+        sheet.put(row, 1, value, "input")
+        sheet.put(row, TYPED, YES if one.name in typed.settings else None)
         book.book.define_name(one.name, f"=Settings!$B${row + 1}")
     row += 1
     exponent = next(one.value for one in inputs(settings) if one.name == "Altitude_exponent")
@@ -102,7 +150,9 @@ def write(book: Book, ledger: Ledger, settings: Settings) -> None:
     sheet.put(row, 6, "Edited")
     book.book.define_name("Edited", f"=Settings!$B${row + 1}")
     row += 1
-    _write_class(book, sheet, row, settings)
+    _write_class(book, sheet, row, settings, typed)
+    row += 2
+    _write_unread(book, sheet, row, lines)
     row += 3
     for evidence in ledger.settings:
         sheet.row(row, (evidence.quantity, None, evidence.unit, None, evidence.source, evidence.grade.value))

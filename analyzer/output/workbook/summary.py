@@ -2,15 +2,14 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
-
 from analyzer import __version__
 from analyzer.cli import CAUTION
 from analyzer.findings.base import Verdict
 from analyzer.ledger import Ledger
 from analyzer.output.ledger_json import summary
 from analyzer.output.workbook.layout import FIRST_ROW, SIGN_OFF, Book, letter
-from analyzer.output.workbook.regulators import PLACES
+from analyzer.output.workbook.regulators import PLACES, RERUN
+from analyzer.output.workbook.typed import Typed
 
 CAUTIONS = (
     CAUTION,
@@ -24,9 +23,10 @@ _WORDS = {
     Verdict.TIGHT: "inside the limit, outside the required margin",
     Verdict.CLEAR: "inside the limit with the required margin, on complete evidence",
 }
+_RERUN_WORDS = "something typed since waits for an audit with --currents; no formula can follow it"
 
 
-def write(book: Book, ledger: Ledger, sign_off: Mapping[str, str]) -> None:
+def write(book: Book, ledger: Ledger, typed: Typed) -> None:
     """Write the sheet; the verdict counts follow the Regulators sheet."""
     sheet = book.sheet("Summary", f"Thermal budgets: {ledger.board}", CAUTION, ())
     raw = sheet.raw
@@ -49,11 +49,13 @@ def write(book: Book, ledger: Ledger, sign_off: Mapping[str, str]) -> None:
     column = letter(PLACES["Verdict"])
     last = FIRST_ROW + max(len(ledger.entries), 1)
     first_count = row
-    for verdict in Verdict:
-        sheet.put(row, 0, verdict.value, "label")
-        formula = f'=COUNTIF(Regulators!{column}${FIRST_ROW + 1}:{column}${last},"{verdict.value}")'
-        raw.write_formula(row, 1, formula, book.form("count"), ledger.count(verdict))
-        sheet.put(row, 2, _WORDS[verdict], "wrap")
+    waiting = sum(1 for entry in ledger.entries if entry.fitted) if typed.waits else 0
+    counts = [(verdict.value, 0 if waiting else ledger.count(verdict), _WORDS[verdict]) for verdict in Verdict]
+    for word, count, meaning in (*counts, (RERUN, waiting, _RERUN_WORDS)):
+        sheet.put(row, 0, word, "label")
+        formula = f'=COUNTIF(Regulators!{column}${FIRST_ROW + 1}:{column}${last},"{word}")'
+        raw.write_formula(row, 1, formula, book.form("count"), count)
+        sheet.put(row, 2, meaning, "wrap")
         row += 1
     sheet.verdict_colours(first_count, row - 1, 0)
     facts = summary(ledger)
@@ -74,7 +76,7 @@ def write(book: Book, ledger: Ledger, sign_off: Mapping[str, str]) -> None:
     row += 1
     for label in SIGN_OFF:
         sheet.put(row, 0, label, "label")
-        sheet.put(row, 1, sign_off.get(label), "input")
+        sheet.put(row, 1, typed.sign_off.get(label), "input")
         row += 1
     row += 1
     sheet.put(row, 0, "Inputs read", "title")
