@@ -3,9 +3,16 @@
 from __future__ import annotations
 
 import argparse
+import sys
+from collections.abc import Iterator
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from analyzer.errors import Fault, InputError
+
+if TYPE_CHECKING:
+    from analyzer.output.settings_merge import Value
+    from analyzer.output.workbook.typed import Typed
 
 EXAMPLES = """examples:
   heatledger adopt board.xlsx board.kicad_pro
@@ -41,10 +48,10 @@ def run(arguments: argparse.Namespace) -> int:
     text = ""
     if file.is_file():
         load_settings(file)
-        text = file.read_bytes().decode("utf-8-sig")
-    draws = {
-        _key(draw.ref, draw.rail): _text(cells) for draw, cells in zip(typed.draws, typed.cells.values(), strict=True)
-    }
+        text = file.read_bytes().decode("utf-8")
+    draws = _draws(typed, arguments.workbook)
+    for line in _left(typed):
+        print(f"not taken over: {line}", file=sys.stderr)
     if not draws:
         print("no currents were typed into the workbook; nothing changed")
         return 0
@@ -57,9 +64,35 @@ def run(arguments: argparse.Namespace) -> int:
         return 0
     write_text(file, result)
     for key, value in draws.items():
-        print(f"{key} = {value}")
+        print(f"{key} = {value if isinstance(value, str) else value['watts']}")
     print(f"written: {file}")
     return 0
+
+
+def _draws(typed: Typed, workbook: Path) -> dict[str, Value]:
+    """Key → value of every typed current.
+
+    Raises:
+        InputError: If one key stands for two parts, for the settings know parts by reference only.
+    """
+    found: dict[str, Value] = {}
+    for draw, cells in zip(typed.draws, typed.cells.values(), strict=True):
+        key, text = _key(draw.ref, draw.rail), _text(cells)
+        if key in found:
+            remedy = "Number the parts again, audit, and type their currents anew."
+            raise InputError(Fault(f"two parts are called {key}", str(workbook), "Currents", remedy))
+        found[key] = {"watts": text} if draw.amps is None else text
+    return found
+
+
+def _left(typed: Typed) -> Iterator[str]:
+    """What was typed that [draws] has no place for: an audit without the workbook would not know it."""
+    for name, value in typed.settings.items():
+        yield f"{name} = {value:g} of the Settings sheet"
+    if typed.board_class is not None:
+        yield f"board class {typed.board_class.value} of the Settings sheet"
+    for ref, theta in typed.thetas.items():
+        yield f"θ of {ref}, {theta:g} K/W, of the Regulators sheet"
 
 
 def _key(ref: str, rail: str) -> str:
