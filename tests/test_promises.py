@@ -19,7 +19,7 @@ def names_in(file: Path) -> set[str]:
 
 @pytest.mark.parametrize("listing", LISTS, ids=lambda path: path.name)
 def test_every_test_that_is_named_exists(listing: Path) -> None:
-    named = re.findall(r"`(tests/[\w/]+\.py)(?:::(test_\w+))?`", listing.read_text(encoding="utf-8"))
+    named = re.findall(r"`(tests/[\w/]+\.(?:py|md))(?:::(test_\w+))?`", listing.read_text(encoding="utf-8"))
     assert named
     for file, test in named:
         assert (ROOT / file).is_file(), file

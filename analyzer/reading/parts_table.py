@@ -116,13 +116,11 @@ def _xlsx(path: Path) -> tuple[list[list[str]], bool]:
 
     try:
         book = openpyxl.load_workbook(path, read_only=True, data_only=True)
-    except Exception as error:  # openpyxl raises many kinds for a damaged file
+        rows = list(book.worksheets[0].iter_rows(max_row=limits.TABLE_ROWS + 1, values_only=True))
+        book.close()
+    except Exception as error:  # openpyxl raises many kinds for a damaged file, some of them as it reads the rows
         raise InputError(Fault("is no readable workbook", str(path), remedy="Save it again as .xlsx.")) from error
-    sheet = book.worksheets[0]
-    rows = sheet.iter_rows(max_row=limits.TABLE_ROWS + 1, values_only=True)
-    cells = [["" if cell is None else str(cell).strip() for cell in row] for row in rows]
-    book.close()
-    return cells, True
+    return [["" if cell is None else str(cell).strip() for cell in row] for row in rows], True
 
 
 def _bytes(path: Path) -> bytes:

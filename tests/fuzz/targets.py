@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import io
 import os
 import tempfile
@@ -13,7 +14,7 @@ from pathlib import Path
 from analyzer.component_value import component_value
 from analyzer.errors import HeatledgerError
 from analyzer.grammar import parse, parse_load
-from analyzer.output.workbook.typed import read_typed
+from analyzer.output.workbook.typed_reading import read_typed
 from analyzer.quantity import Dimension
 from analyzer.reading import read
 from analyzer.reading.sexpr import parse as parse_expression
@@ -35,26 +36,20 @@ def _file(name: str, data: bytes) -> Path:
 def expression(data: bytes) -> None:
     """The reader of S-expressions, with words quoted and bare."""
     for bare in (False, True):
-        try:
+        with contextlib.suppress(HeatledgerError):
             parse_expression(data, "p.kicad_sch", "kicad_sch", bare_words=bare)
-        except HeatledgerError:
-            pass
 
 
 def schematic(data: bytes) -> None:
     """A whole schematic, from its file to the circuit."""
-    try:
+    with contextlib.suppress(HeatledgerError):
         read(_file("p.kicad_sch", data))
-    except HeatledgerError:
-        pass
 
 
 def netlist(data: bytes) -> None:
     """Netlists, both writings."""
-    try:
+    with contextlib.suppress(HeatledgerError):
         read(_file("b.xml" if data.lstrip().startswith(b"<") else "b.net", data))
-    except HeatledgerError:
-        pass
 
 
 def quantity(data: bytes) -> None:
@@ -62,14 +57,10 @@ def quantity(data: bytes) -> None:
     text = data.decode("utf-8", errors="replace")
     component_value(text)
     for dimension in Dimension:
-        try:
+        with contextlib.suppress(ValueError):
             parse(text, dimension)
-        except ValueError:
-            pass
-    try:
+    with contextlib.suppress(ValueError):
         parse_load(text)
-    except ValueError:
-        pass
 
 
 def _toml(data: bytes) -> Table | None:
@@ -101,10 +92,8 @@ def settings(data: bytes) -> None:
     top = _toml(data)
     if top is None:
         return
-    try:
+    with contextlib.suppress(HeatledgerError):
         read_settings(top)
-    except HeatledgerError:
-        pass
 
 
 _MEMBER = "xl/worksheets/sheet5.xml"
@@ -120,10 +109,8 @@ def workbook(data: bytes) -> None:
             for name, content in _members().items():
                 made.writestr(name, data if name == _MEMBER else content)
         path = _file("w.xlsx", packed.getvalue())
-    try:
+    with contextlib.suppress(HeatledgerError):
         read_typed(path)
-    except HeatledgerError:
-        pass
 
 
 _MEMBERS: dict[str, bytes] = {}

@@ -12,9 +12,9 @@ from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
+from analyzer import limits
 from analyzer.errors import Fault, InputError
 from analyzer.evidence import Evidence, Grade
-from analyzer import limits
 from analyzer.output.workbook.archive_check import check_archive
 from analyzer.output.workbook.layout import HEAD_ROW, SIGN_OFF
 from analyzer.output.workbook.typed import Answered, Cells, Typed
@@ -39,50 +39,54 @@ def read_typed(path: Path) -> Typed:
     Raises:
         InputError: If the file is none, is damaged or oversized, or a cell cannot be read; all cells at once.
     """
+    sheets = _sheets(path)
+    needed = [name for name in _NEEDED_HEADS if name not in sheets]
+    if needed:
+        what = f"is no workbook of this program: it has no sheet '{needed[0]}'"
+        raise InputError(Fault(what, str(path), remedy="Give a workbook that 'heatledger audit --workbook' wrote."))
+    faults: list[Fault] = []
+    typed = _currents(path, _rows(path, "Currents", sheets, faults), faults)
+    answers = _answers(_rows(path, "Findings", sheets, faults))
+    rows = _rows(path, "Settings", sheets, faults)
+    settings, board_class = _settings(path, rows, faults), _board_class(path, rows, faults)
+    thetas = _thetas(path, _rows(path, "Regulators", sheets, faults), faults) if "Regulators" in sheets else {}
+    if faults:
+        raise InputError(faults)
+    sign_off = _sign_off(sheets["Summary"])
+    return replace(typed, answers=answers, sign_off=sign_off, settings=settings, thetas=thetas, board_class=board_class)
+
+
+Line = tuple[Any, ...]
+Row = tuple[int, Mapping[str, Any]]
+
+
+def _sheets(path: Path) -> dict[str, list[Line]]:
+    """The cells of the sheets that are read, by name of the sheet."""
     check_archive(path)
     import openpyxl
 
     try:
         book = openpyxl.load_workbook(path, read_only=True, data_only=True)
-    except Exception as error:  # openpyxl raises many kinds for a damaged file
+        wanted = [sheet for sheet in book.worksheets if sheet.title in {*_NEEDED_HEADS, "Regulators"}]
+        return {sheet.title: list(sheet.iter_rows(max_row=limits.TABLE_ROWS, values_only=True)) for sheet in wanted}
+    except Exception as error:  # openpyxl raises many kinds for a damaged file, some of them as it reads the rows
         raise InputError(Fault("is no readable workbook", str(path), remedy="Save it again as .xlsx.")) from error
-    try:
-        needed = [name for name in _NEEDED_HEADS if name not in book.sheetnames]
-        if needed:
-            what = f"is no workbook of this program: it has no sheet '{needed[0]}'"
-            raise InputError(Fault(what, str(path), remedy="Give a workbook that 'heatledger audit --workbook' wrote."))
-        faults: list[Fault] = []
-        typed = _currents(path, _rows(path, book["Currents"], faults), faults)
-        answers = _answers(_rows(path, book["Findings"], faults))
-        sign_off = _sign_off(book["Summary"])
-        rows = _rows(path, book["Settings"], faults)
-        settings, board_class = _settings(path, rows, faults), _board_class(path, rows, faults)
-        with_theta = "Regulators" in book.sheetnames
-        thetas = _thetas(path, _rows(path, book["Regulators"], faults), faults) if with_theta else {}
-    finally:
-        book.close()
-    if faults:
-        raise InputError(faults)
-    return replace(typed, answers=answers, sign_off=sign_off, settings=settings, thetas=thetas, board_class=board_class)
 
 
-Row = tuple[int, Mapping[str, Any]]
-
-
-def _rows(path: Path, sheet: Any, faults: list[Fault]) -> list[Row]:
+def _rows(path: Path, sheet: str, sheets: Mapping[str, list[Line]], faults: list[Fault]) -> list[Row]:
     """(row number as people count, head → value) of every row below the heads."""
     heads: list[str] = []
     found: list[Row] = []
-    for number, cells in enumerate(sheet.iter_rows(max_row=limits.TABLE_ROWS, values_only=True)):
+    for number, cells in enumerate(sheets[sheet]):
         if number == HEAD_ROW:
             heads = ["" if cell is None else str(cell) for cell in cells]
         elif number > HEAD_ROW:
             found.append((number + 1, dict(zip(heads, cells, strict=False))))
-    lost = [head for head in _NEEDED_HEADS.get(sheet.title, ()) if head not in heads]
+    lost = [head for head in _NEEDED_HEADS.get(sheet, ()) if head not in heads]
     if lost:
         # without its head a column of typed cells would be passed over in silence
         what = f"row {HEAD_ROW + 1} has no column '{lost[0]}'"
-        faults.append(Fault(what, str(path), str(sheet.title), "Put the heads back as they were written."))
+        faults.append(Fault(what, str(path), sheet, "Put the heads back as they were written."))
         return []
     return found
 
@@ -150,10 +154,10 @@ def _answers(rows: list[Row]) -> dict[Answered, str]:
     }
 
 
-def _sign_off(sheet: Any) -> dict[str, str]:
+def _sign_off(lines: list[Line]) -> dict[str, str]:
     found = {}
-    for cells in sheet.iter_rows(max_row=200, max_col=2, values_only=True):
-        if len(cells) == 2 and cells[0] in SIGN_OFF and (text := _text(cells[1])):
+    for cells in lines[:200]:
+        if len(cells) > 1 and cells[0] in SIGN_OFF and (text := _text(cells[1])):
             found[str(cells[0])] = text
     return found
 
