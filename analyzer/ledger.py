@@ -153,7 +153,7 @@ class Entry:
         evidence: Every number used.
         steps: The trail.
         remedies: What would help.
-        sensitivity: (name of the input, kelvin that the junction moves over its own span), largest first.
+        sensitivity: (name of the input, kelvin by which the junction falls with it at its nominal), largest first.
         chance: (chance of exceeding the limit, 5 % and 95 % junction) of the Monte-Carlo run, if asked for.
         live: What the workbook needs for live formulas: name → number at the worst corner.
     """

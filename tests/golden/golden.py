@@ -17,6 +17,7 @@ ROOT = HERE.parent.parent
 SHARED = Path(os.environ.get("HEATLEDGER_SHARED", ROOT.parent / "shared"))
 WIDTH = "100"
 FIXTURES = ("seedling_bench", "lane_lamp", "tide_logger")
+PARTS = {"seedling_bench": ("U1", "U2", "U5"), "lane_lamp": ("U1", "U101", "U201"), "tide_logger": ("U1", "U2", "U3")}
 
 
 def fixture_files() -> dict[str, list[str]]:
@@ -26,6 +27,9 @@ def fixture_files() -> dict[str, list[str]]:
         wanted[f"{board}.txt"] = ["audit", str(ROOT / "fixture_boards" / board)]
         wanted[f"{board}.json"] = [*wanted[f"{board}.txt"], "--json", "-"]
         wanted[f"{board}.rails.txt"] = ["rails", str(ROOT / "fixture_boards" / board)]
+        wanted[f"{board}.gaps.txt"] = ["gaps", str(ROOT / "fixture_boards" / board)]
+        for part in PARTS[board]:
+            wanted[f"{board}.trail_{part}.txt"] = ["trail", part, str(ROOT / "fixture_boards" / board)]
     return wanted
 
 

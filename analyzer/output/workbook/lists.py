@@ -7,6 +7,7 @@ from collections.abc import Mapping, Sequence
 
 from analyzer.findings.base import Finding
 from analyzer.ledger import Ledger
+from analyzer.output.trail_text import sensitivities
 from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, plain
 from analyzer.output.workbook.typed import Answered
 
@@ -49,8 +50,8 @@ def write_remedies(book: Book, ledger: Ledger) -> None:
         for remedy in entry.remedies:
             sheet.row(row, (entry.ref, entry.verdict.value, remedy.kind, remedy.text))
             row += 1
-        for name, kelvin in entry.sensitivity[:3]:
-            text = f"{name} alone moves the junction by {kelvin:.1f} K over its span"
+        for name, kelvin in sensitivities(entry)[:3]:
+            text = f"{name} at its nominal instead of its worst lowers the junction by {kelvin:.1f} K"
             sheet.row(row, (entry.ref, entry.verdict.value, "sensitivity", text))
             row += 1
         if entry.chance is not None:
