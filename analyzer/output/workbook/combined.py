@@ -12,25 +12,48 @@ from typing import Any
 
 from analyzer.archive.work import Outcome
 from analyzer.output.atomic import write_bytes
+from analyzer.output.workbook.layout import PAPER_A4, Book, Column, Sheet, plain
 
-BOARDS = ("Board", "Worst margin [K]", "Is", "Part", "Over", "Open", "Tight", "Clear", "Gaps", "Status", "Fault")
-ENTRIES = (
-    "Board",
-    "Part",
-    "Sheet",
-    "Part number",
-    "Kind",
-    "Rail",
-    "Dissipation worst [W]",
-    "θ [K/W]",
-    "Ambient [°C]",
-    "Junction worst [°C]",
-    "Limit [°C]",
-    "Margin [K]",
-    "Verdict",
-    "Grade",
+BOARDS = (
+    Column("Board", 40),
+    Column("Worst margin [K]", 10, "kelvin"),
+    Column("Bound", 9),
+    Column("Part", 9),
+    Column("Over", 7, "count"),
+    Column("Open", 7, "count"),
+    Column("Tight", 7, "count"),
+    Column("Clear", 7, "count"),
+    Column("Gaps", 7, "count"),
+    Column("Exit status", 8, "count"),
+    Column("Fault", 60, "wrap"),
 )
-GAPS = ("Board", "Part", "Value", "Sheet", "Rail")
+ENTRIES = (
+    Column("Board", 34),
+    Column("Part", 8),
+    Column("Sheet", 12, "wrap"),
+    Column("Part number", 18, "wrap"),
+    Column("Kind", 12, "wrap"),
+    Column("Rail", 16, "wrap"),
+    Column("Heat worst [W]", 9, "watts"),
+    Column("θ [K/W]", 8, "kelvin"),
+    Column("Air [°C]", 8, "kelvin"),
+    Column("Junction worst [°C]", 9, "kelvin"),
+    Column("Limit [°C]", 8, "kelvin"),
+    Column("Margin [K]", 8, "kelvin"),
+    Column("Bound", 9),
+    Column("Verdict", 10),
+    Column("Grade", 10),
+)
+GAPS = (
+    Column("Board", 40),
+    Column("Part", 9),
+    Column("Value", 28, "wrap"),
+    Column("Sheet", 20, "wrap"),
+    Column("Rail", 24, "wrap"),
+)
+CHANGES = (Column("Change", 120, "wrap"),)
+AT_MOST = "at most"
+"""Beside a margin that something missing can only make smaller."""
 
 
 def write_combined(
@@ -57,28 +80,16 @@ def write_combined(
     )
     # a fixed date keeps the same input at the same bytes
     book.set_properties({"title": "heatledger archive", "created": datetime.datetime(1980, 1, 1)})
-    head = book.add_format({"bold": True, "text_wrap": True, "bottom": 1, "valign": "top"})
-    sheets = {}
-    for name, columns in (("Boards", BOARDS), ("Entries", ENTRIES), ("Gaps", GAPS), ("Changes", ("Change",))):
-        sheet = book.add_worksheet(name)
-        sheet.set_landscape()
-        sheet.set_paper(9)
-        sheet.fit_to_pages(1, 0)
-        sheet.repeat_rows(0)
-        sheet.freeze_panes(1, 1)
-        sheet.set_footer("&L&F&RPage &P of &N")
-        sheet.set_column(0, 0, 34)
-        sheet.set_column(1, len(columns), 14)
-        for column, title in enumerate(columns):
-            sheet.write_string(0, column, title, head)
-        sheets[name] = _Down(sheet)
+    forms = Book(book, "")
+    tables = (("Boards", BOARDS), ("Entries", ENTRIES), ("Gaps", GAPS), ("Changes", CHANGES))
+    sheets = {name: _Down(forms, name, columns) for name, columns in tables}
     for outcome in ranked:
         counts = dict(outcome.counts)
         words = [counts.get(word, 0) for word in ("over", "open", "tight", "clear")]
         sheets["Boards"].row(
             outcome.label,
             outcome.worst_margin,
-            "at most" if outcome.worst_is_bound else "",
+            AT_MOST if outcome.worst_is_bound else "",
             outcome.worst_part,
             *words,
             outcome.gaps,
@@ -89,11 +100,12 @@ def write_combined(
         for entry in document["entries"]:
             sheets["Entries"].row(outcome.label, *_entry(entry))
         for gap in document["gaps"]:
-            sheets["Gaps"].row(outcome.label, gap["ref"], gap["value"], gap["sheet"], gap["rail"])
+            if not gap["follows"]:
+                sheets["Gaps"].row(outcome.label, gap["ref"], gap["value"], gap["sheet"], gap["rail"])
     for change in changes:
         sheets["Changes"].row(change)
-    for name, columns in (("Boards", BOARDS), ("Entries", ENTRIES), ("Gaps", GAPS)):
-        sheets[name].sheet.autofilter(0, 0, max(sheets[name].last, 1), len(columns) - 1)
+    for sheet in sheets.values():
+        sheet.close()
     book.close()
     write_bytes(file, buffer.getvalue())
 
@@ -105,6 +117,7 @@ def _entry(entry: dict[str, Any]) -> Iterator[object]:
     yield from (entry["theta_k_per_w"], entry["ambient_celsius"])
     yield entry["junction_celsius"] and entry["junction_celsius"][1]
     yield from (entry["limit_celsius"], entry["margin_kelvin"])
+    yield AT_MOST if entry["missing"] and entry["margin_kelvin"] is not None else ""
     yield entry["verdict"] if entry["fitted"] else "not fitted"
     yield entry["grade"]
 
@@ -112,19 +125,35 @@ def _entry(entry: dict[str, Any]) -> Iterator[object]:
 class _Down:
     """A worksheet filled row by row; text is always written as text, never as a formula."""
 
-    def __init__(self, sheet: Any) -> None:
-        self.sheet = sheet
+    def __init__(self, forms: Book, name: str, columns: Sequence[Column]) -> None:
+        self.forms = forms
+        self.columns = columns
         self.last = 0
+        self.sheet = forms.book.add_worksheet(name)
+        self.sheet.set_landscape()
+        self.sheet.set_paper(PAPER_A4)
+        self.sheet.fit_to_pages(1, 0)
+        self.sheet.repeat_rows(0)
+        self.sheet.freeze_panes(1, 1)
+        self.sheet.set_footer("&L&F&C&A&RPage &P of &N")
+        for number, column in enumerate(columns):
+            self.sheet.set_column(number, number, column.width)
+            self.sheet.write_string(0, number, column.head, forms.form("head"))
 
     def row(self, *cells: object) -> None:
+        """The next row."""
         self.last += 1
-        for column, cell in enumerate(cells):
+        for number, (column, cell) in enumerate(zip(self.columns, cells, strict=True)):
+            form = self.forms.form(column.form)
             if isinstance(cell, (int, float)):
-                self.sheet.write_number(self.last, column, cell)
+                self.sheet.write_number(self.last, number, cell, form)
             elif cell:
-                self.sheet.write_string(self.last, column, _plain(str(cell)))
+                self.sheet.write_string(self.last, number, plain(str(cell)), form)
 
-
-def _plain(text: str) -> str:
-    # XML has no place for control characters; a cell ends at 32,767 characters
-    return "".join(character if character >= " " else "\N{SYMBOL FOR NULL}" for character in text)[:32_767]
+    def close(self) -> None:
+        """Filters over all rows, and colours that follow the verdict's word."""
+        last = max(self.last, 1)
+        self.sheet.autofilter(0, 0, last, len(self.columns) - 1)
+        for number, column in enumerate(self.columns):
+            if column.head == "Verdict":
+                Sheet(self.forms, self.sheet, self.columns).verdict_colours(1, last, number)
