@@ -115,7 +115,10 @@ def _on_board(wiring: Wiring, role: str) -> _Found:
 
 def _by_rule(wiring: Wiring, role: str) -> _Found:
     figure = wiring.channel.figures.get(_FIGURES[role])
-    return (None, ()) if figure is None or figure.grade is Grade.STATED else _given(wiring, role)
+    if figure is None or figure.grade is Grade.STATED:
+        return None, ()
+    found, used = _given(wiring, role)
+    return (f"the {role} measured with", found[1]) if found else None, used
 
 
 def _given(wiring: Wiring, role: str) -> _Found:
