@@ -11,6 +11,7 @@ from analyzer.circuit import Circuit
 from analyzer.findings.base import Verdict
 from analyzer.heat import close_entries
 from analyzer.heat.limits import Limits, limits_of
+from analyzer.ledger import Entry
 from analyzer.load import Loads, Pulse
 from analyzer.quantity import Span
 from analyzer.rail import Feed, Outside, Rail, Rails
@@ -251,3 +252,55 @@ def test_the_greatest_ambient_is_looked_for_where_the_figures_hold() -> None:
     bench = Bench(topology=Topology.BUCK, vin=EXACT(12.0), figures=figures, draws=((EXACT(0.0), None),))
     (found,) = [one for one in bench.entry().remedies if one.kind == "greatest ambient"]
     assert found.numbers["celsius"] == pytest.approx(125.0, abs=0.1)
+
+
+def wired(bench: Bench, feeds: tuple[Feed, ...] = (Feed("U1", "regulator"),), **changes: object) -> Entry:
+    """The entry of a bench whose wiring or feeds are changed."""
+    part, wiring, load = bench.parts()
+    assert load is not None
+    rails = Rails((Rail("OUT_U1", (), feeds=feeds),), (replace(wiring, **changes),))  # type: ignore[arg-type]
+    settings = Settings(board=bench.board)
+    (entry,) = close_entries(
+        Circuit("test", (), ()), (part,), rails, Loads({"OUT_U1": load}), Rulebook((), (), (), ()), settings
+    )
+    return entry
+
+
+def test_an_input_that_may_change_its_sign_may_be_nothing() -> None:
+    entry = Bench(vin=Span(-2.0, 3.0, 5.0), vout=EXACT(1.5)).entry()
+    assert "dropout-lost" in names(entry)
+    assert entry.verdict is Verdict.OVER
+
+
+def test_a_dropout_that_is_tabled_counts_at_the_greatest_load() -> None:
+    # 0.3 V at 0.1 A rises to 1.3 V at 1 A: 0.8 V at 0.55 A
+    table = Curve(((0.1, EXACT(0.3)), (1.0, EXACT(1.3))), "load", number(Span(0.3, 0.5, 1.3), "V"))
+    bench = Bench(vin=EXACT(4.1), draws=((EXACT(0.55), None),), curves={"dropout": table}, theta=1.0)
+    assert bench.entry().verdict is Verdict.CLEAR
+    lost = bench.but(vin=EXACT(4.09)).entry()
+    (found,) = [one for one in lost.findings if one.name == "dropout-lost"]
+    assert found.message == "input 4.09 V less output 3.30 V leaves 790 mV, the part needs 800 mV"
+
+
+def test_a_control_supply_below_the_output_is_over() -> None:
+    bench = Bench(
+        topology=Topology.LINEAR_TWO_SUPPLY, vout=EXACT(1.2), figures={"control_ratio": 60.0, "junction_max": 125.0}
+    )
+    entry = wired(bench, vcontrol=number(Span(1.0, 5.0, 5.2), "V"))
+    (found,) = [one for one in entry.findings if one.name == "dropout-lost"]
+    assert found.message == "control supply 1.00 V is below the output 1.20 V"
+    assert entry.verdict is Verdict.OVER
+    assert wired(bench, vcontrol=number(Span(1.3, 5.0, 5.2), "V")).verdict is Verdict.CLEAR
+    # a bias pin of another kind of part is no control supply
+    assert wired(Bench(), vcontrol=number(1.0, "V")).verdict is Verdict.CLEAR
+
+
+def test_a_part_carries_its_own_share_and_no_other_s() -> None:
+    feeds = (
+        Feed("U2", "regulator", share=0.25),
+        Feed("U1", "regulator", "B", share=0.125),
+        Feed("U1", "regulator", share=0.75),
+    )
+    entry = wired(Bench(), feeds)
+    assert entry.worst is not None
+    assert entry.worst.channels[0].iout == pytest.approx(0.075)
