@@ -275,7 +275,7 @@ def test_an_input_that_may_change_its_sign_may_be_nothing() -> None:
 def test_a_dropout_that_is_tabled_counts_at_the_greatest_load() -> None:
     # 0.3 V at 0.1 A rises to 1.3 V at 1 A: 0.8 V at 0.55 A
     table = Curve(((0.1, EXACT(0.3)), (1.0, EXACT(1.3))), "load", number(Span(0.3, 0.5, 1.3), "V"))
-    bench = Bench(vin=EXACT(4.1), draws=((EXACT(0.55), None),), curves={"dropout": table}, theta=1.0)
+    bench = Bench(vin=EXACT(4.11), draws=((EXACT(0.55), None),), curves={"dropout": table}, theta=1.0)
     assert bench.entry().verdict is Verdict.CLEAR
     lost = bench.but(vin=EXACT(4.09)).entry()
     (found,) = [one for one in lost.findings if one.name == "dropout-lost"]
