@@ -117,10 +117,7 @@ def _carried(one: ChannelCase) -> tuple[str, float]:
     """What a current rating is about, and how much that is at most [A]: a shunt carries what the load leaves."""
     if one.wiring.channel.topology is not Topology.SHUNT:
         return "load", one.load.high
-    try:
-        fed = one.model.at(Point(one.vin.high, one.vout.low, one.load.low), End.SEVERE).iin
-    except ValueError:
-        return "load", one.load.high
+    fed = one.model.at(Point(one.vin.high, one.vout.low, one.load.low), End.SEVERE).iin
     return "current of the element", max(0.0, fed - one.load.low)
 
 

@@ -304,3 +304,37 @@ def test_a_part_carries_its_own_share_and_no_other_s() -> None:
     entry = wired(Bench(), feeds)
     assert entry.worst is not None
     assert entry.worst.channels[0].iout == pytest.approx(0.075)
+
+
+def test_a_neighbour_s_pulses_warm_with_their_peak() -> None:
+    # U9: 1.7 V · 1 A while it pulses, 5 K/W from it to U1: 8.5 K more around it
+    warm = Bench(ref="U9", draws=((EXACT(0.1), Pulse(EXACT(1.0), 1.0, 10.0)),), theta=1.0)
+    pair = Settings(coupling=(Coupling("U1", "U9", number(5.0, "K/W")),))
+    cool, _ = close([Bench(), warm], pair)
+    assert cool.worst is not None
+    assert cool.worst.ambient == pytest.approx(48.5)
+
+
+def test_power_and_difference_may_reach_their_ratings_but_not_exceed_them() -> None:
+    bench = Bench(vin=EXACT(5.0), vout=EXACT(3.0), draws=((EXACT(0.5), None),))  # 1 W exactly
+    assert "power-over-rating" not in names(bench.with_figures(power_max=1.0).entry())
+    assert "power-over-rating" in names(bench.with_figures(power_max=0.999).entry())
+    assert "input-over-rating" not in names(bench.with_figures(differential_max=2.0).entry())
+    (found,) = [
+        one for one in bench.with_figures(differential_max=1.9).entry().findings if one.name == "input-over-rating"
+    ]
+    assert found.message == "input-output difference up to 2.00 V, rated 1.90 V"
+
+
+def test_an_open_budget_has_no_chance_of_exceeding_anything() -> None:
+    assert Bench(seed=1).entry().chance is not None
+    assert Bench(seed=1, gaps=1).entry().chance is None
+
+
+def test_the_input_is_told_by_net_and_rail() -> None:
+    entry = wired(Bench(), input_net="IN_A", input_rail="+5V")
+    assert entry.input is not None
+    assert (entry.input.net, entry.input.rail) == ("IN_A", "+5V")
+    bare = wired(Bench(), input_net="IN_A", input_rail=None)
+    assert bare.input is not None
+    assert bare.input.rail == "IN_A"
