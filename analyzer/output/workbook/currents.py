@@ -6,10 +6,11 @@ Lines of one rail stand together, so that each rail sums its own block and no fo
 from __future__ import annotations
 
 from collections.abc import Mapping
+from functools import cache
 
 from analyzer.ledger import Entry, Ledger
-from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, Sheet, letter
-from analyzer.output.workbook.plan import CLOSED_KINDS, Line, Plan
+from analyzer.output.workbook.layout import FIRST_ROW, TYPE_HEADS, Book, Column, Sheet, letter
+from analyzer.output.workbook.plan import Line, Plan
 from analyzer.output.workbook.regulators import PLACES as REGULATOR_PLACES
 from analyzer.output.workbook.typed import NOTHING, Cells, Typed
 
@@ -36,9 +37,7 @@ CURRENT_COLUMNS = (
     Column("Low [A]", 9, "amps"),
     Column("Nominal [A]", 9, "amps"),
     Column("High [A]", 9, "amps"),
-    Column("Type low [A]", 10, "plain"),
-    Column("Type nominal [A]", 10, "plain"),
-    Column("Type high [A]", 10, "plain"),
+    *(Column(head, 10, "plain") for head in TYPE_HEADS),
     Column("Your note", 24, "wrap"),
     Column("Counts as [A]", 10, "amps"),
     Column("Missing", 8, "count"),
@@ -51,10 +50,12 @@ CURRENT_COLUMNS = (
     Column("Low as audited", 8, "plain"),
     Column("Nominal as audited", 8, "plain"),
     Column("High as audited", 8, "plain"),
-    Column("Unread", 8, "plain"),
+    Column("State", 8, "plain"),
+    Column("Takes typing", 8, "plain"),
     Column("Identity", 12),
 )
 NO_CELLS: Cells = (None, None, None)
+AUDITED_HEADS = ("Low as audited", "Nominal as audited", "High as audited")
 CURRENT_PLACES: Mapping[str, int] = {column.head: number for number, column in enumerate(CURRENT_COLUMNS)}
 
 
@@ -150,9 +151,11 @@ def _typed(sheet: Sheet, row: int, line: Line, typed: Typed) -> None:
     cells = typed.cells.get(where, NO_CELLS)
     audited = cells if typed.applied else NO_CELLS
     form = "input" if line.is_open_to_typing else None
+    # what was typed for a part that is gone counts nowhere here, but a re-run may find its place again
+    sheet.put(row, CURRENT_PLACES["Takes typing"], 2 if line.kind == "gone" else int(line.is_open_to_typing))
     for offset in range(3):
-        sheet.put(row, CURRENT_PLACES["Type low [A]"] + offset, cells[offset], form)
-        sheet.put(row, CURRENT_PLACES["Low as audited"] + offset, audited[offset])
+        sheet.put(row, CURRENT_PLACES[TYPE_HEADS[0]] + offset, cells[offset], form)
+        sheet.put(row, CURRENT_PLACES[AUDITED_HEADS[0]] + offset, audited[offset])
     sheet.put(row, CURRENT_PLACES["Your note"], typed.notes.get(where), "input")
 
 
@@ -171,29 +174,34 @@ def _line(sheet: Sheet, row: int, line: Line, plan: Plan) -> None:
             sheet.put(row, CURRENT_PLACES["i0 [A]"] + offset, coefficient)
     below_load = f"Rails!$F${plan.rail_rows[below] + 1}" if below else "0"
     results = (span.high if span else 0.0, 1 if line.gap else 0, 0)
-    for (head, formula), result in zip(_formulas(row, below_load).items(), results, strict=True):
-        sheet.formula(row, CURRENT_PLACES[head], formula, result)
+    for (head, formula), result in zip(_formulas(below_load).items(), results, strict=True):
+        sheet.formula(row, CURRENT_PLACES[head], formula.replace(ROW, str(row + 1)), result)
 
 
-def _formulas(row: int, below_load: str) -> dict[str, str]:
-    """Head → formula of the cells that follow what is typed.
+ROW = "§"
+"""What stands for the row in a column's formula."""
 
-    Numbers count at once. Text, which no formula reads, a negative number and an emptied cell that the audit used wait
-    for a re-run ("Unread"), and till then no verdict stands.
+
+@cache
+def _formulas(below_load: str) -> Mapping[str, str]:
+    """Head → formula of the cells that follow what is typed, with `ROW` for the row.
+
+    Numbers count at once (state 1). Text, which no formula reads, a negative number and an emptied cell that the audit
+    used wait for a re-run (state 2), and till then no verdict stands. State 0 is as audited. The formulas are kept
+    short, for they are most of what a large workbook takes to write.
     """
-    at = {head: letter(number) + str(row + 1) for head, number in CURRENT_PLACES.items()}
-    cells = f"{at['Type low [A]']}:{at['Type high [A]']}"
-    kind = at["Kind"]
-    closed = ",".join(f'{kind}="{word}"' for word in CLOSED_KINDS)
-    numbers = f"COUNT({cells})>0,COUNTA({cells})=COUNT({cells})"
-    pairs = zip(("Low", "Nominal", "High"), ("low", "nominal", "high"), strict=True)
-    same = ",".join(f"EXACT({at[f'Type {typed} [A]']},{at[f'{end} as audited']})" for end, typed in pairs)
-    i1 = at["i1 [A/A]"]
+    at = {head: letter(number)[1:] + ROW for head, number in CURRENT_PLACES.items()}
+    low, nominal, high = (at[head] for head in TYPE_HEADS)
+    cells, state, takes, i1 = f"{low}:{high}", at["State"], at["Takes typing"], at["i1 [A/A]"]
+    pairs = zip((low, nominal, high), AUDITED_HEADS, strict=True)
+    same = ",".join(f"EXACT({typed},{at[head]})" for typed, head in pairs)
+    numbers = f"{takes}=1,COUNT({cells})>0,COUNTA({cells})=COUNT({cells}),MIN({cells})>=0"
     follows = f"{at['i0 [A]']}+{i1}*{below_load}+{at['i2 [A/A²]']}*{below_load}^2"
-    counts = f"=IF(AND(NOT(OR({closed})),{numbers}),MAX(0,{cells}),IF(ISNUMBER({i1}),{follows},N({at['High [A]']})))"
-    missing = f'=IF({kind}="gap below",1,IF(OR({kind}<>"gap",AND({numbers})),0,1))'
-    unread = f'=IF(OR({closed},AND({same})),0,IF(AND({kind}<>"gone",{numbers},MIN({cells})>=0),0,1))'
-    return {"Counts as [A]": counts, "Missing": missing, "Unread": unread}
+    return {
+        "Counts as [A]": f"=IF({state}=1,MAX({cells}),IF(ISNUMBER({i1}),{follows},N({at['High [A]']})))",
+        "Missing": f'=IF(AND(LEFT({at["Kind"]},3)="gap",{state}<>1),1,0)',
+        "State": f"=IF(OR({takes}=0,AND({same})),0,IF(AND({numbers}),1,2))",
+    }
 
 
 def _words(line: Line) -> str:

@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from functools import cache
 from typing import Any
 
 PAPER_A4 = 9
@@ -14,6 +16,9 @@ HEAD_ROW = 3
 """Row (from 0) of the column heads; title and remarks stand above."""
 
 FIRST_ROW = HEAD_ROW + 1
+
+TYPE_HEADS = ("Type low [A]", "Type nominal [A]", "Type high [A]")
+"""Heads of the cells on the Currents sheet that currents are typed into."""
 
 SIGN_OFF = ("Reviewed by", "Date", "Decision", "Remarks")
 """Labels of the review block on the Summary sheet."""
@@ -147,7 +152,7 @@ class Sheet:
 
 def plain(text: str) -> str:
     """Text that a cell can hold: control characters made visible, cut to the longest a cell may be."""
-    clean = "".join(_visible(c) for c in text)
+    clean = "".join(_visible(c) for c in text) if _NO_CELL_TEXT.search(text) else text
     if len(clean) * 2 <= LONGEST_CELL:
         return clean
     units = clean.encode("utf-16-le")
@@ -157,18 +162,18 @@ def plain(text: str) -> str:
     return units[: 2 * (LONGEST_CELL - 1)].decode("utf-16-le", errors="ignore") + "…"
 
 
+_NO_CELL_TEXT = re.compile("[\x00-\x09\x0b-\x1f\x7f-\x9f\ud800-\udfff\ufffe\uffff]")
+"""Characters that no cell can hold, or that programs obey instead of showing."""
+
+
 def _visible(c: str) -> str:
-    code = ord(c)
-    if (
-        c == "\n"
-        or 0x20 <= code < 0x7F
-        or (code > 0x9F and not 0xD800 <= code <= 0xDFFF and code not in (0xFFFE, 0xFFFF))
-    ):
+    if not _NO_CELL_TEXT.match(c):
         return c
     # the Unicode pictures of control characters; what has none becomes the replacement character
-    return chr(0x2400 + code) if code < 0x20 else "\ufffd"
+    return chr(0x2400 + ord(c)) if c < " " else "\ufffd"
 
 
+@cache
 def letter(column: int) -> str:
     """The letters of a column as an absolute reference, $AB."""
     name, number = "", column + 1

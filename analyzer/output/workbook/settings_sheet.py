@@ -100,8 +100,8 @@ def _write_unread(book: Book, sheet: Sheet, row: int, lines: int) -> None:
         for at in (first + INPUT_NAMES.index("Ambient_nominal"), first + INPUT_NAMES.index("Rise_nominal"))
     )
     numbers = f"=ROWS($B${first}:$B${last})-COUNT($B${first}:$B${last})+{crossed}"
-    place = letter(CURRENT_PLACES["Unread"])
-    currents = f"=SUM(Currents!{place}${FIRST_ROW + 1}:{place}${FIRST_ROW + max(lines, 1)})"
+    place = letter(CURRENT_PLACES["State"])
+    currents = f"=COUNTIF(Currents!{place}${FIRST_ROW + 1}:{place}${FIRST_ROW + max(lines, 1)},2)"
     for offset, (words, formula, name) in enumerate(
         (
             ("Settings emptied, or no numbers that fit", numbers, "Unread_settings"),

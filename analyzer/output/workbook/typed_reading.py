@@ -16,15 +16,14 @@ from analyzer import limits
 from analyzer.errors import Fault, InputError
 from analyzer.evidence import Evidence, Grade
 from analyzer.output.workbook.archive_check import check_archive
-from analyzer.output.workbook.layout import HEAD_ROW, SIGN_OFF
+from analyzer.output.workbook.layout import HEAD_ROW, SIGN_OFF, TYPE_HEADS
 from analyzer.output.workbook.typed import Answered, Cells, Typed
 from analyzer.output.workbook.typed_load import load_of
 from analyzer.rule import BoardClass
 from analyzer.settings import StatedDraw
 
-_TYPE_HEADS = ("Type low [A]", "Type nominal [A]", "Type high [A]")
 _NEEDED_HEADS: Mapping[str, tuple[str, ...]] = {
-    "Currents": ("Rail", "Part", "Identity", *_TYPE_HEADS, "Your note"),
+    "Currents": ("Rail", "Part", "Identity", *TYPE_HEADS, "Your note"),
     "Findings": ("Finding", "About", "Identity", "Your answer"),
     "Settings": ("Name in formulas", "Value", "As audited"),
     "Summary": (),
@@ -109,7 +108,7 @@ def _currents(path: Path, rows: list[Row], faults: list[Fault]) -> Typed:
     for number, row in rows:
         rail, ref, key = _text(row.get("Rail")), _text(row.get("Part")), _text(row.get("Identity"))
         where, place = (key, rail), f"Currents!H{number}:J{number}"
-        values = tuple(_plain(row.get(head)) for head in _TYPE_HEADS)
+        values = tuple(_plain(row.get(head)) for head in TYPE_HEADS)
         note = _text(row.get("Your note"))
         if note:
             # one part may have two rows on one rail: what it takes, and what is missing below it
