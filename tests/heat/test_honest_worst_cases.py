@@ -338,3 +338,11 @@ def test_the_input_is_told_by_net_and_rail() -> None:
     bare = wired(Bench(), input_net="IN_A", input_rail=None)
     assert bare.input is not None
     assert bare.input.rail == "IN_A"
+
+
+def test_a_buck_with_a_dropout_of_its_own_needs_that() -> None:
+    figures = {"efficiency": 0.9, "dropout": 0.5, "junction_max": 125.0}
+    bench = Bench(topology=Topology.BUCK, vin=EXACT(5.4), vout=EXACT(5.0), figures=figures)
+    (found,) = [one for one in bench.entry().findings if one.name == "dropout-lost"]
+    assert found.message == "input 5.40 V less output 5.00 V leaves 400 mV, the part needs 500 mV"
+    assert "dropout-lost" not in names(bench.but(vin=EXACT(5.6)).entry())
