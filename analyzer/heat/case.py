@@ -67,11 +67,6 @@ class Case:
     limit: float | None = None
     tight_above: float | None = None
 
-    def with_load(self, amps: float) -> Case:
-        """The case with exactly this load on its first channel."""
-        first, *rest = self.channels
-        return replace(self, channels=(replace(first, load=Span.exact(amps)), *rest))
-
     def with_load_up_to(self, amps: float) -> Case:
         """The case with any load up to this on its first channel; a load the part itself sets stays."""
         first, *rest = self.channels
@@ -102,11 +97,6 @@ class Worked:
     theta: float | None
     junction: float | None
     runs_away: bool = False
-
-    @property
-    def regulates(self) -> bool:
-        """Whether every channel keeps its output at this corner."""
-        return all(one.loss.regulating for one in self.chosen)
 
 
 def worst(case: Case) -> Worked:

@@ -37,22 +37,6 @@ def load_for(case: Case, junction: float, at: Callable[[float], float] | None = 
     return _greatest(lambda amps: heat(amps) - junction, max(case.channels[0].load.high, 0.01))
 
 
-def closed_form(case: Case, junction: float) -> float | None:
-    """The same for a linear part in closed form: ((Tj − Ta)/θ − Vin·Ignd) / (Vin − Vout); None for other parts.
-
-    Holds where ground current and dropout do not depend on the load.
-    """
-    (one, *others) = case.channels
-    simple = not one.model.heats and not one.model.loads and not others and one.wiring.channel.topology in LINEARS
-    if not simple or case.path is None or not case.path.is_linear or case.path.measured is not None:
-        return None
-    vin, vout = one.vin.high, one.vout.low
-    idle = worst(case.with_load(0.0))
-    if idle.theta is None or vin <= vout:
-        return None
-    return max(0.0, ((junction - idle.ambient) / idle.theta - idle.watts) / (vin - vout))
-
-
 def dropout_load(one: ChannelCase) -> float | None:
     """Greatest load [A] that leaves a linear part its dropout at the lowest input; None where the load is no matter.
 
