@@ -346,3 +346,40 @@ def test_a_buck_with_a_dropout_of_its_own_needs_that() -> None:
     (found,) = [one for one in bench.entry().findings if one.name == "dropout-lost"]
     assert found.message == "input 5.40 V less output 5.00 V leaves 400 mV, the part needs 500 mV"
     assert "dropout-lost" not in names(bench.but(vin=EXACT(5.6)).entry())
+
+
+def greatest_input(**figures: float) -> float:
+    found = Bench(theta=10.0).with_figures(**figures).entry().remedies
+    return next(one.numbers["volts"] for one in found if one.kind == "greatest input")
+
+
+def test_the_greatest_input_ends_at_each_rating() -> None:
+    assert greatest_input(input_max=6.0) == pytest.approx(6.0)
+    # the house policy takes nine tenths of an absolute maximum; a difference counts from the lowest output
+    assert greatest_input(input_absolute_max=10.0) == pytest.approx(9.0)
+    assert greatest_input(differential_max=4.0) == pytest.approx(7.3)
+    assert greatest_input(input_max=8.0, input_absolute_max=8.5) == pytest.approx(7.65)
+
+
+def test_an_output_s_load_is_told_where_it_is_known_and_on() -> None:
+    assert Bench().entry().outputs[0].load == EXACT(0.1)
+    assert Bench(gaps=1).entry().outputs[0].load is None
+    assert Bench(has_load=False).entry().outputs[0].load is None
+    assert Bench(is_off=True).entry().outputs[0].load is None
+
+
+def test_a_shunt_whose_load_is_not_known_is_open_for_more_load_cools_it() -> None:
+    bench = Bench(
+        topology=Topology.SHUNT,
+        vin=EXACT(24.0),
+        vout=EXACT(12.0),
+        draws=((EXACT(0.0), None),),
+        figures={"junction_max": 125.0},
+        outside=(resistor(100.0),),
+        theta=60.0,
+    )
+    assert bench.entry().verdict is Verdict.OVER  # 126.4 °C
+    unknown = bench.but(gaps=1).entry()
+    assert unknown.verdict is Verdict.OPEN
+    assert not any(one.weight == "over" for one in unknown.findings)
+    assert "rating-not-checked" in names(unknown)
