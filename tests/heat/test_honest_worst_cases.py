@@ -10,9 +10,12 @@ from heat_kit import Bench, close, names, number
 from analyzer.circuit import Circuit
 from analyzer.findings.base import Verdict
 from analyzer.heat import close_entries
+from analyzer.heat.case import Case, ChannelCase
 from analyzer.heat.limits import Limits, limits_of
+from analyzer.heat.pulses import swing_of
 from analyzer.ledger import Entry
-from analyzer.load import Loads, Pulse
+from analyzer.load import Draw, Loads, Pulse, RailLoad
+from analyzer.losses import model_of
 from analyzer.quantity import Span
 from analyzer.rail import Feed, Outside, Rail, Rails
 from analyzer.rule import BoardClass, Curve, Rulebook, ThermalFigure, Topology
@@ -383,3 +386,20 @@ def test_a_shunt_whose_load_is_not_known_is_open_for_more_load_cools_it() -> Non
     assert unknown.verdict is Verdict.OPEN
     assert not any(one.weight == "over" for one in unknown.findings)
     assert "rating-not-checked" in names(unknown)
+
+
+def test_pulses_of_several_channels_take_the_longest_pulse_and_the_shortest_period() -> None:
+    _, wiring, _ = Bench().parts()
+
+    def channel(pulse: Pulse) -> ChannelCase:
+        draw = Draw("D1", "/D1", "OUT", number(0.1, "A"), "stated", pulse)
+        load = RailLoad("OUT", (draw,), (), EXACT(0.1))
+        return ChannelCase(wiring, model_of(wiring), EXACT(5.0), EXACT(3.3), EXACT(0.1), load)
+
+    slow, fast = Pulse(EXACT(1.0), 0.010, 1.0), Pulse(EXACT(1.0), 0.002, 0.1)
+    swing = swing_of(Case((channel(slow), channel(fast)), None, EXACT(40.0), (1.0, 1.0)))
+    assert swing is not None
+    assert (swing.on, swing.period) == (0.010, 0.1)
+    single = swing_of(Case((channel(replace(slow, period_seconds=None)),), None, EXACT(40.0), (1.0, 1.0)))
+    assert single is not None
+    assert (single.on, single.period) == (0.010, None)
