@@ -14,7 +14,8 @@ from dataclasses import replace
 from analyzer.losses import efficiency, terms
 from analyzer.losses.base import End, Figures, Loss, LossModel, Point, high, lacking, outside
 from analyzer.losses.buck import interior_voltages
-from analyzer.losses.elsewhere import OPPOSITE, Outsides, outside_notes, outsides, outsides_measured
+from analyzer.losses.by_efficiency import Around, model_by_efficiency
+from analyzer.losses.elsewhere import OPPOSITE, Outsides, outside_notes, outsides
 from analyzer.rail import Wiring
 from analyzer.wording import show
 
@@ -53,28 +54,14 @@ def build(wiring: Wiring) -> LossModel:
 
 
 def _from_efficiency(wiring: Wiring) -> LossModel:
-    if lacks := efficiency.lacks(wiring.channel):
-        return lacking(*lacks)
-    measured = outsides_measured(wiring, efficiency.figure_of(wiring.channel))
-    board = outsides(wiring)
-
-    def at(point: Point, end: End) -> Loss:
-        found = efficiency.at_point(wiring.channel, point, end)
+    def at(point: Point, end: End, found: float, around: Around) -> Loss:
         point, regulating = passed_on(point)
         iin = boost_input_current(point.vout * point.iout, found, point.vin)
-        parts = measured.shares(end, iin, point.iout), board.shares(OPPOSITE[end], iin, point.iout)
+        parts = around.shares(end, iin, point.iout)
         loss = efficiency.loss_from_efficiency(wiring.channel, point, end, found, point.vin, *parts)
         return loss if regulating else replace(loss, regulating=False)
 
-    return LossModel(
-        at,
-        tuple(dict.fromkeys((*efficiency.evidence(wiring.channel), *measured.used, *board.used))),
-        notes=(*efficiency.notes(wiring.channel), *outside_notes(wiring, board, measured)),
-        interior=interior_voltages,
-        loads=efficiency.load_knots(wiring.channel),
-        has_humps=bool(efficiency.load_knots(wiring.channel)),
-        heats=Figures(wiring.channel).has("efficiency_hot_loss"),
-    )
+    return model_by_efficiency(wiring, at, interior_voltages)
 
 
 def _from_terms(wiring: Wiring, figures: Figures) -> LossModel:

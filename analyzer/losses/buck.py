@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from analyzer.losses import efficiency, terms
 from analyzer.losses.base import REFERENCE_CELSIUS, End, Figures, Loss, LossModel, Point, high, lacking, outside
-from analyzer.losses.elsewhere import OPPOSITE, Outsides, outside_notes, outsides, outsides_measured
+from analyzer.losses.by_efficiency import Around, model_by_efficiency
+from analyzer.losses.elsewhere import OPPOSITE, Outsides, outside_notes, outsides
 from analyzer.rail import Wiring
 from analyzer.wording import show
 
@@ -60,32 +61,19 @@ def _diodes(wiring: Wiring, figures: Figures) -> bool:
 
 
 def _from_efficiency(wiring: Wiring) -> LossModel:
-    if lacks := efficiency.lacks(wiring.channel):
-        return lacking(*lacks)
     inverts = is_inverting(wiring)
-    measured = outsides_measured(wiring, efficiency.figure_of(wiring.channel))
-    board = outsides(wiring)
 
-    def at(point: Point, end: End) -> Loss:
+    def at(point: Point, end: End, found: float, around: Around) -> Loss:
         supply = point.vin - point.vout if inverts else point.vin
-        found = efficiency.at_point(wiring.channel, point, end)
         if supply <= 0 or (not inverts and point.vin <= point.vout):
             return _below(point, found)
         duty = terms.buck_duty(point.vin, point.vout)
         coil = point.iout / (1 - duty) if inverts else point.iout
         rectifier = point.iout if inverts else point.iout * least_off_time(point.vin, point.vout, found)
-        parts = measured.shares(end, coil, rectifier), board.shares(OPPOSITE[end], coil, rectifier)
+        parts = around.shares(end, coil, rectifier)
         return efficiency.loss_from_efficiency(wiring.channel, point, end, found, supply, *parts)
 
-    return LossModel(
-        at,
-        tuple(dict.fromkeys((*efficiency.evidence(wiring.channel), *measured.used, *board.used))),
-        notes=(*efficiency.notes(wiring.channel), *outside_notes(wiring, board, measured)),
-        interior=interior_voltages,
-        loads=efficiency.load_knots(wiring.channel),
-        has_humps=bool(efficiency.load_knots(wiring.channel)),
-        heats=Figures(wiring.channel).has("efficiency_hot_loss"),
-    )
+    return model_by_efficiency(wiring, at, interior_voltages)
 
 
 def _below(point: Point, found: float) -> Loss:

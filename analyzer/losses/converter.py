@@ -5,7 +5,7 @@ from __future__ import annotations
 from analyzer.losses import efficiency
 from analyzer.losses.base import End, Figures, Loss, LossModel, Point, lacking, outside
 from analyzer.losses.buck import interior_voltages
-from analyzer.losses.elsewhere import OPPOSITE, Shares, outside_notes, outsides, outsides_measured
+from analyzer.losses.by_efficiency import Around, model_by_efficiency
 from analyzer.losses.terms import gate_drive
 from analyzer.rail import Wiring
 from analyzer.rule import Topology
@@ -42,42 +42,20 @@ def build(wiring: Wiring) -> LossModel:
     """
     if not efficiency.is_given(wiring.channel):
         return lacking("efficiency")
-    if lacks := efficiency.lacks(wiring.channel):
-        return lacking(*lacks)
-    # the efficiency of a closed module has its own inductor in it, and none of what stands around it
-    is_closed = wiring.channel.topology is Topology.MODULE
-    measured = outsides_measured(wiring, efficiency.figure_of(wiring.channel))
-    board = outsides(wiring)
 
-    others = () if is_closed else (*measured.used, *board.used)
-
-    def at(point: Point, end: End) -> Loss:
+    def at(point: Point, end: End, found: float, around: Around) -> Loss:
         if point.vin <= 0:
             raise ValueError("a converter needs a positive input voltage")
-        found = efficiency.at_point(wiring.channel, point, end)
         iin = point.vout * point.iout / found / point.vin
         coil = least_coil_current(wiring, point.vin, point.vout, point.iout, iin)
-        parts = measured.shares(end, coil, point.iout), board.shares(OPPOSITE[end], coil, point.iout)
-        if is_closed:
-            parts = Shares(), Shares()
+        parts = around.shares(end, coil, point.iout)
         return efficiency.loss_from_efficiency(wiring.channel, point, end, found, point.vin, *parts)
 
     def interior(low: float, high: float, vout: float, iout: float) -> tuple[float, ...]:
         grid = interior_voltages(low, high, vout, iout)
         return (*grid, vout) if low < vout < high else grid
 
-    return LossModel(
-        at,
-        tuple(dict.fromkeys((*efficiency.evidence(wiring.channel), *others))),
-        notes=(
-            *efficiency.notes(wiring.channel),
-            *(() if is_closed else outside_notes(wiring, board, measured)),
-        ),
-        interior=interior,
-        loads=efficiency.load_knots(wiring.channel),
-        has_humps=bool(efficiency.load_knots(wiring.channel)),
-        heats=Figures(wiring.channel).has("efficiency_hot_loss"),
-    )
+    return model_by_efficiency(wiring, at, interior, is_closed=wiring.channel.topology is Topology.MODULE)
 
 
 def build_controller(wiring: Wiring) -> LossModel:
