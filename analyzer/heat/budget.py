@@ -269,7 +269,9 @@ def _room(case: Case, part: Part, settings: Settings) -> tuple[Headroom | None, 
     rating: Evidence | None = part.channels[0].figures.get("output_current_max")
     rated = rating.span.low if rating else None
     allowed = rated * settings.policy.current_fraction if rated is not None else None
-    room, greatest = headroom(case, rated, allowed)
+    stops = part.channels[0].figures.get("current_limit")
+    ends = [amps for amps in (rated, stops.span.low if stops else None) if amps is not None]
+    room, greatest = headroom(case, min(ends, default=None), allowed)
     return room, greatest, rated
 
 
