@@ -403,3 +403,29 @@ def test_pulses_of_several_channels_take_the_longest_pulse_and_the_shortest_peri
     single = swing_of(Case((channel(replace(slow, period_seconds=None)),), None, EXACT(40.0), (1.0, 1.0)))
     assert single is not None
     assert (single.on, single.period) == (0.010, None)
+
+
+def test_short_pulses_of_little_heat_count_a_tenth_of_their_step() -> None:
+    # 1.7 V · 0.5 A = 0.85 W for a tenth of the time: 0.085 W and a tenth of the other 0.765 W
+    entry = Bench(draws=((EXACT(0.05), Pulse(EXACT(0.5), 0.001, 0.010)),)).entry()
+    assert entry.worst is not None
+    assert entry.worst.watts == pytest.approx(0.1615)
+    assert entry.worst.junction == pytest.approx(40.0 + 50.0 * 0.1615)
+
+
+def test_pulses_without_a_thermal_path_leave_the_budget_open() -> None:
+    entry = Bench(theta=None, package=None, draws=((EXACT(0.05), Pulse(EXACT(0.5), 0.001, 0.010)),)).entry()
+    assert entry.verdict is Verdict.OPEN
+    assert entry.worst is not None
+    assert entry.worst.watts == pytest.approx(0.85)
+
+
+def test_a_single_pulse_through_a_network_adds_to_its_rest() -> None:
+    # Σ R = 50 K/W = θ; 0.85 W for 10 ms: 10 · (1 − e^(−0.01/0.01)) + 40 · (1 − e^(−0.01/100)) = 6.3252 K/W
+    network = ((10.0, 0.01), (40.0, 100.0))
+    figure = ThermalFigure("SOT-223", "test", theta_ja=number(50.0, "K/W"), board=BoardClass.HIGH, foster=network)
+    pulse = Pulse(EXACT(0.5), 0.010, None, EXACT(0.1))
+    entry = Bench(thermal=(figure,), draws=((EXACT(0.1), pulse),)).entry()
+    assert entry.worst is not None
+    # 0.17 W at rest, 0.68 W more in the pulse
+    assert entry.worst.junction == pytest.approx(40.0 + 50.0 * 0.17 + 0.68 * 6.3252, abs=1e-3)
