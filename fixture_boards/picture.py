@@ -13,7 +13,7 @@ from pathlib import Path
 HERE = Path(__file__).resolve().parent
 BOARD = "lane_lamp"
 DPI = 130
-PAGES = {"regulators": (4, (40, 50, 1440, 170)), "currents": (6, (40, 50, 1440, 238))}
+PAGES = {"regulators": (3, (40, 50, 1440, 200)), "currents": (5, (40, 50, 1440, 360))}
 """Name → page, and the part of it to keep: left, top, width, height in pixels."""
 
 

@@ -46,6 +46,9 @@ def page(ledger: Ledger, gate: Gate) -> Iterator[str]:
     for finding in standing[:MOST_ROWS]:
         cells = (finding.weight.value, finding.subject, finding.message, finding.remedy)
         yield "| " + " | ".join(_escaped(cell) for cell in cells) + " |"
+    if len(standing) > MOST_ROWS:
+        yield ""
+        yield f"… and {len(standing) - MOST_ROWS} more findings."
     yield ""
     yield f"*{CAUTION}*"
 

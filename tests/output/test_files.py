@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import errno
 import os
+import zipfile
 from pathlib import Path
 
 import openpyxl
@@ -212,3 +213,23 @@ def test_references_follow_the_letters_of_spreadsheets() -> None:
         "$ZZ$1",
         "$AAA$1",
     ]
+
+
+def test_tables_that_are_no_workbook_are_refused_and_nothing_written(ledger: Ledger, tmp_path: Path) -> None:
+    damaged, headless = tmp_path / "damaged.xlsx", tmp_path / "headless.xlsx"
+    with zipfile.ZipFile(damaged, "w") as archive:
+        archive.writestr("[Content_Types].xml", "<Types/>")
+    openpyxl.Workbook().save(headless)
+    (tmp_path / "other.xlsx").write_bytes(b"PK\x05\x06" + b"\0" * 18)
+    for name, message in (
+        ("damaged", "is no readable workbook"),
+        ("headless", "has no column of references"),
+        ("other", "is a ZIP archive but no workbook"),
+        ("absent", "does not exist"),
+    ):
+        with pytest.raises(InputError, match=message):
+            annotate(tmp_path / f"{name}.xlsx", ledger)
+    (tmp_path / "folder.xlsx").mkdir()
+    with pytest.raises(InputError, match=r"cannot be read \(Is a directory\)"):
+        annotate(tmp_path / "folder.xlsx", ledger)
+    assert not list(tmp_path.glob("*.heat.xlsx"))

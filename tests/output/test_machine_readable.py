@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import subprocess
 import sys
+from dataclasses import replace
 from datetime import date
 from pathlib import Path
 
@@ -16,8 +17,8 @@ from schema_store import published
 from analyzer.audit import Audit, audit
 from analyzer.gate import judge
 from analyzer.output.ledger_json import as_document, as_text
-from analyzer.output.page import page
-from analyzer.output.sarif import as_sarif
+from analyzer.output.page import page, write_page
+from analyzer.output.sarif import as_sarif, write_sarif
 from analyzer.settings import Waiver
 
 BOARDS = ("seedling_bench", "lane_lamp", "tide_logger")
@@ -90,3 +91,44 @@ def test_the_archive_schema_is_a_schema() -> None:
     jsonschema.Draft7Validator.check_schema(schema)
     empty = {"schema": "heatledger/archive-1", "boards": [], "standings": [], "changes": []}
     jsonschema.Draft7Validator(schema).validate(empty)
+
+
+def test_a_long_page_is_cut_and_an_incomplete_drawing_said_so(tmp_path: Path) -> None:
+    ledger = audit(ROOT / "fixture_boards" / "lane_lamp").ledger
+    gate = judge(ledger, (), "over", TODAY)
+    many = replace(ledger, complete=False, entries=ledger.entries * 15)
+    write_page(tmp_path / "page.md", many, gate)
+    lines = (tmp_path / "page.md").read_text(encoding="utf-8").splitlines()
+    assert lines[4] == "**Incomplete:** part of the drawing could not be read; no part can be clear."
+    # the head, forty of the forty-five parts, and three findings
+    assert [sum(line.startswith(word) for line in lines) for word in ("| verdict", "| open | U1 ", "| tight | U")] == [
+        1,
+        14 + 1,
+        26 + 2,
+    ]
+    assert "… and 5 more." in lines
+    # what is missing makes heat and junction a lower bound, and the margin an upper one
+    assert lines[8] == "| open | U1 QXL2133-3.3 | +3V3 | ≥ 1.50 mW | ≥ 60.2 °C | 115 °C | ≤ +54.8 K | presumed |"
+    what = "junction 101 °C at the worst corner, less than the required margin below 125 °C"
+    assert lines[-3].startswith(f"| tight | U201 | {what} | ")
+    crowded = list(page(replace(ledger, findings=()), replace(gate, standing=gate.standing * 14)))
+    assert crowded[-3] == "… and 2 more findings."
+    nothing = replace(ledger, findings=())
+    assert not any("what to do" in line for line in page(nothing, judge(nothing, (), "over", TODAY)))
+
+
+def test_sarif_is_written_whole(tmp_path: Path) -> None:
+    ledger = audit(ROOT / "fixture_boards" / "lane_lamp").ledger
+    gate = judge(ledger, (), "over", TODAY)
+    write_sarif(tmp_path / "found.sarif", ledger, gate)
+    assert json.loads((tmp_path / "found.sarif").read_text(encoding="utf-8")) == as_sarif(ledger, gate)
+
+
+def test_a_chance_has_its_place_in_the_ledger() -> None:
+    ledger = audit(ROOT / "fixture_boards" / "lane_lamp").ledger
+    one = replace(ledger.entries[0], chance=(0.25, 61.0, 99.5))
+    assert as_document(replace(ledger, entries=(one,)))["entries"][0]["chance"] == {
+        "over_limit": 0.25,
+        "junction_celsius_5_percent": 61.0,
+        "junction_celsius_95_percent": 99.5,
+    }

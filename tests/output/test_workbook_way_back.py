@@ -5,6 +5,7 @@ from __future__ import annotations
 import datetime
 import json
 import shutil
+import zipfile
 from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
@@ -335,3 +336,20 @@ def test_the_longest_text_that_a_cell_holds_comes_back_whole(result: Audit, tmp_
     type_in(file, "Currents", "Your note", text, Part="U5", Rail="+5V")
     write_workbook(file, result.ledger, result.settings, read_typed(file))
     assert list(read_typed(file).notes.values()) == [text]
+
+
+def test_a_damaged_workbook_and_one_of_an_earlier_version_are_read_as_they_are(result: Audit, tmp_path: Path) -> None:
+    damaged = tmp_path / "damaged.xlsx"
+    with zipfile.ZipFile(damaged, "w") as archive:
+        archive.writestr("[Content_Types].xml", "<Types/>")
+    with pytest.raises(InputError, match="is no readable workbook"):
+        read_typed(damaged)
+    # earlier versions had no mark for a typed θ and showed the engine's where no formula follows: nobody typed that
+    file = fresh(result, tmp_path)
+    book = openpyxl.load_workbook(file)
+    sheet = book["Regulators"]
+    heads = {str(cell.value): cell.column for cell in sheet[4]}
+    sheet.cell(4, heads["θ typed"]).value = None
+    book.save(file)
+    type_in(file, "Regulators", "θ at sea level [K/W]", 220, Part="U3")
+    assert read_typed(file).thetas == {}

@@ -6,6 +6,7 @@ The oracle is outside the project: what the spreadsheet computes must be what th
 from __future__ import annotations
 
 import re
+import shutil
 import subprocess
 import zipfile
 from collections.abc import Iterable, Mapping
@@ -258,3 +259,54 @@ def test_after_a_re_run_typed_text_counts_as_the_engine_read_it(tmp_path: Path) 
     theirs = values(recalculated(target, tmp_path))
     assert differing(formulas(target), values(target), theirs) == []
     assert "re-run" not in verdicts(theirs).values()
+
+
+def all_typed(folder: Path) -> Path:
+    """The tide logger with every missing current typed and taken in: three budgets that are clear."""
+    file = written("tide_logger", folder)
+    _, nominal, _ = NEW
+    typed = edited(
+        file,
+        {
+            current(file, "U4", "+5V", nominal): 0.001,
+            current(file, "U4", "-5V", nominal): 0.003,
+            current(file, "U5", "+5V", nominal): 0.005,
+        },
+    )
+    found = read_typed(typed)
+    again = audit(ROOT / "fixture_boards" / "tide_logger", adjust=found.applied_to)
+    target = folder / "closed.xlsx"
+    write_workbook(target, again.ledger, again.settings, found)
+    return target
+
+
+def test_what_feeds_a_part_that_no_formula_follows_says_re_run_with_it(tmp_path: Path) -> None:
+    """The pump U3 is no formula: with more load on -5V nobody may read an old verdict of U2 and U1, which feed it."""
+    file = all_typed(tmp_path)
+    _, nominal, _ = NEW
+    more, less = (
+        edited(file, {current(file, "U4", rail, nominal): amps}).rename(tmp_path / f"{amps}.xlsx")
+        for rail, amps in (("-5V", 0.13), ("+5V", 0.002))
+    )
+    before, pumped, other = map(values, recalculated_all([file, more, less], tmp_path))
+    assert verdicts(before) == {"U3": "clear", "U2": "clear", "U1": "clear"}
+    assert set(verdicts(pumped).values()) == {"re-run"}
+    # the engine's own word for it, after the re-run: all three are over
+    fresh = audit(ROOT / "fixture_boards" / "tide_logger", adjust=read_typed(more).applied_to).ledger
+    assert {entry.ref: entry.verdict.value for entry in fresh.entries} == dict.fromkeys(("U1", "U2", "U3"), "over")
+    # a load that formulas follow leaves the pump's budget as it is
+    assert verdicts(other) == verdicts(before)
+
+
+def test_a_part_that_carries_a_share_of_its_rail_takes_its_share(tmp_path: Path) -> None:
+    board = Path(shutil.copytree(ROOT / "fixture_boards" / "seedling_bench", tmp_path / "board"))
+    settings = board / "heatledger.toml"
+    settings.write_text(settings.read_text(encoding="utf-8") + "\n[parts.U2]\nshare = 0.5\n", encoding="utf-8")
+    result, file = audit(board), tmp_path / "share.xlsx"
+    write_workbook(file, result.ledger, result.settings)
+    changed = edited(file, {current(file, "U3", "+3V3", NEW[2]): 0.5}).rename(tmp_path / "changed.xlsx")
+    as_written, after = map(values, recalculated_all([file, changed], tmp_path))
+    assert differing(formulas(file), values(file), as_written) == []
+    # by hand: half of 500 + 9 mA, and the 95 µA it needs itself
+    drawn = after["Currents", place(file, "Currents", "Counts as [A]", Rail="+5V", Part="U2")]
+    assert drawn == pytest.approx(0.2545 + 95e-6, rel=CLOSE)

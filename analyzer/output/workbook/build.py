@@ -55,8 +55,8 @@ def build(ledger: Ledger, settings: Settings, typed: Typed, name: str) -> bytes:
     raw.set_properties({"title": f"Thermal budgets: {ledger.board}"[:250], "created": _created()})
     # spreadsheets work the sheet out anew when they open it, so that edits made elsewhere cannot leave stale values
     raw.set_calc_mode("auto")
-    digest = ledger.inputs[0].sha256[:12] if ledger.inputs else "no input"
-    book = Book(raw, _footer(f"{name}  input {digest}"))
+    inputs = f"inputs {summary.digest(ledger)[:12]}" if ledger.inputs else "no inputs"
+    book = Book(raw, _footer(f"{name}  {inputs}"))
     rows = plan(ledger, typed)
     summary.write(book, ledger, typed)
     settings_sheet.write(book, ledger, settings, typed, len(rows.lines))

@@ -10,7 +10,7 @@ from functools import cache
 
 from analyzer.ledger import Entry, Ledger
 from analyzer.output.workbook.layout import FIRST_ROW, TYPE_HEADS, Book, Column, Sheet, letter
-from analyzer.output.workbook.plan import Line, Plan
+from analyzer.output.workbook.plan import Line, Plan, known_load, weighted, weighted_formula
 from analyzer.output.workbook.regulators import PLACES as REGULATOR_PLACES
 from analyzer.output.workbook.typed import NOTHING, Cells, Typed
 
@@ -21,7 +21,7 @@ RAIL_COLUMNS = (
     Column("Nominal [V]", 9, "volts"),
     Column("High [V]", 9, "volts"),
     Column("Known load high [A]", 11, "amps"),
-    Column("Missing currents", 10, "count"),
+    Column("Missing currents", 10, "missing"),
     Column("Headroom until over [A]", 11, "amps"),
     Column("Grade", 10),
     Column("Source of the voltage, or why it is unknown", 44, "wrap"),
@@ -40,7 +40,7 @@ CURRENT_COLUMNS = (
     *(Column(head, 10, "plain") for head in TYPE_HEADS),
     Column("Your note", 24, "wrap"),
     Column("Counts as [A]", 10, "amps"),
-    Column("Missing", 8, "count"),
+    Column("Missing", 9, "missing"),
     Column("Rail headroom [A]", 14, "amps"),
     Column("Suggestions from notes, or source", 44, "wrap"),
     Column("Sheet", 14, "wrap"),
@@ -52,6 +52,7 @@ CURRENT_COLUMNS = (
     Column("High as audited", 8, "plain"),
     Column("State", 8, "plain"),
     Column("Takes typing", 8, "plain"),
+    Column("Below as audited [A]", 8, "plain"),
     Column("Identity", 12),
 )
 NO_CELLS: Cells = (None, None, None)
@@ -120,14 +121,15 @@ def write_currents(
         typed: What was typed before; carried over.
     """
     remark = (
-        "Type currents into the coloured cells: amperes as numbers, or text with a unit such as 120 mA or 80..150 mA."
+        "Type into the coloured cells: amperes as numbers count at once; text such as 120 mA, 80..150 mA, 1.2 W or "
+        "2 A for 5 ms every 100 ms counts after a re-run with --currents."
     )
     sheet = book.sheet("Currents", "Currents", remark, CURRENT_COLUMNS, freeze=2)
     rooms = {rail: _room(entry) for rail, entry in _feeders(ledger).items()}
     written: set[tuple[str, str]] = set()
     for number, line in enumerate(plan.lines):
         row, where = FIRST_ROW + number, (line.key, line.rail)
-        _line(sheet, row, line, plan)
+        _line(sheet, row, line, plan, ledger)
         # a part that has two rows on one rail gets what was typed for it in one of them
         _typed(sheet, row, line, NOTHING if where in written else typed)
         written.add(where)
@@ -156,10 +158,10 @@ def _typed(sheet: Sheet, row: int, line: Line, typed: Typed) -> None:
     for offset in range(3):
         sheet.put(row, CURRENT_PLACES[TYPE_HEADS[0]] + offset, cells[offset], form)
         sheet.put(row, CURRENT_PLACES[AUDITED_HEADS[0]] + offset, audited[offset])
-    sheet.put(row, CURRENT_PLACES["Your note"], typed.notes.get(where), "input")
+    sheet.put(row, CURRENT_PLACES["Your note"], typed.notes.get(where), "note")
 
 
-def _line(sheet: Sheet, row: int, line: Line, plan: Plan) -> None:
+def _line(sheet: Sheet, row: int, line: Line, plan: Plan, ledger: Ledger) -> None:
     span = line.amps.span if line.amps else None
     ends = span.corners if span else (None, None, None)
     words = _words(line)
@@ -167,12 +169,14 @@ def _line(sheet: Sheet, row: int, line: Line, plan: Plan) -> None:
     sheet.put(row, CURRENT_PLACES["Suggestions from notes, or source"], words)
     sheet.put(row, CURRENT_PLACES["Sheet"], line.sheet)
     sheet.put(row, CURRENT_PLACES["Identity"], line.key)
-    below = None
-    if line.follows and line.follows[0] in plan.rail_rows:
-        below, coefficients = line.follows
-        for offset, coefficient in enumerate(coefficients):
+    below = line.below
+    if line.follows:
+        below = (line.follows[0],)
+        for offset, coefficient in enumerate(line.follows[1]):
             sheet.put(row, CURRENT_PLACES["i0 [A]"] + offset, coefficient)
-    below_load = f"Rails!$F${plan.rail_rows[below] + 1}" if below else "0"
+    elif below:
+        sheet.put(row, CURRENT_PLACES["Below as audited [A]"], weighted(below, known_load(ledger)))
+    below_load = weighted_formula(below, plan.rail_rows)
     results = (span.high if span else 0.0, 1 if line.gap else 0, 0)
     for (head, formula), result in zip(_formulas(below_load).items(), results, strict=True):
         sheet.formula(row, CURRENT_PLACES[head], formula.replace(ROW, str(row + 1)), result)
@@ -187,8 +191,9 @@ def _formulas(below_load: str) -> Mapping[str, str]:
     """Head → formula of the cells that follow what is typed, with `ROW` for the row.
 
     Numbers count at once (state 1). Text, which no formula reads, a negative number and an emptied cell that the audit
-    used wait for a re-run (state 2), and till then no verdict stands. State 0 is as audited. The formulas are kept
-    short, for they are most of what a large workbook takes to write.
+    used wait for a re-run (state 2), and till then no verdict stands; so does the input of a part that no formula
+    follows when the load below it changes. State 0 is as audited. The formulas are kept short, for they are most of
+    what a large workbook takes to write.
     """
     at = {head: letter(number)[1:] + ROW for head, number in CURRENT_PLACES.items()}
     low, nominal, high = (at[head] for head in TYPE_HEADS)
@@ -196,11 +201,12 @@ def _formulas(below_load: str) -> Mapping[str, str]:
     pairs = zip((low, nominal, high), AUDITED_HEADS, strict=True)
     same = ",".join(f"EXACT({typed},{at[head]})" for typed, head in pairs)
     numbers = f"{takes}=1,COUNT({cells})>0,COUNTA({cells})=COUNT({cells}),MIN({cells})>=0"
-    follows = f"{at['i0 [A]']}+{i1}*{below_load}+{at['i2 [A/A²]']}*{below_load}^2"
+    follows = f"{at['i0 [A]']}+{i1}*({below_load})+{at['i2 [A/A²]']}*({below_load})^2"
+    moved = f"AND(ISNUMBER({at['Below as audited [A]']}),ABS({below_load}-N({at['Below as audited [A]']}))>1E-12)"
     return {
         "Counts as [A]": f"=IF({state}=1,MAX({cells}),IF(ISNUMBER({i1}),{follows},N({at['High [A]']})))",
         "Missing": f'=IF(AND(LEFT({at["Kind"]},3)="gap",{state}<>1),1,0)',
-        "State": f"=IF(OR({takes}=0,AND({same})),0,IF(AND({numbers}),1,2))",
+        "State": f"=IF({moved},2,IF(OR({takes}=0,AND({same})),0,IF(AND({numbers}),1,2)))",
     }
 
 

@@ -33,35 +33,70 @@ class Column:
     form: str = "text"
 
 
-WRAPPED = frozenset({"wrap", "head"})
+WRAPPED = frozenset({"wrap", "head", "head_right", "note"})
 LINE_HEIGHT = 15.0
 MOST_LINES = 20
 WIDE = 66.0
 """Width taken for sheets without columns of their own."""
 
 FORMS: Mapping[str, Mapping[str, Any]] = {
-    "text": {"valign": "top", "indent": 1},
-    "wrap": {"valign": "top", "text_wrap": True},
+    # the indent keeps text off the numbers of the column before it; it holds only beside an alignment of its own
+    "text": {"valign": "top", "align": "left", "indent": 1},
+    "wrap": {"valign": "top", "align": "left", "indent": 1, "text_wrap": True},
     "number": {"num_format": "0.000", "valign": "top"},
     "volts": {"num_format": "0.000", "valign": "top"},
-    "amps": {"num_format": "0.0000", "valign": "top"},
+    "amps": {"num_format": "0.00000", "valign": "top"},
     "watts": {"num_format": "0.0000", "valign": "top"},
     "kelvin": {"num_format": "0.0", "valign": "top"},
-    "count": {"num_format": "0", "valign": "top", "align": "left"},
+    "count": {"num_format": "0", "valign": "top", "align": "left", "indent": 1},
+    # nothing missing is no figure to read
+    "missing": {"num_format": "0;;", "valign": "top", "align": "left", "indent": 1},
     "percent": {"num_format": "0.0%", "valign": "top"},
-    "plain": {"num_format": "General", "valign": "top", "align": "left"},
+    "plain": {"num_format": "General", "valign": "top", "align": "left", "indent": 1},
     # the look of spreadsheets' own Input style, by which people know where to type
     "input": {"bg_color": "#FFCC99", "font_color": "#3F3F76", "border": 1, "locked": False, "valign": "top"},
-    "head": {"bold": True, "text_wrap": True, "valign": "top", "bottom": 2, "bg_color": "#E4E7EB"},
-    "title": {"bold": True, "font_size": 14},
-    "remark": {"italic": True, "font_color": "#444444"},
-    "label": {"bold": True, "valign": "top"},
+    "note": {
+        "bg_color": "#FFCC99",
+        "font_color": "#3F3F76",
+        "border": 1,
+        "locked": False,
+        "valign": "top",
+        "align": "left",
+        "text_wrap": True,
+    },
+    "head": {
+        "bold": True,
+        "text_wrap": True,
+        "valign": "top",
+        "align": "left",
+        "indent": 1,
+        "bottom": 2,
+        "bg_color": "#E4E7EB",
+    },
+    "head_right": {
+        "bold": True,
+        "text_wrap": True,
+        "valign": "top",
+        "align": "right",
+        "bottom": 2,
+        "bg_color": "#E4E7EB",
+    },
+    "title": {"bold": True, "font_size": 14, "align": "left", "indent": 1},
+    "remark": {"italic": True, "font_color": "#444444", "align": "left", "indent": 1},
+    "label": {"bold": True, "valign": "top", "align": "left", "indent": 1},
     # verdicts: the looks of Bad, Neutral, Note and Good, beside the word itself
     "over": {"bg_color": "#FFC7CE", "font_color": "#9C0006", "bold": True},
     "tight": {"bg_color": "#FFEB9C", "font_color": "#7F6000"},
     "open": {"bg_color": "#DDEBF7", "font_color": "#1F4E78", "italic": True},
     "clear": {"bg_color": "#C6EFCE", "font_color": "#006100"},
 }
+
+
+RIGHT = frozenset({"number", "volts", "amps", "watts", "kelvin", "percent"})
+"""Formats whose cells end at the right of their column, as its head then does too."""
+
+INPUTS = frozenset({"input", "note"})
+"""Formats of cells to type into."""
 
 
 class Book:
@@ -94,7 +129,7 @@ class Book:
         made = Sheet(self, sheet, columns)
         for number, column in enumerate(columns):
             sheet.set_column(number, number, column.width)
-            made.put(HEAD_ROW, number, column.head, "head")
+            made.put(HEAD_ROW, number, column.head, "head_right" if column.form in RIGHT else "head")
         return made
 
 
@@ -111,7 +146,7 @@ class Sheet:
         """A number as number, anything else as text; None and "" leave the cell empty."""
         cell = self.book.form(form or self.columns[column].form)
         if value is None or value == "":
-            if form == "input":
+            if form in INPUTS:
                 self.raw.write_blank(row, column, None, cell)
             return
         if isinstance(value, (int, float)) and not isinstance(value, bool):
@@ -124,7 +159,8 @@ class Sheet:
 
     def _grow(self, row: int, text: str, width: float) -> None:
         """Make a row as high as its longest wrapped text needs; not every program does it by itself."""
-        lines = min(MOST_LINES, sum(max(1, -(-len(line) // int(width * 1.05))) for line in text.split("\n")))
+        # a character less for the indent
+        lines = min(MOST_LINES, sum(lines_of(line, int(width) - 1) for line in text.split("\n")))
         if lines > self._lines.get(row, 1):
             self._lines[row] = lines
             self.raw.set_row(row, LINE_HEIGHT * lines)
@@ -148,6 +184,20 @@ class Sheet:
         for word in ("over", "tight", "open", "clear"):
             rule = {"type": "cell", "criteria": "==", "value": f'"{word}"', "format": self.book.form(word)}
             self.raw.conditional_format(first, column, max(first, last), column, rule)
+
+
+def lines_of(text: str, width: int) -> int:
+    """Lines that a text takes in a column as wide as `width` figures, wrapped at blanks; longer words are broken."""
+    lines, room = 1, width
+    for word in text.split(" ") if len(text) > width else ():
+        if len(word) > room:
+            lines += 1 if room < width else 0
+            lines += (len(word) - 1) // width
+            room = width - (len(word) - 1) % width - 1
+        else:
+            room -= len(word)
+        room -= 1
+    return lines
 
 
 def plain(text: str) -> str:

@@ -20,9 +20,9 @@ REMEDY_COLUMNS = (
 EVIDENCE_COLUMNS = (
     Column("Part", 8),
     Column("Quantity", 34, "wrap"),
-    Column("Low", 11, "plain"),
-    Column("Nominal", 11, "plain"),
-    Column("High", 11, "plain"),
+    Column("Low", 13, "plain"),
+    Column("Nominal", 13, "plain"),
+    Column("High", 13, "plain"),
     Column("Unit", 9),
     Column("Grade", 10),
     Column("Source", 60, "wrap"),
@@ -31,7 +31,7 @@ EVIDENCE_COLUMNS = (
 )
 FINDING_COLUMNS = (
     Column("Weight", 8),
-    Column("About", 14, "wrap"),
+    Column("About", 20, "wrap"),
     Column("Finding", 22, "wrap"),
     Column("What", 56, "wrap"),
     Column("What to do", 44, "wrap"),
@@ -72,8 +72,10 @@ def write_evidence(book: Book, ledger: Ledger) -> None:
     row = FIRST_ROW
     for entry in ledger.entries:
         for one in entry.evidence:
-            source = (one.unit, one.grade.value, one.source, one.formula, one.note)
-            sheet.row(row, (entry.ref, one.quantity, *one.span.corners, *source))
+            source = ("" if one.unit == "rank" else one.unit, one.grade.value, one.source, one.formula, one.note)
+            # a class has a name and no figures
+            figures = (None, None, None) if one.unit == "rank" else one.span.corners
+            sheet.row(row, (entry.ref, one.quantity, *figures, *source))
             row += 1
     sheet.filter(row - 1)
 
@@ -93,14 +95,14 @@ def write_findings(book: Book, ledger: Ledger, answers: Mapping[Answered, str]) 
     for finding, answered in zip(ledger.findings, standing, strict=True):
         where = (finding.message, finding.remedy, finding.where)
         sheet.row(row, (finding.weight.value, finding.subject, finding.name, *where, None, finding.key))
-        sheet.put(row, 6, answers[answered] if answered else None, "input")
+        sheet.put(row, 6, answers[answered] if answered else None, "note")
         row += 1
     for one, answer in answers.items():
         if one not in standing:
             # the matter was mended, but what somebody wrote about it stays
             told = (one.what, "found in an earlier run, not in this one", one.where, None, one.identity)
             sheet.row(row, ("gone", one.subject, one.finding, *told))
-            sheet.put(row, 6, answer, "input")
+            sheet.put(row, 6, answer, "note")
             row += 1
     sheet.filter(row - 1)
     sheet.raw.set_column(7, 7, 12, None, {"level": 1, "hidden": 1})
@@ -135,7 +137,7 @@ def write_not_understood(book: Book, ledger: Ledger) -> None:
     remark = (
         "Write a rule for each ('heatledger rules draft' makes one to fill in), or declare that it is no regulator."
     )
-    sheet = book.sheet("Not understood", "Not understood", remark, (Column("Part and why", 120, "wrap"),), freeze=0)
+    sheet = book.sheet("Not understood", "Not understood", remark, (Column("Part and why", 100, "wrap"),), freeze=0)
     for number, line in enumerate(ledger.not_understood):
         sheet.put(FIRST_ROW + number, 0, line)
     if not ledger.not_understood:

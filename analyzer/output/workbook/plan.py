@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+import math
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 from analyzer.evidence import Evidence
@@ -11,7 +12,7 @@ from analyzer.load import Draw, Gap
 from analyzer.output.workbook.layout import FIRST_ROW
 from analyzer.output.workbook.typed import Typed
 
-CLOSED_KINDS = ("regulator", "gap below")
+CLOSED_KINDS = ("regulator", "passage", "gap below")
 """Kinds of lines on which no current can be stated."""
 
 
@@ -22,11 +23,12 @@ class Line:
     Attributes:
         rail: Its rail.
         ref, key, value, sheet: The part.
-        kind: "stated", "ruled", "computed", "regulator", "gap", "gap below" for a gap that closes with those of a rail
-            below, or "gone" for a part not there now.
+        kind: "stated", "ruled", "computed", "regulator", "passage", "gap", "gap below" for a gap that closes with those
+            of a rail below, or "gone" for a part not there now.
         amps: The current as evidence, None for a gap.
         gap: The gap, None for a draw.
         follows: Where the current follows the load of a rail below: that rail, and i0 [A], i1 [A/A], i2 [A/A²].
+        below: Rails on whose loads the current depends in a way that no formula follows.
     """
 
     rail: str
@@ -38,6 +40,7 @@ class Line:
     amps: Evidence | None
     gap: Gap | None
     follows: tuple[str, tuple[float, float, float]] | None = None
+    below: tuple[str, ...] = ()
 
     @property
     def is_open_to_typing(self) -> bool:
@@ -62,7 +65,11 @@ def plan(ledger: Ledger, typed: Typed) -> Plan:
     What was typed for a part or rail that is gone gets a line of kind "gone" at the end: nothing typed is dropped.
     """
     entries = {entry.key: entry for entry in ledger.entries}
-    passed = {feed.ref: rail.name for rail in ledger.rails for feed in rail.feeds if feed.kind == "passage"}
+    passed: dict[str, list[str]] = {}
+    for rail in ledger.rails:
+        for feed in rail.feeds:
+            if feed.kind == "passage":
+                passed.setdefault(feed.ref, []).append(rail.name)
     lines: list[Line] = []
     blocks: dict[str, tuple[int, int]] = {}
     for rail in ledger.rails:
@@ -86,28 +93,58 @@ def plan(ledger: Ledger, typed: Typed) -> Plan:
     )
 
 
-def _draw_line(draw: Draw, entries: Mapping[str, Entry], passed: Mapping[str, str], ledger: Ledger) -> Line:
+def weighted(rails: Sequence[str], load_of: Callable[[str], float]) -> float:
+    """A sum over rails that changes with the load of any of them, and when load moves from one to another."""
+    return math.fsum((number + 1) * load_of(rail) for number, rail in enumerate(rails))
+
+
+def weighted_formula(rails: Sequence[str], rail_rows: Mapping[str, int]) -> str:
+    """The same as a formula over the Rails sheet."""
+    terms = [f"{number + 1}*Rails!$F${rail_rows[rail] + 1}" for number, rail in enumerate(rails)]
+    return "+".join(terms).replace("1*Rails", "Rails", 1) or "0"
+
+
+def fed_rails(entry: Entry, ledger: Ledger) -> tuple[str, ...]:
+    """The rails that an entry feeds and that have a row."""
+    known = {rail.name for rail in ledger.rails}
+    return tuple(dict.fromkeys(output.rail for output in entry.outputs if output.rail in known))
+
+
+def known_load(ledger: Ledger) -> Callable[[str], float]:
+    """Rail → its known load at the high end [A]."""
+    return lambda rail: ledger.loads[rail].known.high if rail in ledger.loads else 0.0
+
+
+def _draw_line(draw: Draw, entries: Mapping[str, Entry], passed: Mapping[str, Sequence[str]], ledger: Ledger) -> Line:
     entry = entries.get(draw.key) if draw.kind == "regulator" else None
     value, sheet = ledger.names.get(draw.key, ("", ""))
-    follows = None
+    follows, below = None, tuple[str, ...]()
     if draw.kind == "regulator":
-        follows = _of_entry(entry) if entry else _of_passage(draw, passed.get(draw.ref), ledger)
-    return Line(draw.rail, draw.ref, draw.key, value, sheet, draw.kind, draw.amps, None, follows)
+        rails = fed_rails(entry, ledger) if entry else tuple(passed.get(draw.ref, ()))
+        follows = _of_entry(entry, rails, ledger) if entry else _of_passage(draw, rails, ledger)
+        below = () if follows else rails
+    # a diode or switch takes what it passes on, as a regulator takes what it converts; it has no budget of its own
+    kind = "passage" if draw.kind == "regulator" and entry is None else draw.kind
+    return Line(draw.rail, draw.ref, draw.key, value, sheet, kind, draw.amps, None, follows, below)
 
 
-def _of_entry(entry: Entry) -> tuple[str, tuple[float, float, float]] | None:
-    rail = next((output.rail for output in entry.outputs if output.rail), None)
-    if rail is None or "i1" not in entry.live:
+Follows = tuple[str, tuple[float, float, float]] | None
+
+
+def _of_entry(entry: Entry, rails: Sequence[str], ledger: Ledger) -> Follows:
+    if len(rails) != 1 or "i1" not in entry.live:
         return None
-    return rail, (entry.live["i0"], entry.live["i1"], entry.live["i2"])
+    shares = {(feed.ref, rail.name): feed.share for rail in ledger.rails for feed in rail.feeds}
+    share = shares.get((entry.ref, rails[0]), 1.0)
+    return rails[0], (entry.live["i0"], entry.live["i1"] * share, entry.live["i2"] * share**2)
 
 
-def _of_passage(draw: Draw, rail: str | None, ledger: Ledger) -> tuple[str, tuple[float, float, float]] | None:
+def _of_passage(draw: Draw, rails: Sequence[str], ledger: Ledger) -> Follows:
     """A diode or switch without a budget of its own takes what it passes on, if that is what the engine found."""
-    load = ledger.loads.get(rail or "")
-    if rail is None or load is None or load.known.high != draw.amps.span.high:
+    load = ledger.loads.get(rails[0]) if len(rails) == 1 else None
+    if load is None or load.known.high != draw.amps.span.high:
         return None
-    return rail, (0.0, 1.0, 0.0)
+    return rails[0], (0.0, 1.0, 0.0)
 
 
 def _gap_line(gap: Gap) -> Line:

@@ -6,12 +6,13 @@ say "engine" and keep the engine's values.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+import textwrap
+from collections.abc import Mapping, Sequence
 
 from analyzer.findings.base import Weight
 from analyzer.ledger import Entry, Ledger
 from analyzer.output.workbook.layout import FIRST_ROW, Book, Column, Sheet, letter
-from analyzer.output.workbook.plan import Plan
+from analyzer.output.workbook.plan import Plan, fed_rails, known_load, weighted, weighted_formula
 from analyzer.output.workbook.typed import Typed
 from analyzer.output.workbook.typed_reading import YES
 
@@ -25,7 +26,7 @@ COLUMNS = (
     Column("Input high [V]", 8, "volts"),
     Column("Output low [V]", 8, "volts"),
     Column("Output high [V]", 8, "volts"),
-    Column("Load high [A]", 9, "amps"),
+    Column("Load high [A]", 10, "amps"),
     Column("Heat [W]", 9, "watts"),
     Column("θ at sea level [K/W]", 9, "kelvin"),
     Column("θ used [K/W]", 9, "kelvin"),
@@ -33,13 +34,13 @@ COLUMNS = (
     Column("Junction nominal [°C]", 9, "kelvin"),
     Column("Junction worst [°C]", 9, "kelvin"),
     Column("Rating [°C]", 8, "kelvin"),
-    Column("Limit [°C]", 8, "kelvin"),
+    Column("Limit [°C]", 9, "kelvin"),
     Column("Margin [K]", 8, "kelvin"),
     Column("Verdict", 9),
     Column("Further load until over [A]", 10, "amps"),
     Column("Grade", 10),
     Column("Worst corner", 26, "wrap"),
-    Column("Missing", 34, "wrap"),
+    Column("Missing", 60, "wrap"),
     Column("Model", 8),
     Column("Sheet", 14, "wrap"),
     Column("k0 [W]", 8, "plain"),
@@ -76,6 +77,9 @@ _FOLLOWED_KINDS = frozenset(
 """Findings that the verdict's own formula works out; all others are taken as the audit found them."""
 
 
+MOST_MISSING = 90
+"""Characters of a missing figure that a row shows."""
+
 RERUN = "re-run"
 """What a row says in place of its verdict when something was edited that its formulas do not follow."""
 
@@ -97,7 +101,7 @@ def write(book: Book, ledger: Ledger, plan: Plan, typed: Typed) -> None:
     for entry in ledger.entries:
         _row(sheet, entry, plan, shares, ledger)
         _theta(sheet, plan.entry_rows[entry.key], entry, typed)
-        _formulas(sheet, plan.entry_rows[entry.key], entry, plan.rail_rows.get(_rail(entry)), waits=typed.waits)
+        _formulas(sheet, plan.entry_rows[entry.key], entry, plan.rail_rows, fed_rails(entry, ledger), waits=typed.waits)
     last = FIRST_ROW + len(ledger.entries) - 1
     _gone(sheet, last + 1, ledger, typed)
     sheet.filter(last)
@@ -157,7 +161,7 @@ def _row(sheet: Sheet, entry: Entry, plan: Plan, shares: Mapping[tuple[str, str]
         "Rating [°C]": entry.data_sheet_limit,
         "Grade": entry.grade.value,
         "Worst corner": worst.name if worst else "",
-        "Missing": "; ".join(entry.missing),
+        "Missing": _told(entry.missing),
         "Model": "live" if closed else "engine",
         "Sheet": entry.sheet,
         "k0 [W]": live.get("k0"),
@@ -172,7 +176,7 @@ def _row(sheet: Sheet, entry: Entry, plan: Plan, shares: Mapping[tuple[str, str]
         "Engine heat [W]": worst.watts if worst else None,
         "Engine junction [°C]": worst.junction if worst else None,
         "Engine load [A]": load,
-        "Rail load as audited [A]": ledger.loads[rail].known.high if rail in ledger.loads else None,
+        "Rail load as audited [A]": weighted(fed, known_load(ledger)) if (fed := fed_rails(entry, ledger)) else None,
         "Engine θ [K/W]": worst.theta if worst else None,
         "Identity": entry.key,
     }
@@ -180,8 +184,10 @@ def _row(sheet: Sheet, entry: Entry, plan: Plan, shares: Mapping[tuple[str, str]
         sheet.put(row, PLACES[head], value)
 
 
-def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None, *, waits: bool) -> None:
-    worst = entry.worst
+def _formulas(
+    sheet: Sheet, row: int, entry: Entry, rail_rows: Mapping[str, int], fed: Sequence[str], *, waits: bool
+) -> None:
+    worst, rail_row = entry.worst, rail_rows.get(_rail(entry))
     at = {head: letter(number) + str(row + 1) for head, number in PLACES.items()}
     rail_load = f"Rails!$F${rail_row + 1}" if rail_row is not None else "0"
     rail_gaps = f"Rails!$G${rail_row + 1}" if rail_row is not None else "0"
@@ -197,7 +203,8 @@ def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None, *, wai
     static_missing = at["Missing besides the load"]
     missing = at["Missing in all"]
     audited = at["Rail load as audited [A]"]
-    moved = f"OR(Edited>0,AND(ISNUMBER({audited}),ABS({rail_load}-N({audited}))>1E-12))"
+    loads = weighted_formula(fed, rail_rows)
+    moved = f"OR(Edited>0,AND(ISNUMBER({audited}),ABS({loads}-N({audited}))>1E-12))"
     typed = at["θ at sea level [K/W]"]
     moved = f"OR({moved},NOT(EXACT({typed},{at['θ as audited [K/W]']})))"
     stale = f"OR(Class_edited+Unread_settings+Unread_currents>0,IF({live},N({typed})<=0,{moved}))"
@@ -247,6 +254,14 @@ def _formulas(sheet: Sheet, row: int, entry: Entry, rail_row: int | None, *, wai
     )
     for head, formula, result in formulas:
         sheet.formula(row, PLACES[head], formula, result)
+
+
+def _told(missing: Sequence[str]) -> str:
+    """What is missing, in short: the Findings sheet has all of it, and a row as high as that would fill the page."""
+    if not missing:
+        return ""
+    more = f" (and {len(missing) - 1} more, see Findings)" if len(missing) > 1 else ""
+    return textwrap.shorten(missing[0], MOST_MISSING, placeholder=" …") + more
 
 
 def _rail(entry: Entry) -> str:

@@ -27,6 +27,9 @@ COLUMNS = (
 )
 
 
+NO_CAP = 1000.0
+"""Cell value [°C] where the policy names no greatest temperature: no rating is as high."""
+
 TYPED = len(COLUMNS) - 1
 """Column of the mark that tells a typed value from one of the files."""
 
@@ -57,17 +60,18 @@ def inputs(settings: Settings) -> Iterator[Input]:
         yield Input(name, meaning, value, evidence.unit, evidence.source, evidence.grade.value)
     exponent = site.altitude_exponent if site.altitude_exponent is not None else EXPONENTS[site.cooling]
     yield Input(
-        "Altitude_exponent", f"Altitude exponent ({site.cooling} cooling)", exponent, "1", "see Evidence", "ruled"
+        "Altitude_exponent", f"Altitude exponent ({site.cooling} cooling)", exponent, "", "see Evidence", "ruled"
     )
     source = f"policy {policy.name}: {policy.source}"
     grade = "ruled" if policy.verified else "presumed"
     yield Input("Margin_over", "Policy limit: rating less", policy.junction_over, "K", source, grade)
     yield Input("Margin_tight", "Tight above: rating less", policy.junction_tight, "K", source, grade)
-    yield Input("Policy_factor", "Policy limit: fraction of rating", policy.junction_factor or 1.0, "1", source, grade)
-    cap = policy.junction_cap if policy.junction_cap is not None else 1000.0
+    yield Input("Policy_factor", "Policy limit: fraction of rating", policy.junction_factor or 1.0, "", source, grade)
+    cap, no_cap = policy.junction_cap, f"{source}; no greatest temperature, for which {NO_CAP:g} stands"
     current = policy.current_fraction
-    yield Input("Policy_current", "Policy limit: fraction of rated current", current, "1", source, grade)
-    yield Input("Policy_cap", "Policy limit: at most", cap, "°C", source, grade)
+    yield Input("Policy_current", "Policy limit: fraction of rated current", current, "", source, grade)
+    cap_source = no_cap if cap is None else source
+    yield Input("Policy_cap", "Policy limit: at most", NO_CAP if cap is None else cap, "°C", cap_source, grade)
 
 
 INPUT_NAMES = tuple(one.name for one in inputs(Settings()))
@@ -137,7 +141,7 @@ def write(book: Book, ledger: Ledger, settings: Settings, typed: Typed, lines: i
     row += 1
     exponent = next(one.value for one in inputs(settings) if one.name == "Altitude_exponent")
     factor = multiplier(settings.site.altitude.span.high, exponent or 0.0)
-    sheet.row(row, ("Altitude multiplier", None, "1", factor, "US Standard Atmosphere 1976 pressure ratio", "derived"))
+    sheet.row(row, ("Altitude multiplier", None, "", factor, "US Standard Atmosphere 1976 pressure ratio", "derived"))
     formula = "=MAX(1,POWER(POWER(1-0.0000225577*Altitude_high,5.25588),-Altitude_exponent))"
     sheet.formula(row, 1, formula, factor)
     sheet.put(row, 6, "Thin_air")
@@ -154,7 +158,9 @@ def write(book: Book, ledger: Ledger, settings: Settings, typed: Typed, lines: i
     row += 2
     _write_unread(book, sheet, row, lines)
     row += 3
+    sheet.put(row, 0, "All that holds for the whole board", "title")
     for evidence in ledger.settings:
-        sheet.row(row, (evidence.quantity, None, evidence.unit, None, evidence.source, evidence.grade.value))
-        sheet.put(row, 1, show_span(evidence.span, evidence.unit), "text")
         row += 1
+        # unit and "as audited" stay empty, so that the span has room
+        sheet.row(row, (evidence.quantity, None, None, None, evidence.source, evidence.grade.value))
+        sheet.put(row, 1, show_span(evidence.span, evidence.unit), "text")

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import hashlib
+
 from analyzer import __version__
 from analyzer.cli import CAUTION
 from analyzer.findings.base import Verdict
@@ -12,7 +14,6 @@ from analyzer.output.workbook.regulators import PLACES, RERUN
 from analyzer.output.workbook.typed import Typed
 
 CAUTIONS = (
-    CAUTION,
     "θJA depends on the board: ±20 % of the rise at best with a matching board class, ±40 % with generic figures.",
     "Thermal shutdown is no limit to design to. Hot parts can burn: guard accessible ones.",
     "Currents that nobody stated are missing, not zero: a budget with a missing current is open.",
@@ -26,13 +27,21 @@ _WORDS = {
 _RERUN_WORDS = "something typed since waits for an audit with --currents; no formula can follow it"
 
 
+WIDTHS = (22.0, 44.0, 72.0)
+
+
+def digest(ledger: Ledger) -> str:
+    """One hash over the names and hashes of all inputs: it changes with any of them."""
+    told = "".join(f"{file.sha256}  {file.path}\n" for file in ledger.inputs)
+    return hashlib.sha256(told.encode("utf-8", "surrogateescape")).hexdigest()
+
+
 def write(book: Book, ledger: Ledger, typed: Typed) -> None:
     """Write the sheet; the verdict counts follow the Regulators sheet."""
     sheet = book.sheet("Summary", f"Thermal budgets: {ledger.board}", CAUTION, ())
     raw = sheet.raw
-    raw.set_column(0, 0, 24)
-    raw.set_column(1, 1, 44)
-    raw.set_column(2, 2, 70)
+    for number, width in enumerate(WIDTHS):
+        raw.set_column(number, number, width)
     row = 3
 
     def put(label: str, value: object, more: object = None) -> None:
@@ -69,18 +78,26 @@ def write(book: Book, ledger: Ledger, typed: Typed) -> None:
     put("Missing currents", facts["gaps"])
     put("heatledger", __version__)
     row += 1
+    sheet.put(row, 0, "Cautions", "label")
     for caution in CAUTIONS:
-        put("Caution", "", caution)
+        # no wrapping: the text goes on over the empty cells beside it
+        sheet.put(row, 1, caution, "text")
+        row += 1
     row += 1
     sheet.put(row, 0, "Review and sign-off", "title")
     row += 1
     for label in SIGN_OFF:
         sheet.put(row, 0, label, "label")
-        sheet.put(row, 1, typed.sign_off.get(label), "input")
+        sheet.put(row, 1, typed.sign_off.get(label), "note")
         row += 1
     row += 1
-    sheet.put(row, 0, "Inputs read", "title")
+    sheet.put(row, 0, "Inputs read, with their SHA-256", "title")
+    row += 1
+    sheet.put(row, 1, "all of them together, as in the footer", "text")
+    sheet.put(row, 2, digest(ledger), "text")
     row += 1
     for file in ledger.inputs:
-        put("", file.path, f"SHA-256 {file.sha256}")
+        sheet.put(row, 1, file.path, "wrap")
+        sheet.put(row, 2, file.sha256, "text")
+        row += 1
     raw.print_area(0, 0, row, 2)

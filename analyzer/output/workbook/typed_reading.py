@@ -195,7 +195,9 @@ def _settings(path: Path, rows: list[Row], faults: list[Fault]) -> dict[str, flo
             found[name] = float(value)
         else:
             what = f"'{_text(value)}' is no number for {_text(row.get('Setting'))}"
-            faults.append(Fault(what, str(path), f"Settings!B{number}", f"Type it in {_text(row.get('Unit'))}."))
+            unit = _text(row.get("Unit"))
+            remedy = f"Type it in {unit}, without the unit." if unit else "Type a number."
+            faults.append(Fault(what, str(path), f"Settings!B{number}", remedy))
     for nominal, high in (("Ambient_nominal", "Ambient_high"), ("Rise_nominal", "Rise_high")):
         if found.get(nominal, 0.0) > found.get(high, found.get(nominal, 0.0)):
             what = f"{nominal} {found[nominal]:g} is above {high} {found[high]:g}"
