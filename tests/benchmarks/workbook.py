@@ -1,19 +1,25 @@
-"""How long a large workbook takes: 5,000 parts on 200 regulators.
+"""How long a large workbook takes: 5,000 parts on 200 regulators written, read back, and opened in LibreOffice.
 
-Run it by hand: python tests/benchmarks/workbook.py [OUT.xlsx]
+Run it by hand: python tests/benchmarks/workbook.py [OUT.xlsx]   (with OUT.xlsx and soffice it is opened and saved too)
 """
 
 from __future__ import annotations
 
+import shutil
+import subprocess
 import sys
+import tempfile
 import time
 from dataclasses import replace
 from pathlib import Path
+
+import openpyxl
 
 from analyzer.audit import audit
 from analyzer.load import Draw, RailLoad
 from analyzer.output.workbook.build import build
 from analyzer.output.workbook.typed import NOTHING
+from analyzer.output.workbook.typed_reading import read_typed
 from analyzer.quantity import total
 from analyzer.rail import Feed
 
@@ -43,7 +49,32 @@ def main() -> None:
     data = build(ledger, result.settings, NOTHING, "large.xlsx")
     print(f"{PARTS} parts on {REGULATORS} regulators: {time.perf_counter() - start:.2f} s, {len(data) // 1024} kB")
     if len(sys.argv) > 1:
-        Path(sys.argv[1]).write_bytes(data)
+        file = Path(sys.argv[1])
+        file.write_bytes(data)
+        start = time.perf_counter()
+        read_typed(file)
+        print(f"what was typed read back: {time.perf_counter() - start:.2f} s")
+        opened(file)
+
+
+def opened(file: Path) -> None:
+    """Open the workbook in LibreOffice and save it again, and say how long both took and how many cells are errors."""
+    program = shutil.which("soffice")
+    if program is None:
+        return
+    with tempfile.TemporaryDirectory() as name:
+        profile = f"-env:UserInstallation=file://{name}/profile"
+        command = [program, profile, "--headless", "--convert-to", "xlsx", "--outdir", f"{name}/out", str(file)]
+        start = time.perf_counter()
+        subprocess.run(command, check=True, capture_output=True, timeout=600)
+        took = time.perf_counter() - start
+        book = openpyxl.load_workbook(Path(name) / "out" / file.name, data_only=True, read_only=True)
+        cells = [
+            cell for sheet in book for row in sheet.iter_rows(values_only=True) for cell in row if cell is not None
+        ]
+        book.close()
+    wrong = sum(1 for cell in cells if str(cell).startswith(("#", "Err:")))
+    print(f"opened in LibreOffice and saved: {took:.1f} s, {len(cells)} cells, {wrong} errors")
 
 
 if __name__ == "__main__":

@@ -12,6 +12,7 @@ import openpyxl
 import pytest
 from conftest import ROOT
 from test_workbook_round_trip import rows, type_in
+from xlsxwriter.worksheet import Worksheet
 
 from analyzer.audit import Audit, audit
 from analyzer.circuit import InputFile
@@ -234,3 +235,15 @@ def test_the_files_date_is_the_builds_or_a_fixed_one(
     created = openpyxl.load_workbook(tmp_path / "lamp.xlsx").properties.created
     assert created is not None
     assert (created.year, created.month, created.day) == day
+
+
+def test_formulas_are_written_as_the_library_itself_would(
+    lamp: Audit, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    one, two = tmp_path / "one" / "lamp.xlsx", tmp_path / "two" / "lamp.xlsx"
+    one.parent.mkdir()
+    two.parent.mkdir()
+    write_workbook(one, lamp.ledger, lamp.settings)
+    monkeypatch.setattr("analyzer.output.workbook.worksheet.PlainWorksheet", Worksheet)
+    write_workbook(two, lamp.ledger, lamp.settings)
+    assert one.read_bytes() == two.read_bytes()

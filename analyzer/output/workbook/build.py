@@ -49,6 +49,8 @@ def build(ledger: Ledger, settings: Settings, typed: Typed, name: str) -> bytes:
     """The workbook's bytes; the same for the same input."""
     import xlsxwriter
 
+    from analyzer.output.workbook.worksheet import PlainWorksheet
+
     buffer = io.BytesIO()
     options = {"in_memory": True, "strings_to_formulas": False, "strings_to_urls": False, "strings_to_numbers": False}
     raw = xlsxwriter.Workbook(buffer, options)
@@ -56,7 +58,7 @@ def build(ledger: Ledger, settings: Settings, typed: Typed, name: str) -> bytes:
     # spreadsheets work the sheet out anew when they open it, so that edits made elsewhere cannot leave stale values
     raw.set_calc_mode("auto")
     inputs = f"inputs {summary.digest(ledger)[:12]}" if ledger.inputs else "no inputs"
-    book = Book(raw, _footer(f"{name}  {inputs}"))
+    book = Book(raw, _footer(f"{name}  {inputs}"), PlainWorksheet)
     rows = plan(ledger, typed)
     summary.write(book, ledger, typed)
     settings_sheet.write(book, ledger, settings, typed, len(rows.lines))

@@ -102,9 +102,10 @@ INPUTS = frozenset({"input", "note"})
 class Book:
     """An XlsxWriter workbook with the formats of `FORMS`, made once each."""
 
-    def __init__(self, book: Any, footer: str) -> None:
+    def __init__(self, book: Any, footer: str, sheet_class: type | None = None) -> None:
         self.book = book
         self.footer = footer
+        self.sheet_class = sheet_class
         self._forms: dict[str, Any] = {}
 
     def form(self, name: str) -> Any:
@@ -115,7 +116,7 @@ class Book:
 
     def sheet(self, name: str, title: str, remark: str, columns: Sequence[Column], *, freeze: int = 1) -> Sheet:
         """A sheet with title, remark, heads, frozen panes and page set-up."""
-        sheet = self.book.add_worksheet(name)
+        sheet = self.book.add_worksheet(name, worksheet_class=self.sheet_class)
         sheet.set_landscape()
         sheet.set_paper(PAPER_A4)
         sheet.fit_to_pages(1, 0)
