@@ -60,6 +60,7 @@ GROUPS: dict[str, tuple[tuple[str, ...], tuple[str, ...]]] = {
             "heat/test_no_false_clear.py",
             "heat/test_honest_worst_cases.py",
             "heat/test_rests_and_runaway.py",
+            "heat/test_headroom.py",
             "heat/test_common_mistakes.py",
             "heat/test_verdicts_and_limits.py",
             "losses/test_points_worked_by_hand.py",
@@ -73,6 +74,7 @@ GROUPS: dict[str, tuple[tuple[str, ...], tuple[str, ...]]] = {
         (
             "losses/test_points_worked_by_hand.py",
             "losses/test_loss_ranges.py",
+            "losses/test_parts_of_models.py",
             "outside/test_published_losses.py",
             "outside/test_published_heat.py",
             "heat/test_common_mistakes.py",
