@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import argparse
-import gc
 import os
 import sys
 from dataclasses import replace
@@ -74,8 +73,14 @@ def run(arguments: argparse.Namespace) -> int:
 
 def run_one(arguments: argparse.Namespace) -> int:
     """Audit the one board of `arguments.paths`, print it and write what was asked for."""
-    # the process ends with this board and its values hold no circles worth looking for: searching costs an eighth
-    gc.disable()
+    from analyzer.reading.sexpr import no_collector
+
+    # its values hold no circles worth looking for, and searching costs an eighth
+    with no_collector():
+        return _run_one(arguments)
+
+
+def _run_one(arguments: argparse.Namespace) -> int:
     result = audited(arguments)
     gate = judged(result, arguments)
     if str(arguments.json) != "-":
