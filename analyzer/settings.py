@@ -120,6 +120,7 @@ class PartStatement:
         theta_ja: θJA on this very board.
         board_class: Board class of that θJA, or of this spot of the board.
         pour: Copper area at this part [m²].
+        vias: Number of thermal vias (0.3 mm) between its pad and that copper.
         heat_sink: (θJC, θCS, θSA) in K/W.
         case_measured, board_measured: Temperature measured at the case top / board beside it [°C].
         junction_max: Junction limit to use [°C].
@@ -136,6 +137,7 @@ class PartStatement:
     theta_ja: Evidence | None = None
     board_class: BoardClass | None = None
     pour: Evidence | None = None
+    vias: int | None = None
     heat_sink: tuple[Evidence, Evidence, Evidence] | None = None
     case_measured: Evidence | None = None
     board_measured: Evidence | None = None

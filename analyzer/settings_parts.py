@@ -75,6 +75,7 @@ def part(table: Table) -> PartStatement:
         "theta_ja": table.evidence("theta_ja", "θJA", theta, 0, 2000, above=True),
         "board_class": board_class(table, "board_class"),
         "pour": table.evidence("pour", "copper area", _D.AREA, 0, 1),
+        "vias": table.whole("vias", 1, 1000),
         "heat_sink": _heat_sink(table.table("heat_sink")) if "heat_sink" in table else None,
         "case_measured": table.evidence("case_measured", "case temperature", _D.TEMPERATURE, COLDEST, HOTTEST),
         "board_measured": table.evidence("board_measured", "board temperature", _D.TEMPERATURE, COLDEST, HOTTEST),

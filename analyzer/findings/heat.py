@@ -100,6 +100,12 @@ THETA_GENERIC = FindingKind(
     "θJA comes from the generic table of package families, which is good to ±40 % only.",
     "Supply the data sheet's θJA in a rule.",
 )
+THETA_ESTIMATED = FindingKind(
+    "theta-estimated",
+    Weight.NOTE,
+    "No θJA is known; θ is estimated from θJC and the copper stated at the pad, raised by what such estimates miss.",
+    "Supply the data sheet's θJA in a rule, or measure the board.",
+)
 ALTITUDE_UNCHECKED = FindingKind(
     "altitude-unchecked",
     Weight.NOTE,

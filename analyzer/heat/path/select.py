@@ -1,6 +1,7 @@
 """Which thermal path a part's budget uses, in the order of trust.
 
-Measured temperature > stated heat sink > stated θJA > copper-area or air-speed table > θJA of the rule > generic table.
+Measured temperature > stated heat sink > stated θJA > copper-area or air-speed table > θJA of the rule > pad on stated
+copper > generic table.
 """
 
 from __future__ import annotations
@@ -12,6 +13,7 @@ from analyzer.evidence import Evidence, Grade
 from analyzer.findings import heat as kinds
 from analyzer.heat.path.base import ThermalPath, all_air
 from analyzer.heat.path.board import correction, design_class
+from analyzer.heat.path.pad import pad_path
 from analyzer.part import Part
 from analyzer.quantity import ZERO, Span
 from analyzer.rule import BoardClass, Curve, PackageRule, ThermalFigure
@@ -42,6 +44,9 @@ def thermal_path(
             return _with_foster(table, figure)
         if figure.theta_ja is not None:
             return _with_foster(_by_class(part, figure, design, why), figure)
+    bottom = next((one.theta_jc_bottom for one in part.thermal if one.theta_jc_bottom), None)
+    if bottom is not None and pour is not None and (estimate := pad_path(part, bottom, pour, stated.vias, design)):
+        return estimate
     return _generic(part, design, why, packages)
 
 
