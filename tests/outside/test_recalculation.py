@@ -261,9 +261,19 @@ def test_after_a_re_run_typed_text_counts_as_the_engine_read_it(tmp_path: Path) 
     assert "re-run" not in verdicts(theirs).values()
 
 
-def all_typed(folder: Path) -> Path:
-    """The tide logger with every missing current typed and taken in: three budgets that are clear."""
-    file = written("tide_logger", folder)
+def sunk(folder: Path) -> Path:
+    """The tide logger with its pump on a heat sink, whose resistance follows its own rise: no formula does."""
+    board = Path(shutil.copytree(ROOT / "fixture_boards" / "tide_logger", folder / "tide_logger"))
+    settings = board / "heatledger.toml"
+    sink = '{ theta_jc = "20 K/W", theta_cs = "1 K/W", theta_sa = "180 K/W" }'
+    settings.write_text(settings.read_text(encoding="utf-8") + f"\n[parts.U3]\nheat_sink = {sink}\n", encoding="utf-8")
+    return board
+
+
+def all_typed(board: Path, folder: Path) -> Path:
+    """The board with every missing current typed and taken in: three budgets that are clear."""
+    result, file = audit(board), folder / "open.xlsx"
+    write_workbook(file, result.ledger, result.settings)
     _, nominal, _ = NEW
     typed = edited(
         file,
@@ -274,7 +284,7 @@ def all_typed(folder: Path) -> Path:
         },
     )
     found = read_typed(typed)
-    again = audit(ROOT / "fixture_boards" / "tide_logger", adjust=found.applied_to)
+    again = audit(board, adjust=found.applied_to)
     target = folder / "closed.xlsx"
     write_workbook(target, again.ledger, again.settings, found)
     return target
@@ -282,7 +292,8 @@ def all_typed(folder: Path) -> Path:
 
 def test_what_feeds_a_part_that_no_formula_follows_says_re_run_with_it(tmp_path: Path) -> None:
     """The pump U3 is no formula: with more load on -5V nobody may read an old verdict of U2 and U1, which feed it."""
-    file = all_typed(tmp_path)
+    board = sunk(tmp_path)
+    file = all_typed(board, tmp_path)
     _, nominal, _ = NEW
     more, less = (
         edited(file, {current(file, "U4", rail, nominal): amps}).rename(tmp_path / f"{amps}.xlsx")
@@ -292,7 +303,7 @@ def test_what_feeds_a_part_that_no_formula_follows_says_re_run_with_it(tmp_path:
     assert verdicts(before) == {"U3": "clear", "U2": "clear", "U1": "clear"}
     assert set(verdicts(pumped).values()) == {"re-run"}
     # the engine's own word for it, after the re-run: all three are over
-    fresh = audit(ROOT / "fixture_boards" / "tide_logger", adjust=read_typed(more).applied_to).ledger
+    fresh = audit(board, adjust=read_typed(more).applied_to).ledger
     assert {entry.ref: entry.verdict.value for entry in fresh.entries} == dict.fromkeys(("U1", "U2", "U3"), "over")
     # a load that formulas follow leaves the pump's budget as it is
     assert verdicts(other) == verdicts(before)
