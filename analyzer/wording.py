@@ -23,15 +23,18 @@ def show(value: float, unit: str, digits: int = 3) -> str:
         digits: Significant digits; digits before the point are never replaced by zeros.
     """
     value, unit = _readable(value, unit)
+    if abs(value) >= 1e15 or 0 < abs(value) < 1e-15:
+        return f"{value:.{digits}g} {unit}".rstrip()  # beyond what is ever written out in full
     number = Decimal(repr(value))
     if unit not in _PREFIXED_UNITS or not number:
         return f"{_rounded(number, digits)} {unit}".rstrip()
     # the prefix follows the rounded number, so that 0.9999 A is 1.00 A and not 1000 mA
-    exponent = min(max(_significant(number, digits).adjusted() // 3 * 3, -12), 9)
+    first = _significant(number, digits).adjusted()
+    exponent = min(max(first // 3 * 3, -12), 9)
     units = EVERYDAY[Dimension(unit)]
     while _PREFIXES[exponent] + unit not in units:  # nobody writes megaampere
         exponent += 3 if exponent < 0 else -3
-    return f"{_rounded(number.scaleb(-exponent), digits)} {_PREFIXES[exponent]}{unit}"
+    return f"{_placed(number.scaleb(-exponent), digits, first - exponent)} {_PREFIXES[exponent]}{unit}"
 
 
 def show_span(span: Span, unit: str, digits: int = 3) -> str:
@@ -61,5 +64,14 @@ def _significant(number: Decimal, digits: int) -> Decimal:
 def _rounded(number: Decimal, digits: int) -> str:
     if not number:
         return "0"
-    places = max(digits - 1 - _significant(number, digits).adjusted(), 0)
-    return f"{number.quantize(Decimal(1).scaleb(-places), ROUND_HALF_EVEN):f}"
+    return _placed(number, digits, _significant(number, digits).adjusted())
+
+
+_PLACES = tuple(Decimal(1).scaleb(-places) for places in range(30))
+
+
+def _placed(number: Decimal, digits: int, first: int) -> str:
+    """The number with `digits` significant digits, the first of them at the power of ten `first`."""
+    places = max(digits - 1 - first, 0)
+    unit = _PLACES[places] if places < len(_PLACES) else Decimal(1).scaleb(-places)
+    return f"{number.quantize(unit, ROUND_HALF_EVEN):f}"

@@ -323,3 +323,19 @@ def test_spans_shown():
     assert show_span(Span(0.08, 0.1, 0.15), "A") == "80.0 mA..150 mA, nominal 100 mA"
     assert show_span(Span(0.1, 0.1, 0.15), "A") == "100 mA..150 mA"
     assert show_span(Span(0.1, 0.10001, 0.10002), "A") == "100 mA"
+
+
+@pytest.mark.parametrize(
+    ("value", "unit", "text"),
+    [
+        (1e30, "K", "1e+30 K"),
+        (1e-40, "V", "1e-40 V"),
+        (-0.09999, "V", "-100 mV"),
+        (0.99996, "A", "1.00 A"),
+        (9.996, "W", "10.0 W"),
+        (1234567.0, "Ω", "1.23 MΩ"),
+        (0.0, "A", "0 A"),
+    ],
+)
+def test_numbers_at_the_edges_are_written_out(value: float, unit: str, text: str) -> None:
+    assert show(value, unit) == text

@@ -137,6 +137,13 @@ class Figures:
         """A figure that makes the more heat the smaller it is; tables are read at `load`."""
         return low(self._span(key, load, default), end)
 
+    def reader(self, key: str, default: float | None = None) -> Callable[[End, float], float]:
+        """`high` of one figure with its look-up done once, for what every point of every corner asks."""
+        if key in self.channel.curves or (key not in self.channel.figures and default is None):
+            return lambda end, load: self.high(key, end, load, default)
+        span = self._span(key, 0.0, default)
+        return lambda end, _load: high(span, end)
+
     def _span(self, key: str, load: float, default: float | None) -> Span:
         curve = self.channel.curves.get(key)
         if curve is not None:

@@ -48,11 +48,11 @@ def build(wiring: Wiring) -> LossModel:
     key = next((key for key in ("ground_current", "quiescent") if figures.has(key)), None)
     if key is None:
         return lacking("quiescent or ground current")
+    dropout_of, ground_of = figures.reader("dropout", 0.0), figures.reader(key)
 
     def at(point: Point, end: End) -> Loss:
-        dropout = figures.high("dropout", end, point.iout, default=0.0)
-        vout, regulating = output_in_dropout(point.vin, point.vout, dropout)
-        ground = figures.high(key, end, point.iout)
+        vout, regulating = output_in_dropout(point.vin, point.vout, dropout_of(end, point.iout))
+        ground = ground_of(end, point.iout)
         if not regulating:
             # PNP parts saturate in dropout and their ground current jumps
             ground = max(ground, figures.high("ground_current_dropout", end, point.iout, default=ground))
