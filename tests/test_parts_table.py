@@ -107,6 +107,15 @@ def test_a_budget_for_each_row_and_open_where_a_column_lacks(tmp_path: Path) -> 
     assert [(f.name, f.subject) for f in ledger.findings if f.name == "no-rule"] == [("no-rule", "U5")]
 
 
+def test_a_row_that_contradicts_its_part_number_stays_open(tmp_path: Path) -> None:
+    (tmp_path / "rules.toml").write_text(RULES, encoding="utf-8")
+    table = "Reference,Part number,Footprint,Vin,Vout,Current\nU1,QXL9-3.3,SOT-223,6 V,5 V,0.4 A\n"
+    (tmp_path / "parts.csv").write_text(table, encoding="utf-8")
+    (entry,) = audit(tmp_path / "parts.csv", rule_files=[tmp_path / "rules.toml"]).ledger.entries
+    assert entry.verdict is not Verdict.CLEAR
+    assert "its output voltage: the row says 5.00 V, the part number 3.30 V" in entry.missing
+
+
 def test_a_part_with_more_outputs_than_a_row_can_hold_stays_open(tmp_path: Path) -> None:
     dual = RULES.replace("QXL9", "QXD2").replace(
         '{ pattern = "QXD2-{code}", decode = "decimal" }', '{ pattern = "QXD2" }'

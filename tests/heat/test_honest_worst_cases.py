@@ -429,3 +429,38 @@ def test_a_single_pulse_through_a_network_adds_to_its_rest() -> None:
     assert entry.worst is not None
     # 0.17 W at rest, 0.68 W more in the pulse
     assert entry.worst.junction == pytest.approx(40.0 + 50.0 * 0.17 + 0.68 * 6.3252, abs=1e-3)
+
+
+def test_short_pulses_count_in_full_above_a_measured_case() -> None:
+    # ψJT 20 K/W above 85 °C; 7 V · 0.4 A = 2.8 W for 9 ms every 90 ms
+    figure = ThermalFigure("SOT-223", "test", psi_jt=number(20.0, "K/W"), board=BoardClass.HIGH)
+    bench = Bench(
+        vin=EXACT(12.0),
+        vout=EXACT(5.0),
+        thermal=(figure,),
+        draws=((EXACT(0.04), Pulse(EXACT(0.4), 0.009, 0.090)),),
+        statement=PartStatement(case_measured=number(85.0, "°C")),
+    )
+    entry = bench.entry()
+    assert entry.worst is not None
+    assert entry.worst.junction == pytest.approx(85.0 + 20.0 * 2.8)
+
+
+def test_a_copper_table_without_a_class_is_taken_as_measured_over_planes() -> None:
+    table = Curve(((3e-4, EXACT(60.0)), (1e-3, EXACT(40.0))), "copper", number(Span(40.0, 50.0, 60.0), "K/W"))
+    copper = PartStatement(pour=number(5e-4, "m²"), board_class=BoardClass.LOW)
+    unknown = (ThermalFigure("SOT-223", "test", copper=table),)
+    assert Bench(thermal=unknown, statement=copper).entry().missing == ("θJA: none known for package SOT-223",)
+    low = (ThermalFigure("SOT-223", "test", copper=table, board=BoardClass.LOW),)
+    worst = Bench(thermal=low, statement=copper).entry().worst
+    assert worst is not None
+    assert worst.theta == pytest.approx(60.0 - 20.0 * 2 / 7)
+
+
+def test_a_part_that_runs_away_is_told_with_numbers_that_end() -> None:
+    figures = {"on_resistance": 0.5, "resistance_tempco": 0.02, "junction_max": 150.0}
+    bench = Bench(topology=Topology.LOAD_SWITCH, vout=EXACT(5.0), figures=figures, draws=((EXACT(2.0), None),))
+    entry = bench.entry()
+    assert "thermal-runaway" in names(entry)
+    assert entry.worst is not None
+    assert entry.worst.junction == 1000.0

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import pytest
 from rails_bench import circuit, part, recognised, rulebook
 
@@ -51,3 +53,16 @@ def test_pins_of_one_channel_on_several_rails_leave_it_open(pins: dict[str, str]
     }
     known = recognised(chip, Topology.LINEAR, volts=5.0, roles=roles)
     assert why in " ".join(find(known, J12, *takers).wirings[0].why_open)
+
+
+@pytest.mark.parametrize(("name", "corners"), [("DCR", (0.035, 0.035, 0.035)), ("DCR(max)", (0.0, 0.035, 0.035))])
+def test_a_greatest_resistance_of_an_inductor_says_nothing_of_the_least(
+    name: str, corners: tuple[float, float, float]
+) -> None:
+    pins = {"1 VIN power_in": "+12V", "2 GND power_in": "GND", "3 SW output": "SW"}
+    known = recognised(part("U1", "XB1", pins), Topology.BUCK, volts=5.0)
+    coil = replace(part("L1", "10uH", "SW +5V"), fields={name: "35 mΩ"})
+    (wiring,) = find(known, J12, coil, part("C1", "1u", "+5V GND")).wirings
+    (inductor,) = [one for one in wiring.outside if one.role == "inductor"]
+    assert inductor.resistance is not None
+    assert inductor.resistance.span.corners == corners

@@ -124,3 +124,41 @@ def test_every_thermal_package_is_a_known_family() -> None:
     book = load_rulebook()
     families = {package.family for package in book.packages}
     assert {figure.package for rule in book.rules for figure in rule.thermal} <= families
+
+
+@pytest.mark.parametrize(
+    ("figure", "what"),
+    [
+        ('forward_drop = "-0.5 V"', "'-0.5 V' lies outside the possible: at least 0 V"),
+        ('on_resistance = "0 Ω"', "'0 Ω' lies outside the possible: above 0 Ω"),
+        ('efficiency = "100 %"', "'100 %' lies outside the possible: above 0 %, at most 99.9 %"),
+        ('efficiency = [["0.1 A", "50 %"], ["1 A", "100 %"]]', "has a value outside the possible"),
+        ('efficiency_map = [["1 A", "5 V", "120 %"]]', "'120 %' at '1 A' is no efficiency at a load"),
+        ('control_ratio = "0"', "lies outside the possible: above 0 %"),
+        ('pass_channels = "1000"', "lies outside the possible: at least 100 %"),
+        ('junction_max = "1250 °C"', "lies outside the possible"),
+    ],
+)
+def test_figures_that_no_part_has_are_refused(figure: str, what: str, tmp_path: Path) -> None:
+    head = '[[rule]]\nname = "Q"\nkind = "buck"\nmatch = [{ pattern = "QX1" }]\nsource = "invented"\n'
+    (tmp_path / "r.toml").write_text(head + figure + "\n", encoding="utf-8")
+    with pytest.raises(InputError) as caught:
+        load_rulebook([tmp_path / "r.toml"])
+    assert what in str(caught.value)
+
+
+@pytest.mark.parametrize(
+    ("line", "what"),
+    [
+        ('theta_ja = "0 K/W"', "'0 K/W' lies outside the possible: above 0 K/W"),
+        ('foster = [["0 K/W", "1 s"]]', "0 K/W, 1 s is no stage"),
+        ('copper = [["100 mm²", "60 K/W"], ["300 mm²", "0 K/W"]]', "has a value outside the possible"),
+    ],
+)
+def test_thermal_figures_that_no_part_has_are_refused(line: str, what: str, tmp_path: Path) -> None:
+    head = '[[rule]]\nname = "Q"\nkind = "buck"\nmatch = [{ pattern = "QX1" }]\nsource = "invented"\n'
+    thermal = f'[[rule.thermal]]\npackage = "SOT-223"\n{line}\n'
+    (tmp_path / "r.toml").write_text(head + thermal, encoding="utf-8")
+    with pytest.raises(InputError) as caught:
+        load_rulebook([tmp_path / "r.toml"])
+    assert what in str(caught.value)
